@@ -1,0 +1,1 @@
+"""The check itself: hinge, cleavage and intersection, signed transection, verdict and advice."""

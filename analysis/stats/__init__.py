@@ -1,0 +1,1 @@
+"""Many readings: running sums, principal axes with their confidence, intervals, synthetic folds."""
