@@ -123,7 +123,7 @@ class Plane:
         return Line.from_vector(_crossed(self.pole, other.pole, "two parallel planes meet in no line"))
 
     def line_at_pitch(self, pitch_deg: float, from_strike_end_deg: float | None = None) -> Line:
-        """Find the line in this plane at a pitch (rake), 0 to 180 degrees, measured down from one end of the strike.
+        """Find the line in this plane at a pitch, 0 to 180 degrees, measured down from one end of the strike.
 
         `from_strike_end_deg` is the azimuth of the end meant, within 90 degrees of it; without it the strike
         itself is the end. Raises AttitudeError for a pitch outside 0 to 180 and for an end at right angles to
@@ -160,7 +160,10 @@ class Plane:
         return math.degrees(math.atan2(down, along)) % 180.0
 
     def apparent_dip_deg(self, section_azimuth_deg: float) -> float:
-        """Apparent dip, 0 to 90 degrees, on a vertical section of this azimuth: tan a = tan dip * sin(angle off strike)."""
+        """Apparent dip, 0 to 90 degrees, on a vertical section of this azimuth.
+
+        tan(apparent dip) = tan(dip) sin(angle between section and strike).
+        """
         off_strike = math.radians(section_azimuth_deg - self.strike_deg)
         return math.degrees(
             math.atan2(

@@ -78,7 +78,7 @@ def strike_dip_deg(pole: npt.ArrayLike) -> tuple[Floats, Floats]:
 
 
 def axis_angle_deg(first: npt.ArrayLike, second: npt.ArrayLike) -> Floats:
-    """Acute angle, 0 to 90 degrees, between two axes with shape (..., 3); exact for small and right angles."""
+    """Acute angle, 0 to 90 degrees, between two axes with shape (..., 3); exact for small angles."""
     a, b = np.asarray(first, dtype=float), np.asarray(second, dtype=float)
     crossed = np.linalg.norm(np.cross(a, b), axis=-1)
     dotted = np.abs(np.sum(a * b, axis=-1))
@@ -99,7 +99,7 @@ def equal_area_xy(vector: npt.ArrayLike) -> Floats:
 
 
 def vector_from_equal_area_xy(xy: npt.ArrayLike) -> Floats:
-    """Axes, shape (..., 3), at places (..., 2) on the equal-area net of radius 1; the inverse of the above."""
+    """Axes, shape (..., 3), at places (..., 2) on the equal-area net; the inverse of equal_area_xy."""
     place = np.asarray(xy, dtype=float)
     squared = np.minimum(np.sum(place * place, axis=-1), 1.0)
     factor = np.sqrt(2.0 - squared)
