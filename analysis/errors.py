@@ -57,3 +57,11 @@ class TooFewReadingsError(HingewiseError, ValueError):
 
 class SettingError(HingewiseError, ValueError):
     """An option or setting outside what it may be."""
+
+
+class PositionError(HingewiseError, ValueError):
+    """Coordinates, or text for them, that are no place on the Earth, or could be two."""
+
+
+class NorthError(HingewiseError, ValueError):
+    """True north that cannot be had: no model for the date or place, or a reading corrected already."""
