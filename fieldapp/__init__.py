@@ -1,0 +1,1 @@
+"""The app on the outcrop: notebook, presenter, devices, leaves. It imports analysis; nothing imports it."""
