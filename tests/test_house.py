@@ -35,9 +35,7 @@ class Room(NamedTuple):
 
     rooms: set[str]
     libraries: set[str]
-    when_used: frozenset[str] = (
-        frozenset()
-    )  # only inside functions, so that importing the room does not load them
+    when_used: frozenset[str] = frozenset()  # only inside functions, so that importing the room loads none
 
 
 FIELD_ROOMS = {"orient", "stats", "fold", "strain"}
@@ -399,10 +397,8 @@ def test_importing_analysis_loads_nothing_heavy():
 
 @pytest.mark.parametrize("room", sorted(FIELD_ROOMS))
 def test_every_module_of_a_field_room_loads_nothing_heavy(room):
-    """All modules of a room that runs on a tablet load none of the heavy libraries, directly or through others."""
-    imported, loaded = (
-        load_fresh("analysis", f"analysis.{room}") if room == "" else load_fresh(f"analysis.{room}")
-    )
+    """No module of a room that runs on a tablet loads a heavy library, directly or through others."""
+    imported, loaded = load_fresh(f"analysis.{room}")
     assert set(imported) == {dotted_name(path) for path in python_files(f"analysis/{room}")}
     assert loaded & TOO_HEAVY == set()
 
