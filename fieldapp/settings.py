@@ -91,7 +91,7 @@ def _within(value: float, low: float, high: float, name: str, expected: str) -> 
 def _converted(default: object, value: object) -> object:
     """Bring a stored value to the type of the default; raises ValueError or TypeError where it is another."""
     if isinstance(default, StrEnum):
-        return type(default)(value)
+        return type(default)(str(value))
     if isinstance(default, float) and isinstance(value, int) and not isinstance(value, bool):
         return float(value)
     if type(value) is not type(default):

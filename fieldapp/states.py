@@ -184,7 +184,7 @@ class NetPoints:
 
 @dataclass(frozen=True, slots=True)
 class NetState:
-    """What the net draws beside page.check: readings by feature, the last mean intersections (oldest first)."""
+    """What the net draws beside page.check: readings by feature, last mean intersections (oldest first)."""
 
     points: Mapping[Feature, NetPoints]
     trail: Floats  # (k, 3), at most 12; the last one is the present mean
