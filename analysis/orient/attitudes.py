@@ -25,7 +25,7 @@ def checked_azimuth_deg(value: float, name: str) -> float:
     """Give an azimuth in degrees as 0 <= azimuth < 360 (360 becomes 0), or raise AttitudeError naming it."""
     if not (math.isfinite(value) and 0.0 <= value <= 360.0):
         raise AttitudeError(
-            f"{name} {value:g} is no azimuth",
+            f"{name} {value:.10g} is no azimuth",
             where=name,
             expected="0 to 360 degrees clockwise from north",
             mend="Read the compass again, or type the azimuth with three digits, as 045.",
@@ -37,7 +37,7 @@ def checked_inclination_deg(value: float, name: str) -> float:
     """Give a dip or plunge in degrees, 0 to 90, or raise AttitudeError naming it."""
     if not (math.isfinite(value) and 0.0 <= value <= 90.0):
         raise AttitudeError(
-            f"{name} {value:g} is outside 0 to 90",
+            f"{name} {value:.10g} is outside 0 to 90",
             where=name,
             expected="0 (horizontal) to 90 (vertical) degrees",
             mend="An overturned bed keeps its dip below 90 and is marked overturned.",
@@ -135,7 +135,8 @@ class Plane:
             )
         along = vectors.line_vector(self.strike_deg, 0.0)
         if from_strike_end_deg is not None:
-            leaning = math.cos(math.radians(from_strike_end_deg - self.strike_deg))
+            end = checked_azimuth_deg(float(from_strike_end_deg), "end of the strike")
+            leaning = math.cos(math.radians(end - self.strike_deg))
             if abs(leaning) < SAME_DIRECTION:
                 raise AttitudeError(
                     f"azimuth {from_strike_end_deg:g} lies at right angles to the strike {self.strike_deg:g}",
@@ -148,7 +149,7 @@ class Plane:
         return Line.from_vector(along * math.cos(pitch) + down_dip * math.sin(pitch))
 
     def pitch_deg(self, line: Line) -> float:
-        """Pitch, 0 to 180 degrees from the right-hand-rule strike, of a line projected onto this plane.
+        """Pitch, 0 <= pitch < 180 degrees from the strike, of a line projected onto this plane.
 
         Raises AttitudeError for the pole, which has no pitch.
         """
@@ -157,14 +158,20 @@ class Plane:
         along, down = float(line.vector @ flat), float(line.vector @ down_dip)
         if math.hypot(along, down) < SAME_DIRECTION:
             raise AttitudeError("the pole of a plane has no pitch on it", where="pitch")
-        return math.degrees(math.atan2(down, along)) % 180.0
+        pitch = math.degrees(math.atan2(down, along)) % 180.0
+        # A tiny negative angle is rounded up to 180.0 by the remainder; it is the strike all the same.
+        return pitch if pitch < 180.0 else 0.0
 
     def apparent_dip_deg(self, section_azimuth_deg: float) -> float:
         """Apparent dip, 0 to 90 degrees, on a vertical section of this azimuth.
 
-        tan(apparent dip) = tan(dip) sin(angle between section and strike).
+        tan(apparent dip) = tan(dip) sin(angle between section and strike). A section along the strike shows
+        0, also of a vertical plane. Raises AttitudeError for an azimuth outside 0 to 360.
         """
-        off_strike = math.radians(section_azimuth_deg - self.strike_deg)
+        section = checked_azimuth_deg(float(section_azimuth_deg), "section azimuth")
+        off_strike = math.radians(section - self.strike_deg)
+        if abs(math.sin(off_strike)) < SAME_DIRECTION:
+            return 0.0
         return math.degrees(
             math.atan2(
                 math.sin(math.radians(self.dip_deg)) * abs(math.sin(off_strike)),

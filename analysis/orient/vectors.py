@@ -99,8 +99,12 @@ def equal_area_xy(vector: npt.ArrayLike) -> Floats:
 
 
 def vector_from_equal_area_xy(xy: npt.ArrayLike) -> Floats:
-    """Axes, shape (..., 3), at places (..., 2) on the equal-area net; the inverse of equal_area_xy."""
+    """Axes, shape (..., 3), at places (..., 2) on the equal-area net; the inverse of equal_area_xy.
+
+    A place outside the net stands for the horizontal axis at the nearest point of its rim.
+    """
     place = np.asarray(xy, dtype=float)
+    place = place / np.maximum(np.linalg.norm(place, axis=-1, keepdims=True), 1.0)
     squared = np.minimum(np.sum(place * place, axis=-1), 1.0)
     factor = np.sqrt(2.0 - squared)
     return np.stack([place[..., 1] * factor, place[..., 0] * factor, 1.0 - squared], axis=-1)
