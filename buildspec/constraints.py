@@ -44,7 +44,7 @@ def main() -> int:
     with tempfile.TemporaryDirectory(prefix="hingewise-constraints-") as name:
         folder = Path(name) / "venv"
         setup_env.make_environment(folder)
-        pip = [str(setup_env.venv_program("python", folder)), "-m", "pip", "--disable-pip-version-check"]
+        pip = [str(setup_env.venv_program(folder, "python")), "-m", "pip", "--disable-pip-version-check"]
         requirements = [
             *setup_env.build_requirements(),
             f"{setup_env.ROOT}[{','.join(setup_env.all_extras())}]",

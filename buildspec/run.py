@@ -27,7 +27,7 @@ def main(arguments: list[str]) -> int:
         return 2
     # Kivy would otherwise take the command's own arguments for its own.
     environment = {**os.environ, "KIVY_NO_ARGS": "1"}
-    command = [str(setup_env.venv_program("hingewise")), "demo", *arguments]
+    command = [str(setup_env.venv_program(setup_env.VENV, "hingewise")), "demo", *arguments]
     try:
         return subprocess.run(command, cwd=setup_env.ROOT, env=environment, check=False).returncode
     except KeyboardInterrupt:

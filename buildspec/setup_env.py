@@ -136,7 +136,7 @@ def describe_missing(missing: Sequence[SystemPackage]) -> str:
 # The virtual environment ----
 
 
-def venv_program(name: str, folder: Path = VENV) -> Path:
+def venv_program(folder: Path, name: str) -> Path:
     """Path of a program inside the environment, such as ``python`` or ``hingewise``."""
     if os.name == "nt":
         return folder / "Scripts" / f"{name}.exe"
@@ -182,7 +182,7 @@ def fingerprint() -> str:
     return digest.hexdigest()
 
 
-def read_stamp(folder: Path = VENV) -> tuple[str, set[str]]:
+def read_stamp(folder: Path) -> tuple[str, set[str]]:
     """Fingerprint and extras of the environment as it was last made; empty where there is no good stamp."""
     try:
         stamp = json.loads((folder / STAMP).read_text(encoding="utf-8"))
@@ -191,17 +191,17 @@ def read_stamp(folder: Path = VENV) -> tuple[str, set[str]]:
         return "", set()
 
 
-def write_stamp(made_from: str, extras: set[str], folder: Path = VENV) -> None:
+def write_stamp(folder: Path, made_from: str, extras: set[str]) -> None:
     """Note what the environment was made from."""
     text = json.dumps({"fingerprint": made_from, "extras": sorted(extras)})
     (folder / STAMP).write_text(text, encoding="utf-8")
 
 
-def environment_works(folder: Path = VENV) -> bool:
+def environment_works(folder: Path) -> bool:
     """Whether the environment's Python starts, is of this very version, and has pip."""
     try:
         answer = subprocess.run(
-            [venv_program("python", folder), "-c", "import sys, pip; print(sys.version_info[:3])"],
+            [venv_program(folder, "python"), "-c", "import sys, pip; print(sys.version_info[:3])"],
             capture_output=True,
             text=True,
             check=False,
@@ -211,7 +211,7 @@ def environment_works(folder: Path = VENV) -> bool:
     return answer.stdout.strip() == str(tuple(sys.version_info[:3]))
 
 
-def make_environment(folder: Path = VENV) -> None:
+def make_environment(folder: Path) -> None:
     """Make an empty environment, clearing away one that does not work."""
     if importlib.util.find_spec("ensurepip") is None:
         name = f"python{sys.version_info[0]}.{sys.version_info[1]}-venv"
@@ -228,10 +228,10 @@ def make_environment(folder: Path = VENV) -> None:
         raise SetupError(f"'{' '.join(command)}' failed.")
 
 
-def pip_install(arguments: Sequence[str], folder: Path = VENV) -> None:
+def pip_install(folder: Path, arguments: Sequence[str]) -> None:
     """Run the environment's pip under the constraints; what it prints matters only where it fails."""
     command = [
-        str(venv_program("python", folder)), "-m", "pip", "install",
+        str(venv_program(folder, "python")), "-m", "pip", "install",
         "--quiet", "--no-input", "--disable-pip-version-check", "--no-warn-script-location",
         "-c", str(CONSTRAINTS), *arguments,
     ]  # fmt: skip
@@ -254,22 +254,22 @@ def pip_install(arguments: Sequence[str], folder: Path = VENV) -> None:
 
 def ensure_environment(extras: Sequence[str]) -> Path:
     """Make the environment hold the project with these extras, if it does not yet; return its Python."""
-    made_from, present = read_stamp()
+    made_from, present = read_stamp(VENV)
     wanted = set(extras)
     now = fingerprint()
-    works = environment_works()
+    works = environment_works(VENV)
     if works and made_from == now and wanted <= present:
-        return venv_program("python")
+        return venv_program(VENV, "python")
     if not works:
-        make_environment()
+        make_environment(VENV)
         present = set()
     wanted |= present & set(all_extras())
     (VENV / STAMP).unlink(missing_ok=True)
     say("Installing what Hingewise needs into it (the first time takes a few minutes)")
-    pip_install(build_requirements())
-    pip_install(["--no-build-isolation", "--editable", f".[{','.join(sorted(wanted))}]"])
-    write_stamp(now, wanted)
-    return venv_program("python")
+    pip_install(VENV, build_requirements())
+    pip_install(VENV, ["--no-build-isolation", "--editable", f".[{','.join(sorted(wanted))}]"])
+    write_stamp(VENV, now, wanted)
+    return venv_program(VENV, "python")
 
 
 # The display ----
