@@ -43,7 +43,7 @@ def calls(setup_env, monkeypatch):
 
     monkeypatch.setattr(setup_env, "environment_works", lambda folder: works["yes"] and folder.exists())
     monkeypatch.setattr(setup_env, "make_environment", make_environment)
-    monkeypatch.setattr(setup_env, "pip_install", lambda folder, arguments: asked.append(arguments[-1]))
+    monkeypatch.setattr(setup_env, "pip_install", lambda _folder, arguments: asked.append(arguments[-1]))
     return asked
 
 
