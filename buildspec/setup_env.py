@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import contextlib
 import ctypes
+import functools
 import hashlib
 import importlib.util
 import json
@@ -86,26 +87,37 @@ def can_use_apt() -> bool:
     return shutil.which("apt-get") is not None and hasattr(os, "geteuid") and os.geteuid() == 0
 
 
+def run_quietly(command: Sequence[str]) -> subprocess.CompletedProcess[str]:
+    """Run a command in the project's root with no input, keeping what it prints."""
+    return subprocess.run(
+        command,
+        cwd=ROOT,
+        env={**os.environ, "DEBIAN_FRONTEND": "noninteractive"},
+        stdin=subprocess.DEVNULL,
+        stdout=subprocess.PIPE,
+        stderr=subprocess.STDOUT,
+        text=True,
+        check=False,
+    )
+
+
+@functools.cache
+def fetch_package_lists() -> None:
+    """Fetch Debian's lists of packages, once a run, for they may be stale or absent.
+
+    A failure is let pass: one of several sources may be down and not needed. If it was, the installation says so.
+    """
+    run_quietly(["apt-get", "update", "-qq"])
+
+
 def apt_install(names: Sequence[str]) -> None:
-    """Install Debian packages by name; the lists are fetched first, for they may be stale or absent."""
+    """Install Debian packages by name."""
     say(f"Installing from the system's packages: {' '.join(names)}")
-    environment = {**os.environ, "DEBIAN_FRONTEND": "noninteractive"}
-    for command in (
-        ["apt-get", "update", "-qq"],
-        ["apt-get", "install", "-y", "-qq", "--no-install-recommends", *names],
-    ):
-        done = subprocess.run(
-            command,
-            env=environment,
-            stdin=subprocess.DEVNULL,
-            stdout=subprocess.PIPE,
-            stderr=subprocess.STDOUT,
-            text=True,
-            check=False,
-        )
-        # A list that cannot be fetched need not matter (one of several sources may be down); a package does.
-        if done.returncode and command[1] == "install":
-            raise SetupError(f"{done.stdout.strip()}\n'{' '.join(command)}' failed.")
+    fetch_package_lists()
+    command = ["apt-get", "install", "-y", "-qq", "--no-install-recommends", *names]
+    done = run_quietly(command)
+    if done.returncode:
+        raise SetupError(f"{done.stdout.strip()}\n'{' '.join(command)}' failed.")
 
 
 def ensure_system(packages: Sequence[SystemPackage]) -> list[SystemPackage]:
@@ -235,15 +247,7 @@ def pip_install(folder: Path, arguments: Sequence[str]) -> None:
         "--quiet", "--no-input", "--disable-pip-version-check", "--no-warn-script-location",
         "-c", str(CONSTRAINTS), *arguments,
     ]  # fmt: skip
-    done = subprocess.run(
-        command,
-        cwd=ROOT,
-        stdin=subprocess.DEVNULL,
-        stdout=subprocess.PIPE,
-        stderr=subprocess.STDOUT,
-        text=True,
-        check=False,
-    )
+    done = run_quietly(command)
     if done.returncode:
         raise SetupError(
             f"{done.stdout.strip()}\npip could not install what Hingewise needs (its message stands above).\n"

@@ -138,9 +138,9 @@ class Run:
             self.failed_steps.append(name)
 
 
-def display_for_tests(stack: contextlib.ExitStack) -> str:
+def display_for_tests(stack: contextlib.ExitStack, missing: Sequence[setup_env.SystemPackage]) -> str:
     """Start a display for the window tests; without Xvfb use the desktop's, and say so."""
-    missing = setup_env.ensure_system(setup_env.DISPLAY_PACKAGES)
+    missing = [package for package in missing if package in setup_env.DISPLAY_PACKAGES]
     if sys.platform.startswith("linux") and not missing:
         return stack.enter_context(setup_env.virtual_display())
     if setup_env.has_display():
@@ -174,11 +174,11 @@ def main(arguments: list[str]) -> int:
     extra = arguments[1:] if benchmarks else arguments
     with contextlib.ExitStack() as stack:
         try:
-            missing = setup_env.ensure_system(setup_env.WINDOW_PACKAGES)
+            missing = setup_env.ensure_system(setup_env.WINDOW_PACKAGES + setup_env.DISPLAY_PACKAGES)
             if missing:
                 say(setup_env.describe_missing(missing))
             python = setup_env.ensure_environment(setup_env.all_extras())
-            display = display_for_tests(stack) if has_window_tests() or benchmarks else ""
+            display = display_for_tests(stack, missing) if has_window_tests() or benchmarks else ""
         except SetupError as error:
             print(error, file=sys.stderr)
             return 2
