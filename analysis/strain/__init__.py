@@ -1,1 +1,1 @@
-"""The explanations: what rotation in shear and transpression predict at the fold-fault angle seen."""
+"""The explanations: what rotation in shear and transpression predict beside a fault, and what the folds say."""
