@@ -163,9 +163,9 @@ def robust_axis_mean(axes: npt.ArrayLike) -> AxisMean:
     """Mean of sampled axes, shape (n, 3), not drawn off by spikes; raises TooFewReadingsError for n < 2.
 
     It starts from the sampled axis of least median distance to the rest. Scatter is judged along the
-    horizontal and the vertical (a magnetometer's noise turns a pole, an accelerometer's tips it), first by the
-    median absolute deviation, then by the standard deviation of the samples kept; those outside the ellipse
-    are left out.
+    horizontal and the vertical (a magnetometer's noise turns a pole, an accelerometer's tips it), first by
+    the median absolute deviation, then by the standard deviation of the samples kept; those outside the
+    ellipse are left out.
     """
     samples = lower_hemisphere(unit(axes))
     if samples.ndim != 2 or len(samples) < 2:

@@ -34,7 +34,7 @@ MODEL_NAME = "WMM2025"
 FIRST_YEAR = 2025
 YEAR_AFTER = 2030
 # Horizontal field, in nT, below which the model's authors warn of compasses, and below which they give the
-# declination up (WMM2025 report, sec. 1.8, "caution" and "blackout" zones, as carried by pygeomag).
+# declination up (the "caution" and "blackout" zones of the WMM2025 report; the figures as pygeomag carries them).
 CAUTION_nT = 6000.0
 BLACKOUT_nT = 2000.0
 
