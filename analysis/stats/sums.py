@@ -1,0 +1,199 @@
+"""Running sums of a fold's readings, kept by outcrop: a monoid.
+
+`a + b` is the same whether it adds one reading on a tablet, two tablets' days, or two partitions of an
+archive; `RunningSums()` is its zero; `remove` takes a struck-out reading back. Bedding is also kept by cells
+of attitude, so that limbs can be told apart later without the readings.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Final
+
+import numpy as np
+
+from analysis.orient.features import Feature
+from analysis.orient.vectors import lower_hemisphere
+from analysis.stats.moments import COUNT, WIDTH, moments
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable, Sequence
+
+    import numpy.typing as npt
+
+    from analysis.orient.vectors import Floats
+
+FEATURES: Final = tuple(Feature)
+_CODE: Final = {feature: code for code, feature in enumerate(FEATURES)}
+_BEDDING: Final = _CODE[Feature.BEDDING]
+_CHUNK: Final = 65_536  # axes whose moments are in memory at a time
+
+# Cells of attitude: bands of pole plunge, each cut into sectors of azimuth, about 10 degrees wide.
+_BANDS: Final = 9
+_SECTORS: Final = np.array([36, 36, 34, 30, 26, 22, 16, 10, 4])
+_FIRST_CELL: Final = np.concatenate([[0], np.cumsum(_SECTORS)[:-1]])
+CELLS: Final = int(_SECTORS.sum())
+
+
+def cell_of(vectors: npt.ArrayLike) -> npt.NDArray[np.int64]:
+    """Number of the cell of attitude, shape (...), in which each axis, shape (..., 3), lies."""
+    v = lower_hemisphere(vectors)
+    plunge = np.degrees(np.arcsin(np.clip(v[..., 2], 0.0, 1.0)))
+    band = np.minimum((plunge / (90.0 / _BANDS)).astype(np.int64), _BANDS - 1)
+    turn = np.mod(np.arctan2(v[..., 1], v[..., 0]) / (2.0 * np.pi), 1.0)
+    sectors = _SECTORS[band]
+    return np.asarray(_FIRST_CELL[band] + np.minimum((turn * sectors).astype(np.int64), sectors - 1))
+
+
+class RunningSums:
+    """Moments of all readings of one fold, by outcrop and feature.
+
+    Not frozen: `add`, `remove` and `extend` change it in place, in time that does not depend on how many
+    readings it holds; `+` and `-` make new ones.
+    """
+
+    __slots__ = ("_cell_at", "_cell_rows", "_outcrop_at", "_rows")
+
+    def __init__(self) -> None:
+        self._outcrop_at: dict[str, int] = {}
+        self._rows: Floats = np.zeros((0, len(FEATURES), WIDTH))
+        self._cell_at: dict[tuple[int, int], int] = {}
+        self._cell_rows: Floats = np.zeros((0, WIDTH))
+
+    # -- changing ------------------------------------------------------------------------------------------
+
+    def add(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike) -> None:
+        """Add one axis, shape (3,), or many, shape (N, 3), read at one outcrop."""
+        self._change(feature, outcrop, vectors, 1.0)
+
+    def remove(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike) -> None:
+        """Take back axes that were added before, such as a reading that is struck out."""
+        self._change(feature, outcrop, vectors, -1.0)
+
+    def extend(
+        self,
+        feature_codes: npt.NDArray[np.integer],
+        outcrop_codes: npt.NDArray[np.integer],
+        outcrops: Sequence[str],
+        vectors: Floats,
+    ) -> None:
+        """Add many axes, shape (N, 3), at once.
+
+        `feature_codes` (N,) number the features in the order of `FEATURES`, `outcrop_codes` (N,) index
+        `outcrops`.
+        """
+        slot_of = np.array([self._slot(name) for name in outcrops], dtype=np.int64)
+        kinds = len(FEATURES)
+        for start in range(0, len(vectors), _CHUNK):
+            part = slice(start, start + _CHUNK)
+            rows = moments(vectors[part])
+            codes = np.asarray(feature_codes[part], dtype=np.int64)
+            slots = slot_of[np.asarray(outcrop_codes[part], dtype=np.int64)]
+            size = len(self._rows) * kinds
+            self._rows += _grouped(rows, slots * kinds + codes, size).reshape(self._rows.shape)
+            beds = codes == _BEDDING
+            keys, inverse = np.unique(slots[beds] * CELLS + cell_of(vectors[part][beds]), return_inverse=True)
+            sums = _grouped(rows[beds], inverse, len(keys))
+            places = [self._cell_slot(int(key) // CELLS, int(key) % CELLS) for key in keys]
+            self._cell_rows[places] += sums
+
+    def _change(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike, sign: float) -> None:
+        axes = np.atleast_2d(np.asarray(vectors, dtype=float))
+        rows = moments(axes) * sign
+        code, slot = _CODE[feature], self._slot(outcrop)
+        self._rows[slot, code] += rows.sum(axis=0)
+        _clear_if_empty(self._rows[slot, code])
+        if code == _BEDDING:
+            for cell, row in zip(cell_of(axes).tolist(), rows, strict=True):
+                place = self._cell_slot(slot, cell)
+                self._cell_rows[place] += row
+                _clear_if_empty(self._cell_rows[place])
+
+    def _slot(self, outcrop: str) -> int:
+        slot = self._outcrop_at.setdefault(outcrop, len(self._outcrop_at))
+        if slot == len(self._rows):
+            self._rows = np.concatenate([self._rows, np.zeros((1, len(FEATURES), WIDTH))])
+        return slot
+
+    def _cell_slot(self, slot: int, cell: int) -> int:
+        place = self._cell_at.setdefault((slot, cell), len(self._cell_at))
+        if place == len(self._cell_rows):
+            self._cell_rows = np.concatenate([self._cell_rows, np.zeros((max(8, place), WIDTH))])
+        return place
+
+    # -- adding --------------------------------------------------------------------------------------------
+
+    def __add__(self, other: RunningSums) -> RunningSums:
+        return self._merged(other, 1.0)
+
+    def __sub__(self, other: RunningSums) -> RunningSums:
+        return self._merged(other, -1.0)
+
+    def copy(self) -> RunningSums:
+        """Make sums of the same readings that no longer change with these."""
+        return self + RunningSums()
+
+    def _merged(self, other: RunningSums, sign: float) -> RunningSums:
+        result = RunningSums()
+        for source, factor in ((self, 1.0), (other, sign)):
+            slots = [result._slot(name) for name in source._outcrop_at]
+            result._rows[slots] += factor * source._rows
+            places = [result._cell_slot(slots[slot], cell) for slot, cell in source._cell_at]
+            result._cell_rows[places] += factor * source._cell_rows[: len(places)]
+        empty = np.abs(result._rows[..., COUNT]) < 0.5
+        result._rows[empty] = 0.0
+        result._cell_rows[np.abs(result._cell_rows[:, COUNT]) < 0.5] = 0.0
+        return result
+
+    # -- reading -------------------------------------------------------------------------------------------
+
+    @property
+    def outcrops(self) -> tuple[str, ...]:
+        """Names of the outcrops seen, in the order of `by_outcrop`; some may have lost all their readings."""
+        return tuple(self._outcrop_at)
+
+    @property
+    def outcrops_read(self) -> int:
+        """Number of outcrops that hold a reading now."""
+        return int(np.count_nonzero(self._rows[..., COUNT].sum(axis=1) > 0.5))
+
+    def by_outcrop(self, feature: Feature) -> Floats:
+        """Moments, shape (outcrops, 24), of one feature."""
+        return self._rows[:, _CODE[feature]]
+
+    def total(self, feature: Feature) -> Floats:
+        """Moments, shape (24,), of one feature over all outcrops."""
+        return np.asarray(self._rows[:, _CODE[feature]].sum(axis=0))
+
+    def count(self, feature: Feature) -> int:
+        """Number of readings of one feature."""
+        return round(float(self._rows[:, _CODE[feature], COUNT].sum()))
+
+    def bedding_cells(self) -> tuple[Floats, npt.NDArray[np.int64]]:
+        """Moments (cells, 24) of bedding by outcrop and cell of attitude, and the outcrop's index (cells,)."""
+        used = len(self._cell_at)
+        owner = np.fromiter((slot for slot, _ in self._cell_at), dtype=np.int64, count=used)
+        rows = self._cell_rows[:used]
+        held = rows[:, COUNT] > 0.5
+        return rows[held], owner[held]
+
+
+def _clear_if_empty(row: Floats) -> None:
+    # What is left of a row whose last reading was taken back is rounding, not data.
+    if abs(row[COUNT]) < 0.5:
+        row[:] = 0.0
+
+
+def _grouped(rows: Floats, keys: npt.NDArray[np.integer], size: int) -> Floats:
+    """Sums, shape (size, 24), of rows by key."""
+    result = np.empty((size, WIDTH))
+    for column in range(WIDTH):
+        result[:, column] = np.bincount(keys, weights=rows[:, column], minlength=size)
+    return result
+
+
+def sums_of(readings: Iterable[tuple[Feature, str, Floats]]) -> RunningSums:
+    """Running sums of (feature, outcrop, axis) readings, added one by one."""
+    sums = RunningSums()
+    for feature, outcrop, vector in readings:
+        sums.add(feature, outcrop, vector)
+    return sums
