@@ -105,7 +105,7 @@ def run_quietly(command: Sequence[str]) -> subprocess.CompletedProcess[str]:
 def fetch_package_lists() -> None:
     """Fetch Debian's lists of packages, once a run, for they may be stale or absent.
 
-    A failure is let pass: one of several sources may be down and not needed. If it was, the installation says so.
+    A failure is let pass: one of several sources may be down and not needed. If it was, installing says so.
     """
     run_quietly(["apt-get", "update", "-qq"])
 
