@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import contextlib
 import ctypes
-import functools
 import hashlib
 import importlib.util
 import json
@@ -101,19 +100,11 @@ def run_quietly(command: Sequence[str]) -> subprocess.CompletedProcess[str]:
     )
 
 
-@functools.cache
-def fetch_package_lists() -> None:
-    """Fetch Debian's lists of packages, once a run, for they may be stale or absent.
-
-    A failure is let pass: one of several sources may be down and not needed. If it was, installing says so.
-    """
-    run_quietly(["apt-get", "update", "-qq"])
-
-
 def apt_install(names: Sequence[str]) -> None:
-    """Install Debian packages by name."""
+    """Install Debian packages by name, after fetching the lists of packages, which may be stale or absent."""
     say(f"Installing from the system's packages: {' '.join(names)}")
-    fetch_package_lists()
+    # A failure is let pass: a source may be down and not needed. If it was, installing says so.
+    run_quietly(["apt-get", "update", "-qq"])
     command = ["apt-get", "install", "-y", "-qq", "--no-install-recommends", *names]
     done = run_quietly(command)
     if done.returncode:
