@@ -71,7 +71,7 @@ class Laid(StrEnum):
         return axis
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class AxisMean:
     """Robust mean of sampled axes.
 
@@ -188,7 +188,7 @@ def robust_axis_mean(axes: npt.ArrayLike) -> AxisMean:
 
 
 def moving(
-    specific_force: npt.ArrayLike, *, off_gravity: float = 0.5, jitter: float = 0.25, spikes: float = 0.1
+    specific_force: npt.ArrayLike, *, off_gravity: float = 0.5, jitter: float = 0.25, spikes: float = 0.3
 ) -> bool:
     """Whether the tablet moved while samples, shape (n, 3) in m/s², were taken.
 

@@ -34,7 +34,7 @@ MODEL_NAME = "WMM2025"
 FIRST_YEAR = 2025
 YEAR_AFTER = 2030
 # Horizontal field, in nT, below which the model's authors warn of compasses, and below which they give the
-# declination up (the "caution" and "blackout" zones of the WMM2025 report; the figures as pygeomag carries them).
+# declination up ("caution" and "blackout" zones of the WMM2025 report; the figures as pygeomag carries them).
 CAUTION_nT = 6000.0
 BLACKOUT_nT = 2000.0
 
@@ -109,6 +109,16 @@ class NorthCorrection:
     def is_true(self) -> bool:
         """Whether azimuths come out from true north."""
         return self.state.is_true
+
+    def checked_for(self, reference: Reference | str) -> NorthCorrection:
+        """Give itself, or raise NorthError where azimuths of another reference are to be corrected."""
+        if checked_reference(reference) is not self.reference:
+            raise NorthError(
+                f"a correction of {self.reference} north does not fit a reading from {reference} north",
+                where="north_reference",
+                expected=f"{self.reference}",
+            )
+        return self
 
     def azimuth_deg(self, azimuth_deg: float) -> float:
         """Correct an azimuth, in degrees; where the correction is unknown it stays as it was read."""

@@ -1,4 +1,4 @@
-"""Two clocks: one that only runs forward, for ages and durations, and the calendar, which can be set wrong."""
+"""Two clocks: one that only runs forward, for ages and durations, and the calendar, which may be wrong."""
 
 from __future__ import annotations
 

@@ -1,8 +1,8 @@
 """The device side of positions, through plyer: the permission asked at use, and fixes collected as they come.
 
 The system calls back on threads of its own; everything it says is put behind a lock until it is read. The
-bridges to Java and Objective-C raise classes of their own, not known before they are loaded, so every error of a
-call into plyer is taken as the device's.
+bridges to Java and Objective-C raise classes of their own, not known before they are loaded, so every error
+of a call into plyer is taken as the device's.
 """
 
 from __future__ import annotations

@@ -1,9 +1,9 @@
-"""The device side of the ports, through plyer: what a phone or tablet has. plyer is loaded when a part is
-used.
+"""The device side of the ports, through plyer, which is loaded when a part is used.
 
 plyer's own quirks are met here: sensors are polled and repeat their last value; a missing part shows as
 NotImplementedError, an empty listener or an error of the bridge to the system; speaking may block for
-seconds.
+seconds. The bridges to Java and Objective-C raise classes of their own, not known before they are loaded, so
+every error of a call into plyer is taken as the device's.
 """
 
 from __future__ import annotations
@@ -106,7 +106,7 @@ class PlyerAttitude:
         for sensor in running:
             try:
                 sensor.disable()
-            except Exception:  # noqa: BLE001, PERF203 (as the module says)
+            except Exception:  # noqa: BLE001 (as the module says)
                 self._status = Status(PortState.FAILED, "a sensor could not be switched off")
 
 
