@@ -58,7 +58,7 @@ ROOMS = {
 TOO_HEAVY = {"kivy", "plyer", "fieldapp", "pandas", "matplotlib", "scipy"}
 """What the computation on a tablet must not load."""
 NETWORK = {"socket", "ssl", "http", "urllib.request", "ftplib", "smtplib", "requests", "urllib3", "aiohttp"}
-WITH_WIDGETS = {"app", "leaves", "drawing", "look", "__main__"}
+WITH_WIDGETS = {"app", "mishaps", "leaves", "drawing", "look", "__main__"}
 """The rooms of fieldapp that may import Kivy."""
 
 CLOCK_MODULES = {"time", "sched", "timeit"}
