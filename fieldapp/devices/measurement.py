@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+import dataclasses
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from analysis.orient.attitude import Laid
@@ -26,8 +27,8 @@ class Measurement:
     """What one measurement gave; `plane` and `line` are from magnetic north, one of them is None.
 
     `scatter_deg` is the root mean square angle of the samples from their mean, `standard_error_deg` that of
-    the mean. `warnings` are names of sensor checks with their words. `correction` leads to true north where it
-    is known.
+    the mean. `warnings` are names of sensor checks with their words. `correction` leads to true north where
+    it is known.
     """
 
     laid: Laid
@@ -41,7 +42,7 @@ class Measurement:
     screen_down: bool
     overturned: bool
     field: FieldCheck | None
-    warnings: Mapping[str, str] = field(default_factory=dict)
+    warnings: Mapping[str, str] = dataclasses.field(default_factory=dict)
 
     @property
     def true_plane(self) -> Plane | None:
