@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 from analysis.orient.north import Reference, correct_once
 
@@ -30,7 +30,7 @@ def corrected_late(reading: Reading, correction: NorthCorrection, revised_at: da
     reading's, and for one that is still unknown.
     """
     correction = correction.checked_for(reading.north_reference)
-    changes: dict[str, float | None] = {}
+    changes: dict[str, Any] = {}
     for name in ("strike_deg", "trend_deg"):
         azimuth = getattr(reading, name)
         if azimuth is not None:

@@ -215,9 +215,8 @@ class Measuring:
 
     def _gap_in(self, fresh: tuple[Sample, ...]) -> bool:
         times = [sample.time_s for sample in (*self._samples[-1:], *fresh)]
-        return any(
-            later - sooner > self._settings.asleep_s for sooner, later in zip(times, times[1:], strict=False)
-        )
+        pairs = itertools.pairwise(times)
+        return any(later - sooner > self._settings.asleep_s for sooner, later in pairs)
 
     def _without_sample(self, now: float) -> Live:
         quiet = now - self._last_sample_s
