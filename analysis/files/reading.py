@@ -260,9 +260,18 @@ def content_id(cells: Mapping[str, str], occurrence: int = 1) -> str:
     revision do not count as content; empty cells and their columns neither. A name-based UUID (version 5,
     RFC 9562).
     """
-    parts = [f"{name}\x1f{cells[name]}" for name in CONTENT_NAMES if cells.get(name)]
-    parts += [f"{name}\x1f{cells[name]}" for name in sorted(cells) if name not in BY_NAME and cells[name]]
-    return str(uuid.uuid5(CONTENT_SPACE, "\x1e".join([*parts, str(occurrence)])))
+    names = [*CONTENT_NAMES, *sorted(name for name in cells if name not in BY_NAME)]
+    return id_of_content([content_part(name, cells[name]) for name in names if name in cells], occurrence)
+
+
+def content_part(name: str, text: str) -> str:
+    """What one cell adds to the content; nothing for an empty one."""
+    return f"{name}\x1f{text}" if text else ""
+
+
+def id_of_content(parts: Iterable[str], occurrence: int = 1) -> str:
+    """Make the id of a content given by its parts, in the order of CONTENT_NAMES and then by name."""
+    return str(uuid.uuid5(CONTENT_SPACE, "\x1e".join([*filter(None, parts), str(occurrence)])))
 
 
 def imported_reading(*, occurrence: int = 1, **fields: object) -> Reading:

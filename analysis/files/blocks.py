@@ -1,0 +1,413 @@
+"""A block of records made into columns, all rows at once.
+
+The fast reader takes only what it is sure of: every row that fails one of its array checks goes to the judge
+of single rows, who either mends it (a decimal comma, a space) or says what is wrong with it. So the rules
+stand in `Reading` and `cells`; the checks here may be stricter than those, never laxer.
+"""
+
+from __future__ import annotations
+
+import io
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+import numpy.typing as npt
+import pandas as pd
+
+from analysis.errors import CsvError, ReadingError
+from analysis.files.cells import cell_value, unguarded
+from analysis.files.columns import BY_NAME, DIP_DIRECTION, MAX_NAME, MAX_TEXT, QUADRANTS, Column, Kind
+from analysis.files.header import column_named
+from analysis.files.reading import QUADRANT_FITS_DEG, Reading
+from analysis.files.rows import NO_ID, SAME_STRIKE_DEG, judge_row
+
+if TYPE_CHECKING:
+    from collections.abc import Hashable
+    from datetime import datetime
+
+    from analysis.files.faults import FaultLog
+    from analysis.files.header import Header
+    from analysis.files.records import Records
+
+HOPELESS_ROWS = 10_000  # so many bad rows, and not one good, are enough to know
+
+Array = npt.NDArray[Any]
+Bools = npt.NDArray[np.bool_]
+
+_CODED = (Kind.NAME, Kind.WORD, Kind.WORDS)
+NO_TIME = np.datetime64("NaT", "ms")
+
+
+@dataclass(slots=True)
+class Coded:
+    """A column of few different values: a code for each row, and the value of each code."""
+
+    codes: npt.NDArray[np.int32]
+    code_by_value: dict[Any, int]
+
+    def code_of(self, value: Hashable) -> int:
+        """The code of a value, a new one if need be."""
+        return self.code_by_value.setdefault(value, len(self.code_by_value))
+
+
+@dataclass(slots=True)
+class Block:
+    """Rows as columns: floats (NaN: none), times (NaT: none), whole numbers (0: none), flags, codes, text."""
+
+    columns: dict[str, Array | Coded]
+    lines: npt.NDArray[np.int32]
+
+    def put(self, row: int, reading: Reading) -> None:
+        """Write a reading into one row."""
+        for name, column in self.columns.items():
+            if name in BY_NAME:
+                value = getattr(reading, name)
+                if name == "reading_id" and value == NO_ID:
+                    value = ""
+            else:
+                value = reading.other.get(name, "")
+            if isinstance(column, Coded):
+                column.codes[row] = column.code_of(value)
+            else:
+                column[row] = stored(value, BY_NAME.get(name))
+
+    def keep(self, rows: Bools) -> None:
+        """Drop all other rows."""
+        for name, column in self.columns.items():
+            if isinstance(column, Coded):
+                column.codes = column.codes[rows]
+            else:
+                self.columns[name] = column[rows]
+        self.lines = self.lines[rows]
+
+
+def stored(value: Any, column: Column | None) -> Any:  # noqa: ANN401 - any value of a reading
+    """What an array holds for a value of a reading: NaN, NaT or 0 for None, milliseconds for times."""
+    kind = Kind.TEXT if column is None else column.kind
+    if value is None:
+        return {Kind.NUMBER: np.nan, Kind.TIME: NO_TIME}.get(kind, 0)
+    return np.datetime64(value.replace(tzinfo=None), "ms") if kind is Kind.TIME else value
+
+
+def dtype_of(column: Column | None) -> str:
+    """The dtype of the array that holds a column; None is a column that is not ours."""
+    if column is None or column.name == "reading_id":
+        return "object"
+    return {
+        Kind.TEXT: "object",
+        Kind.NUMBER: "float64",
+        Kind.WHOLE: "int32",
+        Kind.YES_NO: "bool",
+        Kind.TIME: "M8[ms]",
+    }.get(column.kind, "int32")
+
+
+def is_coded(column: Column) -> bool:
+    """Whether a column is held as codes."""
+    return column.kind in _CODED and column.name != "reading_id"
+
+
+class BlockReader:
+    """Turns the records of one file into blocks of columns, and logs the faults of the others."""
+
+    def __init__(self, header: Header, log: FaultLog) -> None:
+        self.header = header
+        self.log = log
+        self.good = self.bad = 0
+        self._decimal = "."
+        self._columns = [column_named(name) for name in header.names]
+        self._dtypes: dict[int, str] = {}
+        self._blanks: dict[int, list[str]] = {}
+        for place, column in enumerate(self._columns):
+            kind = Kind.TEXT if column is None else column.kind
+            if kind is Kind.NUMBER:
+                self._dtypes[place], self._blanks[place] = "float64", [""]
+            elif kind in (Kind.TEXT, Kind.TIME) or (column is not None and column.name == "reading_id"):
+                self._dtypes[place] = "object"
+            else:
+                self._dtypes[place] = "category"
+
+    def read(self, records: Records) -> Block:
+        """Make columns of the good rows; raises CsvError where nothing but bad rows has come so far."""
+        doubtful = self._not_plain(records)
+        frame = self._frame(_blanked(records, doubtful, self.header.line_end), records)
+        block, refused = self._columns_of(frame, plain=b"'" not in records.text)
+        block.lines = records.lines.astype(np.int32)
+        doubtful |= refused | _unsure(block.columns)
+        if doubtful.any():
+            self._judge(records, block, doubtful)
+        else:
+            self.good += len(records)
+        return block
+
+    def _not_plain(self, records: Records) -> Bools:
+        """Mark the records that the frame reader must not see."""
+        text = records.text
+        marked = records.malformed | (records.cells > len(self.header.names))
+        marked |= records.ends - records.starts > MAX_TEXT
+        if not text.isascii():
+            try:
+                text.decode()
+            except UnicodeDecodeError:
+                high = np.flatnonzero(np.frombuffer(text, dtype=np.uint8) >= 0x80)
+                for row in np.unique(np.searchsorted(records.starts, high, side="right") - 1).tolist():
+                    try:
+                        records.record(row).decode()
+                    except UnicodeDecodeError:
+                        marked[row] = True
+        if b"\0" in text:
+            zeros = np.flatnonzero(np.frombuffer(text, dtype=np.uint8) == 0)
+            marked[np.searchsorted(records.starts, zeros, side="right") - 1] = True
+        if len(records) and not text.endswith(self.header.line_end):
+            marked[-1] |= records.cells[-1] < len(self.header.names)
+        return marked
+
+    def _frame(self, text: bytes, records: Records) -> pd.DataFrame:
+        for decimal in dict.fromkeys((self._decimal, ".", "," if self.header.delimiter == ";" else ".")):
+            try:
+                frame = self._parsed(text, decimal, self._dtypes)
+            except (ValueError, OverflowError):  # some cell is no plain number
+                continue
+            self._decimal = decimal
+            break
+        else:
+            numbers = {place: "category" for place, dtype in self._dtypes.items() if dtype == "float64"}
+            frame = self._parsed(text, ".", self._dtypes | numbers)
+        if len(frame) != len(records):  # pragma: no cover - would be a fault of this package
+            raise CsvError(
+                f"{len(frame)} rows parsed where {len(records)} were cut",
+                where=f"{self.header.file}, line {int(records.lines[0])}",
+                expected="one row a record",
+            )
+        return frame
+
+    def _parsed(self, text: bytes, decimal: str, dtypes: dict[int, str]) -> pd.DataFrame:
+        return pd.read_csv(  # type: ignore[call-overload, no-any-return]  # dtypes by place are not typed
+            io.BytesIO(text),
+            sep=self.header.delimiter,
+            decimal=decimal,
+            header=None,
+            names=range(len(dtypes)),
+            index_col=False,
+            dtype=dtypes,
+            na_values={place: blanks for place, blanks in self._blanks.items() if dtypes[place] == "float64"},
+            keep_default_na=False,
+            skip_blank_lines=False,
+            engine="c",
+            low_memory=False,
+            encoding="utf-8",
+        )
+
+    def _columns_of(self, frame: pd.DataFrame, *, plain: bool) -> tuple[Block, Bools]:
+        columns: dict[str, Array | Coded] = {}
+        refused = np.zeros(len(frame), dtype=bool)
+        for place, (name, column) in enumerate(zip(self.header.names, self._columns, strict=True)):
+            series = frame.pop(place)  # type: ignore[arg-type]  # columns are named by place
+            if column is None:
+                columns[name] = _texts(series, plain=plain)
+            elif column.name == "reading_id":
+                columns[name] = _ids(series, column, refused)
+            elif column.kind is Kind.TEXT:
+                columns[name] = _texts(series, plain=plain)
+            elif column.kind is Kind.TIME:
+                columns[name] = _times(series, column, refused)
+            elif column.kind is Kind.NUMBER:
+                columns[name] = _numbers(series, column, refused, self.header.delimiter)
+            elif is_coded(column):
+                columns[name] = _coded(series, column, refused)
+            else:
+                columns[name] = _looked_up(series, column, refused, self.header.delimiter)
+        if DIP_DIRECTION.name in columns:
+            _take_dip_direction(columns, refused)
+        return Block(columns, np.empty(0, dtype=np.int32)), refused
+
+    def _judge(self, records: Records, block: Block, doubtful: Bools) -> None:
+        good = ~doubtful
+        ended = records.text.endswith(self.header.line_end)
+        self.good += int(np.count_nonzero(good))
+        for row in np.flatnonzero(doubtful).tolist():
+            verdict = judge_row(
+                records.record(row),
+                self.header,
+                int(records.lines[row]),
+                malformed=bool(records.malformed[row]),
+                cut_off=not ended and row == len(records) - 1,
+            )
+            if isinstance(verdict, Reading):
+                block.put(row, verdict)
+                good[row] = True
+                self.good += 1
+            elif verdict is not None:
+                self.log.add(verdict)
+                self.bad += 1
+                if self.bad >= HOPELESS_ROWS and not self.good:
+                    raise CsvError(
+                        f"not one of {self.bad} rows is a reading; first {self.log.kept[0]}",
+                        where=self.header.file,
+                        mend="Mend that, and what is like it.",
+                    )
+        block.keep(good)
+
+
+def _blanked(records: Records, rows: Bools, line_end: bytes) -> bytes:
+    """The text with these records made empty, so that the others keep their places."""
+    if not rows.any():
+        return records.text
+    parts: list[bytes] = []
+    start = 0
+    for row in np.flatnonzero(rows).tolist():
+        parts += (records.text[start : records.starts[row]], line_end)
+        start = int(records.ends[row])
+    return b"".join([*parts, records.text[start:]])
+
+
+def _texts(series: pd.Series[Any], *, plain: bool) -> Array:
+    values: Array = series.to_numpy(dtype=object)
+    if not plain:
+        values = np.array([unguarded(text) for text in values.tolist()], dtype=object)
+    return values
+
+
+def _ids(series: pd.Series[Any], column: Column, refused: Bools) -> Array:
+    texts: list[str] = series.tolist()
+    joined = "".join(texts)
+    if joined.isascii() and joined.isprintable() and " " not in joined and "'" not in joined:
+        too_long = len(max(texts, key=len, default="")) > MAX_NAME
+        if not too_long:
+            return series.to_numpy(dtype=object)
+    for row, text in enumerate(texts):
+        try:
+            texts[row] = str(cell_value(text, column))
+        except ReadingError:
+            refused[row] = True
+    return np.array(texts, dtype=object)
+
+
+def _times(series: pd.Series[Any], column: Column, refused: Bools) -> Array:
+    blank = (series == "").to_numpy()
+    if blank.all():
+        return np.full(len(series), NO_TIME)
+    try:
+        parsed = pd.DatetimeIndex(pd.to_datetime(series, format="ISO8601"))
+    except (ValueError, OverflowError):
+        parsed = None
+    # Words such as nan are read as no time, and times without offset are taken as they come: neither will do.
+    if parsed is not None and parsed.tz is not None and np.array_equal(parsed.isna(), blank):
+        return parsed.tz_convert(None).to_numpy().astype("M8[us]").astype("M8[ms]")
+    values = np.full(len(series), NO_TIME)
+    for row, text in enumerate(series.tolist()):
+        try:
+            time: datetime | Any = cell_value(text, column)
+        except ReadingError:
+            refused[row] = True
+        else:
+            values[row] = stored(time, column)
+    return values
+
+
+def _numbers(series: pd.Series[Any], column: Column, refused: Bools, delimiter: str) -> Array:
+    if series.dtype != np.float64:
+        return _looked_up(series, column, refused, delimiter)
+    values: Array = series.to_numpy()
+    refused |= (values < column.low) | (values > column.high)
+    missing = np.isnan(values)
+    if np.all(missing | (values == 0.0) | (values == 1.0)) and not missing.all():
+        # The frame reader takes true and false for 1 and 0; the judge does not.
+        refused |= ~missing
+    with np.errstate(invalid="ignore", over="ignore"):
+        scale = 10.0**column.decimals
+        values = np.rint(values * scale) / scale + 0.0
+    if column.high == 360.0:
+        values[values == 360.0] = 0.0
+    return values
+
+
+def _categories(series: pd.Series[Any]) -> tuple[Array, list[str]]:
+    return series.cat.codes.to_numpy(), [str(text) for text in series.cat.categories.tolist()]
+
+
+def _coded(series: pd.Series[Any], column: Column, refused: Bools) -> Coded:
+    codes, texts = _categories(series)
+    coded = Coded(np.zeros(0, dtype=np.int32), {})
+    table = np.zeros(len(texts) + 1, dtype=np.int32)
+    unknown = np.zeros(len(texts) + 1, dtype=bool)
+    unknown[-1] = True  # no cell at all
+    for code, text in enumerate(texts):
+        try:
+            value: Any = cell_value(text, column)
+        except ReadingError:
+            unknown[code] = True
+            value = () if column.kind is Kind.WORDS else column.blank
+        table[code] = coded.code_of(value)
+    coded.codes = table[codes]
+    refused |= unknown[codes]
+    return coded
+
+
+def _looked_up(series: pd.Series[Any], column: Column, refused: Bools, delimiter: str) -> Array:
+    """The values of a column of numbers or flags, each different cell read once."""
+    codes, texts = _categories(series)
+    table = np.zeros(len(texts) + 1, dtype=dtype_of(column))
+    unknown = np.zeros(len(texts) + 1, dtype=bool)
+    unknown[-1] = True  # no cell at all
+    for code, text in enumerate(texts):
+        try:
+            table[code] = stored(cell_value(text, column, delimiter), column)
+        except ReadingError:
+            unknown[code] = True
+    refused |= unknown[codes]
+    return table[codes]
+
+
+def _take_dip_direction(columns: dict[str, Array | Coded], refused: Bools) -> None:
+    direction = columns.pop(DIP_DIRECTION.name)
+    assert not isinstance(direction, Coded)  # noqa: S101 - a column of numbers
+    strike = np.rint(np.mod(direction - 90.0, 360.0) * 1e4) / 1e4
+    strike[strike == 360.0] = 0.0
+    given = columns.get("strike_deg")
+    if given is None or isinstance(given, Coded):
+        columns["strike_deg"] = strike
+        return
+    apart = np.abs(np.mod(given - strike + 180.0, 360.0) - 180.0)
+    refused |= apart > SAME_STRIKE_DEG
+    columns["strike_deg"] = np.where(np.isnan(given), strike, given)
+
+
+def _unsure(columns: dict[str, Array | Coded]) -> Bools:
+    """Mark the rows whose columns do not go together, as `Reading` would have them."""
+    feature = columns["feature"]
+    assert isinstance(feature, Coded)  # noqa: S101 - a column of words
+    rows = len(feature.codes)
+    plane = np.zeros(len(feature.code_by_value) + 1, dtype=bool)
+    for value, code in feature.code_by_value.items():
+        plane[code] = value in ("bedding", "cleavage")
+    is_plane = plane[feature.codes]
+    present = {
+        name: ~np.isnan(_floats(columns, name, rows))
+        for name in ("strike_deg", "dip_deg", "trend_deg", "plunge_deg", "latitude_deg", "longitude_deg")
+    }
+    marked: Bools = present["strike_deg"] != is_plane
+    marked |= present["dip_deg"] != is_plane
+    marked |= present["trend_deg"] == is_plane
+    marked |= present["plunge_deg"] == is_plane
+    marked |= present["latitude_deg"] != present["longitude_deg"]
+    overturned = columns.get("overturned")
+    if isinstance(overturned, np.ndarray):
+        marked |= overturned & ~is_plane
+    quadrant = columns.get("dip_quadrant")
+    if isinstance(quadrant, Coded) and set(quadrant.code_by_value) != {""}:
+        azimuths = np.full(len(quadrant.code_by_value) + 1, np.nan)
+        for value, code in quadrant.code_by_value.items():
+            azimuths[code] = QUADRANTS.get(value, np.nan)
+        azimuth = azimuths[quadrant.codes]
+        given = ~np.isnan(azimuth)
+        apart = np.abs(np.mod(_floats(columns, "strike_deg", rows) - azimuth - 90.0, 360.0) - 180.0)
+        # The judge knows about flat beds and warnings kept.
+        marked |= given & ~(apart <= QUADRANT_FITS_DEG)
+    return marked
+
+
+def _floats(columns: dict[str, Array | Coded], name: str, rows: int) -> Array:
+    column = columns.get(name)
+    return column if isinstance(column, np.ndarray) else np.broadcast_to(np.nan, rows)
