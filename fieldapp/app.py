@@ -1,0 +1,278 @@
+"""The app: wires presenter, devices and leaves together, and decides nothing itself.
+
+`open_app` is the one way in. Nothing here or below imports pandas or matplotlib; a hand-over does when it is made.
+"""
+
+from __future__ import annotations
+
+import os
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+os.environ.setdefault("KIVY_NO_ARGS", "1")  # the command line is ours
+
+from kivy.config import Config
+
+Config.set("graphics", "multisamples", "0")  # our lines and keys have soft edges of their own
+Config.set("input", "mouse", "mouse,disable_multitouch")  # a right click leaves no red dot
+Config.set("kivy", "exit_on_escape", "0")  # Esc clears the entry
+
+from fieldapp.look.fonts import register
+
+register()
+
+from kivy.app import App
+from kivy.base import EventLoop
+from kivy.clock import Clock, mainthread
+from kivy.core.window import Window
+from kivy.metrics import Metrics
+from kivy.properties import ObjectProperty
+
+from fieldapp.leaves.keyboard import Keyboard
+from fieldapp.leaves.log import LogLeaf
+from fieldapp.leaves.outline import Outline
+from fieldapp.look.form import Form
+from fieldapp.look.theme import DARK, LIGHT
+from fieldapp.mishaps import MishapLog, watch
+from fieldapp.outcrop import open_page
+from fieldapp.states import EVERYTHING, Change, SignalKind
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from kivy.uix.widget import Widget
+
+    from fieldapp.leaves.parts import Sheet
+    from fieldapp.outcrop import OutcropPage
+    from fieldapp.states import Signal
+
+AGE_TICK_S = 1.0  # the age of a position is told to the second at most
+NAME = "Hingewise"
+
+
+def now_utc() -> datetime:
+    """The time, aware, UTC."""
+    return datetime.now(UTC)
+
+
+class HingewiseApp(App):
+    """The running app. Leaves read `theme`, `form` and `page`."""
+
+    theme = ObjectProperty(LIGHT)
+    form = ObjectProperty(Form(800.0, 1280.0))
+
+    def __init__(
+        self,
+        notebook_path: Path,
+        *,
+        demo: bool = False,
+        devices: object = None,
+        clock: Callable[[], datetime] = now_utc,
+        **kwargs: object,
+    ) -> None:
+        super().__init__(**kwargs)
+        self.title = NAME
+        self.notebook_path = Path(notebook_path)
+        self.demo = demo
+        self.devices = devices
+        self.clock_utc = clock
+        self.mishaps = MishapLog(self.notebook_path.parent / "mishaps.log", clock)
+        self.outline: Outline | None = None
+        self.page: OutcropPage | None = None
+        self._keyboard: Keyboard | None = None
+        self._home_path = self.notebook_path
+        self._executor: object = None
+        self._stop_listening: list[Callable[[], None]] = []
+
+    # Coming and going
+
+    def build(self) -> Widget:
+        """Open the notebook and make the page with the Log leaf; other leaves are made when first shown."""
+        watch(self.mishaps, self._tell_mishap)
+        first_time = not self.notebook_path.exists()
+        self._open(self.notebook_path, demo=self.demo)
+        self._choose_theme()
+        self.form = self._form_now()
+        self.outline = Outline(self._make_leaf)
+        self.outline.form = self.form
+        self._keyboard = Keyboard(self)
+        Window.bind(size=self._window_changed, on_key_down=self._keyboard.key_down)
+        Metrics.bind(density=self._window_changed, fontscale=self._window_changed)
+        self.outline.refresh(EVERYTHING)
+        if first_time and not self.demo:
+            Clock.schedule_once(lambda _dt: self.open_sheet("safety"), 0)
+        return self.outline
+
+    def on_start(self) -> None:
+        """Listen to the devices once the first frame stands."""
+        Clock.schedule_once(lambda _dt: self._start_devices(), 0)
+
+    def on_pause(self) -> bool:
+        """Leave the screen: everything kept is committed already; the draft is saved, the sensors stop."""
+        self.page.flush()
+        self._stop_devices()
+        return True
+
+    def on_resume(self) -> None:
+        """Come back: textures may be gone with the GL context."""
+        from fieldapp.drawing.paint import PAINTS
+
+        PAINTS.forget_words()
+        self._start_devices()
+        self.outline.refresh(EVERYTHING)
+
+    def on_stop(self) -> None:
+        """Close the notebook."""
+        self._stop_devices()
+        Window.unbind(size=self._window_changed, on_key_down=self._keyboard.key_down)
+        Metrics.unbind(density=self._window_changed, fontscale=self._window_changed)
+        self._close()
+
+    def _open(self, path: Path, *, demo: bool) -> None:
+        from concurrent.futures import ThreadPoolExecutor
+
+        from fieldapp.dispatch import ThreadDispatch
+
+        self._executor = ThreadPoolExecutor(max_workers=1, thread_name_prefix="forecast")
+        dispatch = ThreadDispatch(self._executor, mainthread(lambda call: call()))
+        if demo:
+            from fieldapp.notebook.demo import make_demo
+
+            make_demo(path, self.clock_utc)
+        north = getattr(self.devices, "to_true_north", None)
+        self.page = open_page(path, clock=self.clock_utc, dispatch=dispatch, to_true_north=north, demo=demo)
+        self.notebook_path, self.demo = path, demo
+        self._stop_listening = [self.page.listen(self._changed), self.page.on_signal(self._signalled)]
+
+    def _close(self) -> None:
+        for stop in self._stop_listening:
+            stop()
+        self._stop_listening = []
+        if self.page is not None:
+            self.page.close()
+        if self._executor is not None:
+            self._executor.shutdown(wait=False, cancel_futures=True)
+
+    def change_notebook(self, path: Path, *, demo: bool) -> None:
+        """Open another notebook: the demo, or the geologist's own again."""
+        self._close()
+        self._open(path, demo=demo)
+        self._choose_theme()
+        self.outline.refresh(EVERYTHING)
+
+    def open_demo(self) -> None:
+        """Open the invented notebook; it is a file of its own and cannot mix with real readings."""
+        self.change_notebook(demo_path_beside(self._home_path), demo=True)
+
+    def leave_demo(self) -> None:
+        """Go back to the geologist's own notebook."""
+        home = self._home_path
+        self.change_notebook(home.with_name("notebook.db") if self.demo and home == self.notebook_path else home, demo=False)
+
+    # Wiring
+
+    def _changed(self, change: Change) -> None:
+        if change & Change.SETTINGS:
+            self._choose_theme()
+        if self.outline is not None:
+            self.outline.refresh(change)
+
+    def _signalled(self, signal: Signal) -> None:
+        devices = self.devices
+        if devices is None:
+            return
+        if signal.kind is SignalKind.KEPT:
+            devices.vibrate(0.04)
+        elif signal.kind is SignalKind.VERDICT:
+            devices.vibrate(0.25)
+        if signal.spoken:
+            devices.speak(signal.spoken)
+
+    def _start_devices(self) -> None:
+        if self.devices is not None:
+            self.devices.start(self.page)
+
+    def _stop_devices(self) -> None:
+        if self.devices is not None:
+            self.devices.stop()
+
+    def measure(self) -> None:
+        """Read an attitude with the sensors into the draft."""
+        if self.devices is not None:
+            self.devices.measure(self.page)
+
+    def _choose_theme(self) -> None:
+        self.theme = DARK if self.page.settings.appearance.value == "dark" else LIGHT
+
+    def _form_now(self) -> Form:
+        density = Metrics.density
+        width, height = Window.size
+        return Form(width / density, height / density, Metrics.fontscale)
+
+    def _window_changed(self, *_: object) -> None:
+        form = self._form_now()
+        if form != self.form:
+            self.form = form
+            self.outline.form = form
+
+    def _make_leaf(self, name: str) -> Widget:
+        if name == "Log":
+            return LogLeaf()
+        if name == "Check":
+            from fieldapp.leaves.check import CheckLeaf
+
+            return CheckLeaf()
+        if name == "Fault":
+            from fieldapp.leaves.fault import FaultLeaf
+
+            return FaultLeaf()
+        from fieldapp.leaves.handover import HandOverLeaf
+
+        return HandOverLeaf()
+
+    def open_sheet(self, name: str, **values: object) -> Sheet:
+        """Lay a sheet over the page: "settings", "place", "readings", "note", "number" or "safety"."""
+        from fieldapp.leaves.sheets import make_sheet
+
+        return make_sheet(name, **values).open(self.outline)
+
+    def close_sheets(self) -> None:
+        """Take every sheet away."""
+        while self.outline.sheet is not None:
+            self.outline.sheet.close()
+
+    def mend(self, reading_id: str) -> None:
+        """Load a past reading into the entry and show the Log leaf."""
+        self.page.mend(reading_id)
+        self.page.name_nothing()
+        if "Log" not in self.outline.names_shown:
+            self.outline.show("Log")
+
+    def share(self, path: Path) -> None:
+        """Hand a file to the device's own sharing, where there is one."""
+        share = getattr(self.devices, "share", None)
+        if share is not None:
+            share(path)
+
+    def _tell_mishap(self, text: str) -> None:
+        if self.outline is not None:
+            self.outline.tell_trouble(text)
+
+
+def demo_path_beside(notebook_path: Path) -> Path:
+    """Where the invented notebook lies: beside the real one, under a name of its own."""
+    return notebook_path.with_name("demo-mossgarth.db")
+
+
+def open_app(notebook_path: str | os.PathLike[str], *, demo: bool = False) -> None:
+    """Open the app on a notebook and return when its window is closed.
+
+    With `demo` the file is the invented notebook, made there unless it exists, and the page says so.
+    """
+    path = Path(notebook_path)
+    path.parent.mkdir(parents=True, exist_ok=True)
+    HingewiseApp(path, demo=demo).run()
+
+
+__all__ = ["AGE_TICK_S", "EventLoop", "HingewiseApp", "demo_path_beside", "open_app"]

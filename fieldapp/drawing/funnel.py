@@ -1,0 +1,212 @@
+"""The narrowing funnel: the transection against the count of readings, its valid interval closing in."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from kivy.clock import Clock
+from kivy.graphics import Color, InstructionGroup, Point, Rectangle
+from kivy.metrics import dp, sp
+from kivy.properties import NumericProperty, ObjectProperty
+from kivy.uix.widget import Widget
+
+from fieldapp.drawing import placing, strokes
+from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.scene import FunnelScene
+from fieldapp.look.theme import LIGHT
+
+if TYPE_CHECKING:
+    from fieldapp.look.theme import Theme
+
+MOST_DOTS = 24  # more readings than this and the line alone is clearer
+
+
+def limits_deg(scene: FunnelScene) -> tuple[float, float]:
+    """The lowest and highest angle shown: the band and zero always, the interval as it is now, early ones cut."""
+    known = np.isfinite(scene.low_deg) & np.isfinite(scene.high_deg)
+    low, high = -1.4 * scene.margin_deg, 1.4 * scene.margin_deg
+    drawn = scene.delta_deg[np.isfinite(scene.delta_deg)]
+    if len(drawn):
+        late = drawn[len(drawn) // 3 :]
+        low, high = min(low, float(late.min()) - 2.0), max(high, float(late.max()) + 2.0)
+    if known.any():
+        lows, highs = scene.low_deg[known], scene.high_deg[known]
+        start = len(lows) // 2
+        low, high = min(low, float(lows[start:].min()) - 1.0), max(high, float(highs[start:].max()) + 1.0)
+    return max(low, -90.0), min(high, 90.0)
+
+
+class NarrowingFunnel(Widget):
+    """The funnel; set `scene` and `theme`."""
+
+    scene = ObjectProperty(FunnelScene(), rebind=False)
+    theme = ObjectProperty(LIGHT)
+    words_sp = NumericProperty(14.0)
+
+    def __init__(self, **kwargs: object) -> None:
+        self.words_boxes: dict[str, placing.Box] = {}
+        self.redraws = 0
+        self._box = (0.0, 0.0, 1.0, 1.0)
+        self._span = (0.0, 1.0, -1.0, 1.0)
+        super().__init__(**kwargs)
+        self._layer = InstructionGroup()
+        self.canvas.add(self._layer)
+        self._redraw = Clock.create_trigger(self.redraw, -1)
+        self.bind(pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self._redraw()
+
+    def to_page(self, counts: np.ndarray, angles_deg: np.ndarray) -> np.ndarray:
+        """Places (n, 2) in pixels; angles beyond the frame lie on its edge."""
+        left, bottom, right, top = self._box
+        first, last, low, high = self._span
+        x = left + (np.asarray(counts, dtype=float) - first) / (last - first) * (right - left)
+        y = bottom + (np.clip(angles_deg, low, high) - low) / (high - low) * (top - bottom)
+        return np.stack(np.broadcast_arrays(x, y), axis=-1)
+
+    def redraw(self, *_: object) -> None:
+        """Draw everything anew; the trigger calls it once a frame at most."""
+        if self.width < dp(80) or self.height < dp(60):
+            return
+        self.redraws += 1
+        group, scene = self._layer, self.scene
+        group.clear()
+        self.words_boxes = {}
+        self._measure(scene)
+        self._draw_axes(group)
+        if len(scene.counts):
+            self._draw_history(group)
+            self._draw_forecast(group)
+        self._draw_words(group)
+
+    def _measure(self, scene: FunnelScene) -> None:
+        low, high = limits_deg(scene)
+        counts = scene.counts
+        first = float(counts[0]) if len(counts) else 0.0
+        last = float(counts[-1]) if len(counts) else 20.0
+        if len(scene.forecast_counts):
+            last = max(last, float(scene.forecast_counts[-1]))
+        if scene.settles_at is not None:
+            last = max(last, scene.settles_at)
+        last = max(last + 0.04 * (last - first), first + 4.0)
+        self._span = (first, last, low, high)
+        line = sp(self.words_sp) * 1.35
+        gutter = max(PAINTS.words(text, sp(self.words_sp)).width for text in ("−20°", "+20°")) + dp(8)
+        self._box = (self.x + gutter, self.y + 2.1 * line, self.right - dp(6), self.top - 1.25 * line)
+
+    def _draw_axes(self, group: InstructionGroup) -> None:
+        theme = self.theme
+        left, bottom, right, top = self._box
+        first, last, low, high = self._span
+        margin = self.scene.margin_deg
+        band = self.to_page(np.array([first, first, last, last]), np.array([-margin, margin, margin, -margin]))
+        add_mesh(group, theme.card, [strokes.polygon([(left, bottom), (right, bottom), (right, top), (left, top)])])
+        add_mesh(group, theme.band, [strokes.polygon(band)])
+        zero = self.to_page(np.array([first, last]), np.zeros(2))
+        edges = [strokes.line([(left, top), (left, bottom), (right, bottom)], dp(1.2))]
+        line = sp(self.words_sp) * 1.35
+        # Words on the angle axis stand at least a line and a half apart.
+        step = placing.nice_step(high - low, max(int((top - bottom) / (1.6 * line)), 1))
+        for angle in np.arange(np.ceil(low / step) * step, high + 1e-9, step):
+            place = self.to_page(np.array([first]), np.array([angle]))[0]
+            edges.append(strokes.line([place, place - (dp(5), 0)], dp(1.2)))
+            text = f"{abs(angle):g}°" if abs(angle) < 1e-9 else f"{'+' if angle > 0 else '−'}{abs(angle):g}°"
+            words = PAINTS.words(text, sp(self.words_sp))
+            self.words_boxes[f"y {text}"] = add_words(
+                group, words, theme.muted, left - dp(7) - words.width, place[1] - words.height / 2
+            )
+        widest = PAINTS.words("0000", sp(self.words_sp)).width
+        step = max(placing.nice_step(last - first, max(int((right - left) / (1.4 * widest)), 1)), 1.0)
+        for count in np.arange(np.ceil(first / step) * step, last + 1e-9, step):
+            place = self.to_page(np.array([count]), np.array([low]))[0]
+            words = PAINTS.words(f"{count:g}", sp(self.words_sp))
+            edge = place[0] - words.width / 2
+            if edge < self.x or edge + words.width > self.right:
+                continue
+            edges.append(strokes.line([place, place - (0, dp(5))], dp(1.2)))
+            self.words_boxes[f"x {count:g}"] = add_words(
+                group, words, theme.muted, edge, bottom - dp(6) - words.height
+            )
+        add_mesh(group, theme.muted, edges)
+        add_mesh(group, theme.ink, [strokes.line(zero, dp(1.6))])
+
+    def _draw_history(self, group: InstructionGroup) -> None:
+        scene, theme = self.scene, self.theme
+        known = np.isfinite(scene.low_deg) & np.isfinite(scene.high_deg)
+        if known.any():
+            upper = self.to_page(scene.counts[known], scene.high_deg[known])
+            lower = self.to_page(scene.counts[known], scene.low_deg[known])
+            add_mesh(group, theme.shade, [strokes.between(upper, lower)])
+            add_mesh(group, theme.accent, [strokes.line(upper, dp(2)), strokes.line(lower, dp(2))])
+        drawn = np.isfinite(scene.delta_deg)
+        if drawn.any():
+            middle = self.to_page(scene.counts[drawn], scene.delta_deg[drawn])
+            add_mesh(group, theme.ink, [strokes.line(middle, dp(2))])
+            dots = middle if len(middle) <= MOST_DOTS else middle[-1:]
+            size = round(dp(8))
+            group.add(Color(*theme.ink))
+            group.add(
+                Point(points=dots.ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size))
+            )
+
+    def _draw_forecast(self, group: InstructionGroup) -> None:
+        scene, theme = self.scene, self.theme
+        parts = [
+            strokes.dashed(self.to_page(scene.forecast_counts, side), dp(2), dp(2.5), dp(5))
+            for side in (scene.forecast_low_deg, scene.forecast_high_deg)
+            if len(side)
+        ]
+        if scene.settles_at is not None:
+            _, _, low, high = self._span
+            upright = self.to_page(np.array([scene.settles_at] * 2), np.array([low, high]))
+            parts.append(strokes.dashed(upright, dp(2), dp(7), dp(5)))
+        add_mesh(group, theme.accent, parts)
+
+    def _draw_words(self, group: InstructionGroup) -> None:
+        scene, theme = self.scene, self.theme
+        left, bottom, right, top = self._box
+        size = sp(self.words_sp)
+        taken = self.words_boxes
+
+        def put(name: str, text: str, colour: tuple, x: float, y: float, *, bold: bool = False) -> None:
+            words = PAINTS.words(text, size, bold=bold)
+            x = min(max(x, self.x), self.right - words.width)
+            taken[name] = add_words(group, words, colour, x, y)
+
+        put("up", "clockwise +", theme.muted, left - dp(2), top + dp(2))
+        names = PAINTS.words("readings in the fold →", size)
+        put("across", "readings in the fold →", theme.muted, right - names.width, self.y)
+        band = PAINTS.words(f"within ±{scene.margin_deg:g}°", size)
+        first, last, low, high = self._span
+        low_edge = self.to_page(np.array([first]), np.array([-scene.margin_deg]))[0][1]
+        if len(scene.counts):
+            put("band", f"within ±{scene.margin_deg:g}°", theme.ink, right - band.width - dp(5), low_edge + dp(1))
+        if not len(scene.counts):
+            self._put_wrapped(group, scene.why_empty)
+        if scene.settles_at is not None:
+            text = "settles about here"
+            words = PAINTS.words(text, size, bold=True)
+            x = self.to_page(np.array([scene.settles_at]), np.zeros(1))[0][0] - words.width - dp(6)
+            x = max(x, left + dp(4))
+            red, green, blue, _ = theme.card
+            y = top - words.height - dp(2)
+            group.add(Color(red, green, blue, 0.8))
+            group.add(Rectangle(pos=(x - dp(2), y), size=(words.width + dp(4), words.height)))
+            taken["settles"] = add_words(group, words, theme.accent, x, y)
+
+    def _put_wrapped(self, group: InstructionGroup, text: str) -> None:
+        left, bottom, right, top = self._box
+        size = sp(self.words_sp)
+        lines: list[str] = []
+        for word in text.split():
+            longer = f"{lines[-1]} {word}" if lines else word
+            if lines and PAINTS.words(longer, size).width <= right - left - dp(24):
+                lines[-1] = longer
+            else:
+                lines.append(word)
+        high = size * 1.35
+        y = (bottom + top) / 2 + high * len(lines) / 2
+        for number, words_line in enumerate(lines):
+            words = PAINTS.words(words_line, size)
+            y -= high
+            self.words_boxes[f"empty {number}"] = add_words(group, words, self.theme.muted, left + dp(12), y)

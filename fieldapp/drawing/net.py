@@ -1,0 +1,277 @@
+"""The equal-area net, lower hemisphere: readings, girdle, hinge, mean intersection and its trail, mean cleavage.
+
+Driven by a `NetScene`; drawn with a handful of batched instructions and only when something changed.
+Touching a reading dispatches `on_reading` with its key, touching a mean dispatches `on_mean` with its name.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from kivy.clock import Clock
+from kivy.graphics import Color, InstructionGroup, Point, Rectangle
+from kivy.metrics import dp, sp
+from kivy.properties import NumericProperty, ObjectProperty
+from kivy.uix.widget import Widget
+
+from analysis.orient import vectors
+from fieldapp.drawing import placing, sphere, strokes
+from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.scene import LETTERS, MARKERS, Mean, NetScene
+from fieldapp.look.theme import LIGHT
+
+if TYPE_CHECKING:
+    from analysis.orient.features import Feature
+    from fieldapp.look.theme import Rgba, Theme
+
+REACH_DP = 26.0  # a thumb in a glove need not hit a dot exactly
+MOST_POINTS = 16_000  # one Point instruction holds 2**14
+HINGE, INTERSECTION, CLEAVAGE = "hinge", "mean intersection", "mean cleavage"
+
+
+class EqualAreaNet(Widget):
+    """The net; set `scene` and `theme`."""
+
+    scene = ObjectProperty(NetScene(), rebind=False)
+    theme = ObjectProperty(LIGHT)
+    words_sp = NumericProperty(15.0)
+    marker_dp = NumericProperty(11.0)
+
+    def __init__(self, **kwargs: object) -> None:
+        self.register_event_type("on_reading")
+        self.register_event_type("on_mean")
+        self.register_event_type("on_miss")
+        self.words_boxes: dict[str, placing.Box] = {}
+        self.redraws = 0
+        self._keys: list[str] = []
+        self._places = np.zeros((0, 2))
+        self._means: dict[str, np.ndarray] = {}
+        super().__init__(**kwargs)
+        self._frame = InstructionGroup()
+        self._layer = InstructionGroup()
+        self.canvas.add(self._frame)
+        self.canvas.add(self._layer)
+        self._redraw = Clock.create_trigger(self.redraw, -1)
+        self.bind(pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self._redraw()
+
+    # Geometry
+
+    @property
+    def radius(self) -> float:
+        """Radius of the net in pixels; room is left for the N above it."""
+        return max(min(self.width, self.height - sp(self.words_sp) * 2.2) / 2.0 - dp(7), 1.0)
+
+    @property
+    def middle(self) -> tuple[float, float]:
+        """The net's centre in pixels."""
+        return (self.center_x, self.y + dp(7) + self.radius + max(0.0, (self.height - self._tall) / 2.0))
+
+    @property
+    def _tall(self) -> float:
+        return 2.0 * self.radius + dp(14) + sp(self.words_sp) * 2.2
+
+    def to_page(self, v: np.ndarray) -> np.ndarray:
+        """Places (n, 2) in pixels of vectors (n, 3) of any sign."""
+        return np.asarray(vectors.equal_area_xy(v) * self.radius + np.array(self.middle))
+
+    def _curve(self, v: np.ndarray) -> np.ndarray:
+        return np.asarray(sphere.net_xy(v) * self.radius + np.array(self.middle))
+
+    # Drawing
+
+    def redraw(self, *_: object) -> None:
+        """Draw everything anew; the trigger calls it once a frame at most."""
+        if self.width < dp(40) or self.height < dp(40):
+            return
+        self.redraws += 1
+        self.words_boxes = {}
+        self._draw_frame()
+        self._draw_scene()
+
+    def _draw_frame(self) -> None:
+        group, theme, radius = self._frame, self.theme, self.radius
+        group.clear()
+        rim = strokes.circle(self.middle, radius)
+        add_mesh(group, theme.card, [strokes.polygon(rim)])
+        centre = np.array(self.middle)
+        ticks = []
+        for azimuth in range(0, 360, 10):
+            turn = np.radians(azimuth)
+            ray = np.array([np.sin(turn), np.cos(turn)])
+            long = dp(13) if azimuth % 90 == 0 else dp(6)
+            width = dp(2) if azimuth % 90 == 0 else dp(1.2)
+            ticks.append(strokes.line([centre + ray * radius, centre + ray * (radius - long)], width))
+        cross = [
+            strokes.line([centre - (dp(5), 0), centre + (dp(5), 0)], dp(1.2)),
+            strokes.line([centre - (0, dp(5)), centre + (0, dp(5))], dp(1.2)),
+        ]
+        add_mesh(group, theme.ink, [strokes.line(rim, dp(2), closed=True), *ticks])
+        add_mesh(group, theme.rule, cross)
+        words = PAINTS.words("N", sp(self.words_sp), bold=True)
+        self.words_boxes["N"] = add_words(
+            group, words, theme.ink, self.middle[0] - words.width / 2, self.middle[1] + radius + dp(2)
+        )
+
+    def _draw_scene(self) -> None:
+        group, theme, scene = self._layer, self.theme, self.scene
+        group.clear()
+        if scene.girdle_pole is not None:
+            girdle = self._curve(sphere.great_circle(scene.girdle_pole))
+            add_mesh(group, theme.muted, [strokes.dashed(girdle, dp(1.4), dp(3), dp(5))])
+        if scene.cleavage is not None:
+            circle = self._curve(sphere.great_circle(scene.cleavage.vector))
+            add_mesh(group, theme.second, [strokes.line(circle, dp(2.4))])
+        self._draw_readings(group)
+        self._draw_trail(group)
+        self._means = {}
+        if scene.hinge is not None:
+            self._draw_mean(group, HINGE, scene.hinge, theme.ink, "disc")
+        if scene.intersection is not None:
+            self._draw_mean(group, INTERSECTION, scene.intersection, theme.accent, "diamond")
+        self._draw_chosen(group)
+        self._draw_labels(group)
+
+    def _colour_of(self, feature: Feature) -> Rgba:
+        return {"cleavage": self.theme.second, "intersection": self.theme.accent}.get(feature.value, self.theme.ink)
+
+    def _draw_readings(self, group: InstructionGroup) -> None:
+        keys: list[str] = []
+        all_places = [np.zeros((0, 2))]
+        size = round(dp(self.marker_dp))
+        for feature, points in self.scene.points.items():
+            if not len(points.vectors):
+                continue
+            places = self.to_page(points.vectors)
+            keys.extend(points.keys)
+            all_places.append(places)
+            red, green, blue, _ = self._colour_of(feature)
+            texture = PAINTS.marker(MARKERS[feature], size)
+            # Readings of other outcrops stay in the picture, softer.
+            for part, alpha in ((~points.here, 0.5), (points.here, 1.0)):
+                chosen = places[part]
+                if not len(chosen):
+                    continue
+                group.add(Color(red, green, blue, alpha))
+                for start in range(0, len(chosen), MOST_POINTS):
+                    batch = chosen[start : start + MOST_POINTS]
+                    group.add(Point(points=batch.ravel().tolist(), pointsize=size / 2.0, texture=texture))
+        self._keys, self._places = keys, np.concatenate(all_places)
+
+    def _draw_trail(self, group: InstructionGroup) -> None:
+        trail = np.asarray(self.scene.trail)
+        if len(trail) < 2:
+            return
+        # An axis near the rim may hop to the other side of the net; the line is not drawn across.
+        places = self.to_page(trail)
+        near = np.linalg.norm(np.diff(places, axis=0), axis=1) < self.radius
+        pieces = np.split(places, np.flatnonzero(~near) + 1)
+        add_mesh(group, self.theme.accent, [strokes.line(piece, dp(1.4)) for piece in pieces])
+        red, green, blue, _ = self.theme.accent
+        group.add(Color(red, green, blue, 0.8))
+        size = round(dp(5))
+        group.add(
+            Point(points=places[:-1].ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size))
+        )
+
+    def _draw_mean(self, group: InstructionGroup, name: str, mean: Mean, colour: Rgba, shape: str) -> None:
+        place = self.to_page(mean.vector[np.newaxis, :])[0]
+        self._means[name] = place
+        if mean.ellipse is not None:
+            e = mean.ellipse
+            curve = sphere.ellipse(mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg)
+            pieces = [self._curve(piece) for piece in sphere.lower_pieces(curve)]
+            if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
+                red, green, blue, _ = colour
+                add_mesh(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
+            add_mesh(group, colour, [strokes.line(piece, dp(2)) for piece in pieces])
+        size = round(dp(self.marker_dp * 1.7))
+        ground = PAINTS.marker("disc", size + round(dp(4)))
+        half = ground.width / 2.0
+        group.add(Color(*self.theme.card))
+        group.add(Rectangle(texture=ground, pos=(place[0] - half, place[1] - half), size=ground.size))
+        group.add(Color(*colour))
+        texture = PAINTS.marker(shape, size)
+        group.add(
+            Rectangle(texture=texture, pos=(place[0] - size / 2.0, place[1] - size / 2.0), size=(size, size))
+        )
+        if shape == "diamond":
+            inner = PAINTS.marker("disc", round(size * 0.34))
+            half = inner.width / 2.0
+            group.add(Rectangle(texture=inner, pos=(place[0] - half, place[1] - half), size=inner.size))
+
+    def _draw_chosen(self, group: InstructionGroup) -> None:
+        if self.scene.chosen_key in self._keys:
+            place = self._places[self._keys.index(self.scene.chosen_key)]
+            add_mesh(group, self.theme.ink, [strokes.line(strokes.circle(place, dp(13), 48), dp(2.5), closed=True)])
+
+    def _draw_labels(self, group: InstructionGroup) -> None:
+        scene, theme = self.scene, self.theme
+        named = [(HINGE, scene.hinge, theme.ink), (INTERSECTION, scene.intersection, theme.accent)]
+        bounds = (self.x, self.y, self.right, self.middle[1] + self.radius)
+        marks = np.concatenate([self._places, *(place[np.newaxis, :] for place in self._means.values())])
+        if scene.cleavage is not None:
+            # Words keep off the great circle too.
+            marks = np.concatenate([marks, self._curve(sphere.great_circle(scene.cleavage.vector, 61))])
+        for name, mean, colour in named:
+            if mean is None or not mean.label:
+                continue
+            words = PAINTS.words(mean.label, sp(self.words_sp), bold=True)
+            box = placing.place_beside(
+                self._means[name],
+                words.size,
+                gap=dp(self.marker_dp) * 1.3,
+                taken=list(self.words_boxes.values()),
+                points=marks,
+                bounds=bounds,
+            )
+            red, green, blue, _ = theme.card
+            group.add(Color(red, green, blue, 0.8))
+            group.add(Rectangle(pos=(box[0] - dp(2), box[1]), size=(words.width + dp(4), words.height)))
+            self.words_boxes[name] = add_words(group, words, colour, box[0], box[1])
+
+    # Touch
+
+    def on_touch_down(self, touch: object) -> bool:
+        """Name the reading or mean nearest to the touch, within a thumb's reach."""
+        if not self.collide_point(*touch.pos):
+            return super().on_touch_down(touch)
+        found = self.at(touch.x, touch.y)
+        if found is None:
+            self.dispatch("on_miss")
+        else:
+            kind, name = found
+            self.dispatch("on_mean" if kind == "mean" else "on_reading", name)
+        return True
+
+    def at(self, x: float, y: float) -> tuple[str, str] | None:
+        """What lies nearest to a place in pixels: ("mean", name), ("reading", key) or None beyond reach."""
+        reach = dp(REACH_DP)
+        here = np.array([x, y])
+        # A mean is drawn larger and is meant when the touch is on it.
+        best, nearest = None, reach
+        if len(self._places):
+            away = np.linalg.norm(self._places - here, axis=1)
+            index = int(np.argmin(away))
+            if away[index] < nearest:
+                best, nearest = ("reading", self._keys[index]), float(away[index])
+        for name, place in self._means.items():
+            away_mean = float(np.linalg.norm(place - here)) - dp(self.marker_dp * 0.8)
+            if away_mean < nearest:
+                best, nearest = ("mean", name), away_mean
+        return best
+
+    def on_reading(self, key: str) -> None:
+        """A reading was touched."""
+
+    def on_mean(self, name: str) -> None:
+        """A mean was touched."""
+
+    def on_miss(self) -> None:
+        """Nothing lay within reach of the touch."""
+
+
+def legend_of(feature: Feature) -> str:
+    """The letter of a feature, for words beside its marker."""
+    return LETTERS[feature]

@@ -1,0 +1,283 @@
+"""The Check leaf: net or plan, funnel, means, the next best reading, and whatever blocks a verdict."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from kivy.app import App
+from kivy.metrics import dp, sp
+from kivy.properties import BooleanProperty, ListProperty, ObjectProperty, StringProperty
+from kivy.uix.boxlayout import BoxLayout
+from kivy.uix.floatlayout import FloatLayout
+from kivy.uix.scrollview import ScrollView
+
+from analysis.orient.features import Feature
+from fieldapp.drawing.funnel import NarrowingFunnel
+from fieldapp.drawing.net import EqualAreaNet
+from fieldapp.drawing.plan import PlanSketch
+from fieldapp.leaves import load_kv, scenes
+from fieldapp.leaves.parts import Choice
+from fieldapp.states import Change
+
+if TYPE_CHECKING:
+    from fieldapp.look.form import Form
+
+
+class MeanFigure(BoxLayout):
+    """A mean: what it is, its attitude in large figures, and from how many readings."""
+
+    name = StringProperty("")
+    figure = StringProperty("")
+    source = StringProperty("")
+    colour = ListProperty((0, 0, 0, 1))
+
+
+class Legend(BoxLayout):
+    """Which marker and which letter stand for which feature."""
+
+
+class LegendItem(BoxLayout):
+    """One marker with its letter and word."""
+
+    shape = StringProperty("dot")
+    text = StringProperty("")
+    colour = ListProperty((0, 0, 0, 1))
+
+
+class Named(BoxLayout):
+    """What was touched on the net: its particulars, and the keys that mend it."""
+
+    title = StringProperty("")
+    lines = StringProperty("")
+    reading_id = StringProperty("")
+    struck_out = BooleanProperty(False)
+
+
+class AdviceWords(BoxLayout):
+    """A name and a sentence below it."""
+
+    name = StringProperty("")
+    text = StringProperty("")
+    more = StringProperty("")
+    strong = BooleanProperty(True)
+
+
+class CheckLeaf(FloatLayout):
+    """The leaf; `refresh` shows the presenter's state, `arrange` fits it to the screen."""
+
+    form = ObjectProperty(None)
+    picture = StringProperty("net")
+
+    def __init__(self, **kwargs: object) -> None:
+        super().__init__(**kwargs)
+        self.net = EqualAreaNet()
+        self.plan = PlanSketch()
+        self.funnel = NarrowingFunnel()
+        self.pictures = Choice(choices=(("net", "Net"), ("plan", "Plan")), chosen="net")
+        self.legend = Legend()
+        self.hinge = MeanFigure(name="Hinge")
+        self.cleavage = MeanFigure(name="Cleavage")
+        self.intersection = MeanFigure(name="Intersection")
+        self.next_reading = AdviceWords(name="Read next")
+        self.limbs = AdviceWords(name="Limb against limb", strong=False)
+        self.because = AdviceWords(name="Why", strong=False)
+        self.named = Named()
+        self._mean_named = ""
+        self._picture_box = BoxLayout(orientation="vertical")
+        self._bind()
+
+    @property
+    def page(self) -> object:
+        """The presenter."""
+        return App.get_running_app().page
+
+    def _bind(self) -> None:
+        app = App.get_running_app()
+        for widget in (self.net, self.plan, self.funnel):
+            app.bind(theme=widget.setter("theme"))
+            widget.theme = app.theme
+        self.net.bind(on_reading=lambda _net, key: self._reading_touched(key))
+        self.net.bind(on_mean=lambda _net, name: self._mean_touched(name))
+        self.net.bind(on_miss=lambda _net: self._nothing_touched())
+        self.plan.bind(on_outcrop=lambda _plan, name: self.page.choose_outcrop(name))
+        self.pictures.bind(on_choice=lambda _choice, value: self.show_picture(value))
+
+    # Showing
+
+    def refresh(self, change: Change) -> None:
+        """Show what has changed."""
+        page = self.page
+        if change & (Change.CHECK | Change.PLACE | Change.NAMED | Change.SETTINGS):
+            chosen = page.named.reading_id if page.named is not None else ""
+            self.net.scene = scenes.net_scene(page.check, page.net, page.place.outcrop, chosen)
+        if change & (Change.CHECK | Change.FORECAST | Change.SETTINGS):
+            self.funnel.scene = scenes.funnel_scene(page.funnel)
+            self._show_words()
+        if change & (Change.PLAN | Change.PLACE):
+            self.plan.scene = scenes.plan_scene(page.plan)
+        if change & (Change.NAMED | Change.CHECK):
+            self._show_named()
+
+    def _show_words(self) -> None:
+        check, notation = self.page.check, self.page.settings.notation
+        counts = check.readings
+        hinge, cleavage, intersection = check.hinge, check.cleavage, check.intersection
+        self.hinge.figure = "–" if hinge is None else scenes.line_text(hinge.line)
+        self.cleavage.figure = "–" if cleavage is None else scenes.plane_text(cleavage.plane, notation)
+        self.intersection.figure = "–" if intersection is None else scenes.line_text(intersection.axis.line)
+        self.hinge.source = f"{counts.bedding} bedding" if hinge is None else f"from {hinge.source}"
+        self.cleavage.source = f"from {counts.cleavage} planes" if cleavage else f"{counts.cleavage} read"
+        self.intersection.source = scenes.intersection_source(check)
+        self.next_reading.text, self.next_reading.more = scenes.next_words(check)
+        self.limbs.text = scenes.limb_words(check, notation) or "One limb only, or too few bedding readings."
+        because = [*check.because, *check.warnings]
+        self.because.text = "\n".join(because)
+
+    def _show_named(self) -> None:
+        named = self.page.named
+        if named is not None:
+            self._mean_named = ""
+            self.named.title, self.named.lines = named.title, "\n".join(named.lines)
+            self.named.reading_id, self.named.struck_out = named.reading_id, named.struck_out
+        elif self._mean_named:
+            title, lines = scenes.mean_lines(self.page.check, self._mean_named)
+            self.named.title, self.named.lines, self.named.reading_id = title, "\n".join(lines), ""
+        shown = named is not None or bool(self._mean_named)
+        if shown and self.named.parent is None:
+            self.add_widget(self.named)
+        elif not shown and self.named.parent is not None:
+            self.remove_widget(self.named)
+
+    def _reading_touched(self, key: str) -> None:
+        self._mean_named = ""
+        self.page.name_reading(key)
+        self._show_named()
+
+    def _mean_touched(self, name: str) -> None:
+        self._mean_named = name
+        if self.page.named is not None:
+            self.page.name_nothing()
+        self._show_named()
+
+    def _nothing_touched(self) -> None:
+        self.close_named()
+
+    def close_named(self) -> None:
+        """Put the particulars away."""
+        self._mean_named = ""
+        if self.page.named is not None:
+            self.page.name_nothing()
+        self._show_named()
+
+    def show_picture(self, name: str) -> None:
+        """Show the net or the plan."""
+        self.picture = self.pictures.chosen = name
+        self._fill_picture()
+
+    # Arranging
+
+    def on_form(self, *_: object) -> None:
+        """Arrange for another screen."""
+        self.arrange()
+
+    def _fill_picture(self) -> None:
+        box = self._picture_box
+        box.clear_widgets()
+        self.pictures.size_hint_y, self.legend.size_hint_y = None, None
+        self.pictures.height = dp(max(self.form.line_dp(self.form.small_sp) + 14, 40))
+        self.legend.height = dp(self.form.line_dp(self.form.small_sp) + 6)
+        box.add_widget(self.pictures)
+        box.add_widget(self.net if self.picture == "net" else self.plan)
+        if self.picture == "net":
+            box.add_widget(self.legend)
+
+    def arrange(self) -> None:
+        """Put everything where this screen has room for it."""
+        form: Form | None = self.form
+        if form is None:
+            return
+        self.clear_widgets()
+        for widget in (
+            self._picture_box, self.funnel, self.hinge, self.cleavage, self.intersection, self.next_reading,
+            self.limbs, self.because,
+        ):  # fmt: skip
+            if widget.parent is not None:
+                widget.parent.remove_widget(widget)
+            widget.size_hint = (1, 1)
+        self.net.words_sp = self.funnel.words_sp = self.plan.words_sp = form.small_sp
+        self.net.marker_dp = 12.0 if form.large else 10.0
+        self._picture_box.spacing = dp(form.gap_dp)
+        self._fill_picture()
+        if form.split or form.low:
+            self.add_widget(self._side_by_side(form))
+        else:
+            self.add_widget(self._column(form))
+        self._show_named()
+
+    def _means(self, form: Form) -> BoxLayout:
+        row = BoxLayout(spacing=dp(form.gap_dp), size_hint_y=None)
+        row.height = dp(form.line_dp(form.small_sp, 2.0) + form.line_dp(form.key_sp * 0.85) + 8)
+        for figure in (self.hinge, self.cleavage, self.intersection):
+            row.add_widget(figure)
+        return row
+
+    def _words(self, form: Form) -> tuple[AdviceWords, ...]:
+        words = (self.next_reading, self.limbs, self.because)
+        for one in words:
+            one.size_hint_y = None
+        return words
+
+    def _scrolled(self, column: BoxLayout) -> ScrollView:
+        column.size_hint_y = None
+        column.bind(minimum_height=column.setter("height"))
+        scroll = ScrollView(do_scroll_x=False, bar_width=dp(5), scroll_type=["bars", "content"])
+        scroll.add_widget(column)
+        return scroll
+
+    def _column(self, form: Form) -> ScrollView:
+        """Portrait: picture, means, funnel and words below one another."""
+        edge, gap = dp(form.edge_dp), dp(form.gap_dp)
+        column = BoxLayout(orientation="vertical", padding=(edge, gap, edge, gap), spacing=gap)
+        self._picture_box.size_hint_y = self.funnel.size_hint_y = None
+        extra = self.pictures.height + self.legend.height + sp(form.small_sp) * 2.2 + 2 * gap
+        across = dp(form.width_dp) - 2 * edge
+        # On a tablet the words below the picture stay on the screen without scrolling.
+        most = dp(form.log_height_dp) * 0.52 if form.large else across + extra
+        self._picture_box.height = min(across + extra, most)
+        self.funnel.height = dp(form.log_height_dp) * 0.23 if form.large else dp(max(form.width_dp * 0.62, 220))
+        for widget in (self._picture_box, self._means(form), self.next_reading, self.funnel, self.limbs, self.because):
+            column.add_widget(widget)
+        self._words(form)
+        return self._scrolled(column)
+
+    def _side_by_side(self, form: Form) -> BoxLayout:
+        """Landscape: the picture left, funnel and words right, the means below."""
+        edge, gap = dp(form.edge_dp), dp(form.gap_dp)
+        whole = BoxLayout(orientation="vertical", padding=(edge, gap, edge, gap), spacing=gap)
+        top = BoxLayout(spacing=gap * 2)
+        self._picture_box.size_hint_x = 0.58
+        top.add_widget(self._picture_box)
+        side = BoxLayout(orientation="vertical", spacing=gap)
+        self.funnel.size_hint_y = None
+        self.funnel.height = dp(max(form.log_height_dp * 0.42, 150))
+        side.add_widget(self.funnel)
+        for widget in self._words(form):
+            side.add_widget(widget)
+        if form.low:
+            means = BoxLayout(orientation="vertical", spacing=gap, size_hint_y=None)
+            figures = self._means(form)
+            means.height = figures.height
+            means.add_widget(figures)
+            side.add_widget(means, index=len(side.children) - 1)
+        scroll = self._scrolled(side)
+        scroll.size_hint_x = 0.42
+        top.add_widget(scroll)
+        whole.add_widget(top)
+        if not form.low:
+            whole.add_widget(self._means(form))
+        return whole
+
+
+LEGEND = ((Feature.BEDDING, "bedding pole"), (Feature.CLEAVAGE, "cleavage pole"))
+
+load_kv("check")

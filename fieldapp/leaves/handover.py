@@ -1,0 +1,173 @@
+"""The Hand over leaf: write the CSV, take in a colleague's, the backup, the space left."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from kivy.app import App
+from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
+from kivy.uix.boxlayout import BoxLayout
+
+from fieldapp.leaves import load_kv
+from fieldapp.leaves.parts import Key
+from fieldapp.states import Change
+
+if TYPE_CHECKING:
+    from datetime import datetime
+
+    from fieldapp.states import TakeInPreview
+
+FOLDER_NAME = "hand-over"
+MEGABYTE = 1_000_000
+
+
+def when_text(at: datetime | None) -> str:
+    """A time as the geologist's clock shows it, or "never"."""
+    return "never" if at is None else at.astimezone().strftime("%d %b %Y, %H:%M")
+
+
+def space_text(count: int | None) -> str:
+    """Space left in words."""
+    if count is None:
+        return "not known"
+    return f"{count / MEGABYTE:,.0f} MB" if count < 10_000 * MEGABYTE else f"{count / MEGABYTE / 1000:,.0f} GB"
+
+
+class Row(BoxLayout):
+    """A name and what it is now."""
+
+    name = StringProperty("")
+    value = StringProperty("")
+
+
+class FileKey(Key):
+    """A folder or a file to take in."""
+
+
+class HandOverLeaf(BoxLayout):
+    """The leaf."""
+
+    form = ObjectProperty(None)
+    since = StringProperty("")
+    kept = StringProperty("")
+    last = StringProperty("")
+    backup = StringProperty("")
+    space = StringProperty("")
+    where = StringProperty("")
+    preview_text = StringProperty("")
+    undo_text = StringProperty("")
+    has_log = BooleanProperty(False)
+    folder = ObjectProperty(None, allownone=True)
+
+    def __init__(self, **kwargs: object) -> None:
+        super().__init__(**kwargs)
+        self._preview: TakeInPreview | None = None
+
+    @property
+    def page(self) -> object:
+        """The presenter."""
+        return App.get_running_app().page
+
+    def refresh(self, change: Change) -> None:
+        """Show what has changed."""
+        if not change & (Change.HAND_OVER | Change.RECENT):
+            return
+        state = self.page.hand_over
+        self.since = f"{state.since_last} new since the last hand-over"
+        self.kept = f"{state.readings}"
+        self.last, self.backup = when_text(state.last_hand_over), when_text(state.last_backup)
+        self.space = space_text(state.space_left_bytes)
+        self.undo_text = f"Take back: {state.last_take_in}" if state.last_take_in else ""
+        self.where = f"Files are written to the folder {FOLDER_NAME} beside the notebook."
+        self.has_log = bool(App.get_running_app().mishaps.text())
+
+    # Write
+
+    @property
+    def target_folder(self) -> Path:
+        """Where hand-overs are written."""
+        return self.page.hand_over.notebook_path.parent / FOLDER_NAME
+
+    def write(self, *, everything: bool = False) -> Path | None:
+        """Write the CSV; the presenter says whether it went well."""
+        now = App.get_running_app().clock_utc()
+        path = self.target_folder / f"readings-{now:%Y%m%d-%H%M%S}.csv"
+        path.parent.mkdir(parents=True, exist_ok=True)
+        if not self.page.write_hand_over(path, everything=everything):
+            return None
+        App.get_running_app().share(path)
+        return path
+
+    def attach_log(self) -> None:
+        """Put the log of mishaps beside the hand-overs."""
+        text = App.get_running_app().mishaps.text()
+        path = self.target_folder / "mishaps.log"
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_text(text, encoding="utf-8")
+        App.get_running_app().share(path)
+
+    # Take in
+
+    def choose_file(self) -> None:
+        """Show the folder of hand-overs, to take in a file from there or from elsewhere."""
+        if self.folder is not None:
+            self.folder = None
+        else:
+            self.folder = self.target_folder if self.target_folder.is_dir() else self.target_folder.parent
+
+    def on_folder(self, *_: object) -> None:
+        """List a folder: the folders in it, and the CSV files."""
+        box = self.ids.files
+        box.clear_widgets()
+        if self.folder is None:
+            return
+        folder = Path(self.folder)
+        try:
+            entries = sorted(folder.iterdir(), key=lambda path: path.name.lower())
+        except OSError:
+            entries = []
+        folders = [path for path in entries if path.is_dir() and not path.name.startswith(".")]
+        files = [path for path in entries if path.suffix.lower() in (".csv", ".txt", ".tsv")]
+        for label, path in (
+            ("Up one folder", folder.parent),
+            *((f"{path.name}/", path) for path in folders),
+            *((path.name, path) for path in files),
+        ):
+            key = FileKey(text=label)
+            key.bind(on_release=lambda _key, path=path: self.look_at(path))
+            box.add_widget(key)
+
+    def look_at(self, path: Path) -> None:
+        """Open a folder, or say what a file would add before anything is taken in."""
+        if path.is_dir():
+            self.folder = path
+            return
+        self._preview = self.page.preview_take_in(path)
+        if self._preview is None:
+            self.preview_text = ""
+            return
+        p = self._preview
+        lines = [
+            p.source.name,
+            f"adds {len(p.adds)} readings, changes {len(p.changes)}, {p.known} known already",
+        ]
+        if p.clashes:
+            lines.append(f"{len(p.clashes)} clash with what is here; both are kept")
+            lines.extend(f"   {line.text} {line.outcrop}" for line in p.clashes[:5])
+        if p.problems:
+            lines.append(f"{len(p.problems)} rows cannot be read")
+            lines.extend(f"   {text}" for text in p.problems[:5])
+        self.preview_text = "\n".join(lines)
+
+    def take_in(self) -> None:
+        """Take in the file that was looked at."""
+        if self._preview is not None and self.page.take_in(self._preview):
+            self._preview, self.preview_text, self.folder = None, "", None
+
+    def leave_it(self) -> None:
+        """Take nothing in."""
+        self._preview, self.preview_text = None, ""
+
+
+load_kv("handover")

@@ -1,0 +1,445 @@
+"""The Log leaf: a reading is typed, checked and kept here without ever leaving it."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from kivy.app import App
+from kivy.metrics import dp
+from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
+from kivy.uix.behaviors import ButtonBehavior
+from kivy.uix.boxlayout import BoxLayout
+from kivy.uix.widget import Widget
+from kivy.utils import get_hex_from_color
+
+from fieldapp.drawing.scene import LETTERS, MARKERS
+from fieldapp.leaves import load_kv
+from fieldapp.leaves.keys import DirectionGrid, KeyPad
+from fieldapp.leaves.parts import Key, Words
+from fieldapp.states import Change, MessageKind
+
+if TYPE_CHECKING:
+    from analysis.orient.features import Feature
+    from fieldapp.look.form import Form
+    from fieldapp.states import EntryState, ReadingLine, Tab
+
+SHORT_LABELS = {"Intersection": "Intersect."}
+AZIMUTH_DIGITS, INCLINATION_DIGITS = 3, 2
+
+
+class FeatureKey(ButtonBehavior, BoxLayout):
+    """A feature to read: its marker, its name and how many stand in the fold and here."""
+
+    text = StringProperty("")
+    counts = StringProperty("")
+    letter = StringProperty("")
+    shape = StringProperty("dot")
+    chosen = BooleanProperty(False)
+
+
+class Figure(Words):
+    """The digits as typed."""
+
+
+class Readout(BoxLayout):
+    """The digits as typed, those to come, and the labels that the notation gives them."""
+
+    azimuth = StringProperty("")
+    inclination = StringProperty("")
+    azimuth_label = StringProperty("strike")
+    inclination_label = StringProperty("dip")
+    active = StringProperty("azimuth")
+    direction = StringProperty("")
+    remark = StringProperty("")
+
+    def padded(self, text: str, digits: int, colour: object) -> str:
+        """The digits typed, and a quiet dash for each one to come."""
+        waiting = "–" * max(digits - len(text.partition(".")[0]), 0)
+        return f"{text}[color={get_hex_from_color(colour)}]{waiting}[/color]" if waiting else text
+
+
+class RecentChip(BoxLayout):
+    """One past reading with its two keys: mend, and strike out or put back."""
+
+    reading_id = StringProperty("")
+    text = StringProperty("")
+    shape = StringProperty("dot")
+    struck_out = BooleanProperty(False)
+    being_mended = BooleanProperty(False)
+
+
+class CheckSlot(BoxLayout):
+    """The words of the entry check or of a message, with one key for its mend or its offer."""
+
+    sign = StringProperty("")
+    text = StringProperty("")
+    offer = StringProperty("")
+    asks = BooleanProperty(False)
+    can_close = BooleanProperty(False)
+
+    def __init__(self, **kwargs: object) -> None:
+        self.register_event_type("on_offer")
+        self.register_event_type("on_close")
+        super().__init__(**kwargs)
+
+    def on_offer(self) -> None:
+        """The key was touched."""
+
+    def on_close(self) -> None:
+        """The words are to go."""
+
+
+class SideKeys(BoxLayout):
+    """Measure where there are sensors, Note, Clear, and Keep: four rows of keys beside the pad."""
+
+    has_sensors = BooleanProperty(False)
+
+    def __init__(self, **kwargs: object) -> None:
+        super().__init__(orientation="vertical", **kwargs)
+        self.keys = {name: Key(text=name.capitalize()) for name in ("measure", "note", "clear")}
+        self.keys["keep"] = KeepKey(text="Keep")
+        self._pair = BoxLayout()
+        self._build()
+
+    def on_has_sensors(self, *_: object) -> None:
+        """Make room for Measure."""
+        self._build()
+
+    def on_spacing(self, *_: object) -> None:
+        """Keep the same gaps inside."""
+        self._pair.spacing = self.spacing
+        # Keep is as high as two keys and the gap between them.
+        self.keys["keep"].size_hint_y = 2.0 + 4.0 * self.spacing / max(self.height, 1.0)
+
+    on_height = on_spacing
+
+    def _build(self) -> None:
+        self.clear_widgets()
+        self._pair.clear_widgets()
+        keys = self.keys
+        if self.has_sensors:
+            self._pair.add_widget(keys["note"])
+            self._pair.add_widget(keys["clear"])
+            rows = (keys["measure"], self._pair, keys["keep"])
+        else:
+            rows = (keys["note"], keys["clear"], keys["keep"])
+        for row in rows:
+            self.add_widget(row)
+
+
+class KeepKey(Key):
+    """The largest key."""
+
+
+class LogLeaf(BoxLayout):
+    """The leaf; `refresh` shows the presenter's state, `arrange` fits it to the screen."""
+
+    form = ObjectProperty(None)
+    left_handed = BooleanProperty(False)
+    digits_wanted = BooleanProperty(False)
+
+    SHOWS = Change.ENTRY | Change.PLACE | Change.TABS | Change.RECENT | Change.MESSAGE | Change.SETTINGS
+
+    def __init__(self, **kwargs: object) -> None:
+        super().__init__(**kwargs)
+        self.place_row = PlaceRow()
+        self.feature_row = BoxLayout()
+        self.readout = Readout()
+        self.grid_small = DirectionGrid()
+        self.grid_large = DirectionGrid(last_row=True)
+        self.check_slot = CheckSlot()
+        self.pad = KeyPad()
+        self.side = SideKeys()
+        self.recent_row = BoxLayout()
+        self.feature_keys: dict[Feature, FeatureKey] = {}
+        self._pad_holder = BoxLayout()
+        self._offer = None
+        self._was_entry = ("", "")
+        self._bind_keys()
+
+    # Wiring
+
+    @property
+    def page(self) -> object:
+        """The presenter."""
+        return App.get_running_app().page
+
+    def _bind_keys(self) -> None:
+        self.pad.bind(on_sign=lambda _pad, sign: self.sign(sign))
+        for grid in (self.grid_small, self.grid_large):
+            grid.bind(on_direction=lambda _grid, name: self.page.choose_quadrant(name))
+            grid.bind(on_sign=lambda _grid, sign: self.sign(sign))
+        self.check_slot.bind(on_offer=lambda _slot: self._take_offer())
+        self.check_slot.bind(on_close=lambda _slot: self.page.dismiss_message())
+        for name in ("keep", "clear", "note", "measure"):
+            self.side.keys[name].bind(on_release=lambda _key, name=name: getattr(self, f"press_{name}")())
+        self.place_row.bind(on_release=lambda _row: App.get_running_app().open_sheet("place"))
+        self.place_row.ids.list.bind(on_release=lambda _key: App.get_running_app().open_sheet("readings"))
+        self.place_row.ids.settings.bind(on_release=lambda _key: App.get_running_app().open_sheet("settings"))
+
+    def sign(self, sign: str) -> None:
+        """Pass a sign from a key pad or a keyboard to the entry."""
+        if sign == "digits":
+            self.digits_wanted = True
+            self._show_pad()
+        elif sign == "back":
+            self.page.back()
+        elif sign == "clear":
+            self.press_clear()
+        elif sign == ".":
+            self.page.point()
+        else:
+            self.page.digit(int(sign))
+
+    def press_keep(self) -> None:
+        """Keep the reading, or say what it waits for."""
+        self.digits_wanted = False
+        self.page.keep()
+
+    def press_clear(self) -> None:
+        """Start the entry anew."""
+        self.digits_wanted = False
+        self.page.clear()
+        self._show_pad()
+
+    def press_note(self) -> None:
+        """Write a note to the reading."""
+        App.get_running_app().open_sheet("note")
+
+    def press_measure(self) -> None:
+        """Read the attitude with the device's sensors."""
+        App.get_running_app().measure()
+
+    def _take_offer(self) -> None:
+        if self._offer is None:
+            return
+        kind, name = self._offer
+        if kind == "mend":
+            self.page.apply_mend(name)
+        else:
+            self.page.accept_offer()
+
+    # Showing
+
+    def refresh(self, change: Change) -> None:
+        """Show what has changed."""
+        if change & (Change.ENTRY | Change.MESSAGE):
+            self._show_entry(self.page.entry)
+        if change & (Change.PLACE | Change.SETTINGS):
+            self.place_row.show(self.page.place)
+        if change & Change.TABS:
+            self._show_tabs(self.page.tabs)
+        if change & (Change.RECENT | Change.ENTRY | Change.SETTINGS):
+            self._show_recent()
+        if change & Change.SETTINGS:
+            self.left_handed = self.page.settings.left_handed
+        if change & Change.ENTRY:
+            self._show_pad()
+
+    def _show_entry(self, entry: EntryState) -> None:
+        readout = self.readout
+        readout.azimuth_label, readout.inclination_label = entry.azimuth_label, entry.inclination_label
+        readout.azimuth, readout.inclination = entry.azimuth_text, entry.inclination_text
+        readout.active, readout.direction = entry.active, entry.quadrant
+        remarks = ["mending " + entry.mending_text] if entry.mending else []
+        remarks += ["overturned"] if entry.overturned else []
+        remarks += ["note"] if entry.note else []
+        remarks += [] if entry.saved else ["not yet saved"]
+        readout.remark = ", ".join(remarks)
+        for grid in (self.grid_small, self.grid_large):
+            grid.chosen, grid.expected = entry.quadrant, entry.expected_quadrant
+        self.grid_small.opacity = 1.0 if entry.quadrant_offered else 0.0
+        self.grid_small.disabled = not entry.quadrant_offered
+        self.side.keys["keep"].look = "accent" if entry.ready else "plain"
+        self.side.keys["keep"].text = "Keep" if not entry.mending else "Keep mended"
+        self._show_check(entry)
+
+    def _show_check(self, entry: EntryState) -> None:
+        """Trouble first, then what a check asks, then notes, then what is fine, then what is missing."""
+        slot, message = self.check_slot, self.page.message
+        asks = [line for line in entry.checks if not line.passed]
+        fine = [line for line in entry.checks if line.passed]
+        loud = message is not None and message.kind is not MessageKind.NOTE
+        slot.can_close = False
+        if message is not None and (loud or not asks):
+            self._offer = ("message", "") if message.offer else None
+            slot.sign = "asks" if loud else "fine"
+            slot.text, slot.offer, slot.asks, slot.can_close = message.text, str(message.offer), loud, True
+        elif asks:
+            line = next((line for line in asks if line.mend_label), asks[0])
+            more = f"  (+{len(asks) - 1} more)" if len(asks) > 1 else ""
+            self._offer = ("mend", line.name) if line.mend_label else None
+            slot.sign, slot.text, slot.offer, slot.asks = "asks", line.text + more, line.mend_label, True
+        elif fine:
+            self._offer = None
+            slot.sign, slot.text, slot.offer, slot.asks = "fine", fine[0].text, "", False
+        else:
+            self._offer = None
+            slot.sign, slot.text, slot.offer, slot.asks = "", entry.missing, "", False
+
+    def _show_tabs(self, tabs: tuple[Tab, ...]) -> None:
+        for tab in tabs:
+            key = self.feature_keys.get(tab.feature)
+            if key is None:
+                key = self.feature_keys[tab.feature] = FeatureKey(
+                    shape=MARKERS[tab.feature], letter=LETTERS[tab.feature]
+                )
+                key.bind(on_press=lambda _key, feature=tab.feature: self.page.choose_feature(feature))
+                self.feature_row.add_widget(key)
+            narrow = self.form is not None and self.form.narrow
+            key.text = SHORT_LABELS.get(tab.label, tab.label) if narrow else tab.label
+            key.counts = f"{tab.in_fold}" if narrow or tab.in_fold == tab.here else f"{tab.in_fold}, {tab.here} here"
+            key.chosen = tab.chosen
+
+    def _show_recent(self) -> None:
+        row, form = self.recent_row, self.form
+        if form is None or row.parent is None:
+            return
+        lines = self.page.recent[: self._recent_columns() * self._recent_rows()]
+        chips = [chip for line in row.children for chip in line.children if isinstance(chip, RecentChip)]
+        chips = chips[::-1]
+        if len(chips) != self._recent_columns() * self._recent_rows():
+            chips = self._build_recent()
+        mending = self.page.entry.mending
+        for chip, line in zip(chips, (*lines, *[None] * (len(chips) - len(lines))), strict=True):
+            _fill_chip(chip, line, mending)
+
+    def _recent_columns(self) -> int:
+        return max(int(self.form.log_width_dp / 165.0), 2)
+
+    def _recent_rows(self) -> int:
+        spare = self._spare_dp()
+        return max(1, min(int((spare + self.form.gap_dp) / (self.form.recent_dp + 4.0)), 8))
+
+    def _spare_dp(self) -> float:
+        form = self.form
+        used = form.place_dp + form.feature_dp + form.readout_dp + form.check_dp + form.pad_dp + 6.5 * form.gap_dp
+        return form.log_height_dp - used
+
+    def _build_recent(self) -> list[RecentChip]:
+        self.recent_row.clear_widgets()
+        chips = []
+        for _ in range(self._recent_rows()):
+            line = BoxLayout(spacing=dp(self.form.gap_dp))
+            for _ in range(self._recent_columns()):
+                chip = RecentChip()
+                chips.append(chip)
+                line.add_widget(chip)
+            self.recent_row.add_widget(line)
+        return chips
+
+    # Arranging
+
+    def on_form(self, *_: object) -> None:
+        """Arrange for another screen."""
+        self.arrange()
+
+    def on_left_handed(self, *_: object) -> None:
+        """Arrange for the other hand."""
+        self.arrange()
+
+    def arrange(self) -> None:
+        """Put everything where this screen has room for it."""
+        form: Form | None = self.form
+        if form is None:
+            return
+        for box in (self, self._pad_holder, self.recent_row):
+            box.clear_widgets()
+        for widget in (
+            self.place_row, self.feature_row, self.readout, self.grid_small, self.check_slot, self.pad,
+            self.side, self.recent_row, self._pad_holder,
+        ):  # fmt: skip
+            if widget.parent is not None:
+                widget.parent.remove_widget(widget)
+            widget.size_hint = (1, 1)
+        gap = dp(form.gap_dp)
+        self.padding, self.spacing = (dp(form.edge_dp), gap, dp(form.edge_dp), gap), gap
+        for row in (self.feature_row, self._pad_holder, self.recent_row):
+            row.spacing = gap
+        self.recent_row.orientation, self.recent_row.spacing = "vertical", dp(4)
+        self.orientation = "horizontal" if form.low else "vertical"
+        _tall(self.place_row, form.place_dp)
+        _tall(self.feature_row, form.feature_dp)
+        _tall(self.check_slot, form.check_dp)
+        top = self._readout_row(form, gap)
+        self._pad_holder.orientation = "horizontal"
+        if form.low:
+            column = BoxLayout(orientation="vertical", spacing=gap)
+            for widget in (self.place_row, self.feature_row, top, self.check_slot):
+                column.add_widget(widget)
+            for widget in self._handed(column, self._pad_holder):
+                self.add_widget(widget)
+        else:
+            _tall(top, form.readout_dp)
+            _tall(self._pad_holder, form.pad_dp)
+            for widget in (self.place_row, self.feature_row, top, self.check_slot, self._pad_holder):
+                self.add_widget(widget)
+            if form.shows_recent:
+                self.add_widget(self.recent_row)
+            else:
+                self.add_widget(Widget())
+        self._show_pad()
+        if self.page is not None:
+            self._show_tabs(self.page.tabs)
+            self._show_recent()
+
+    def _handed(self, first: Widget, second: Widget) -> tuple[Widget, Widget]:
+        return (second, first) if self.left_handed else (first, second)
+
+    def _readout_row(self, form: Form, gap: float) -> BoxLayout:
+        row = BoxLayout(spacing=gap)
+        if form.grid_beside:
+            self.readout.size_hint_x, self.grid_small.size_hint_x = 0.52, 0.48
+            for widget in self._handed(self.readout, self.grid_small):
+                row.add_widget(widget)
+        else:
+            row.add_widget(self.readout)
+        return row
+
+    def _show_pad(self) -> None:
+        """Show the digits, or, where they take turns, the directions once the digits are whole."""
+        if self.form is None:
+            return
+        entry = self.page.entry
+        whole = not entry.active
+        if not whole:
+            self.digits_wanted = False
+        turn = not self.form.grid_beside and entry.quadrant_offered and whole and not self.digits_wanted
+        pad = self.grid_large if turn else self.pad
+        if pad.parent is self._pad_holder and len(self._pad_holder.children) == 2:
+            return
+        self._pad_holder.clear_widgets()
+        pad.size_hint_x, self.side.size_hint_x = 0.66, 0.34
+        for widget in self._handed(pad, self.side):
+            self._pad_holder.add_widget(widget)
+
+
+class PlaceRow(ButtonBehavior, BoxLayout):
+    """Where we stand: outcrop, fold, position and its age; a touch opens the choice of another."""
+
+    outcrop = StringProperty("")
+    fold = StringProperty("")
+    position = StringProperty("")
+
+    def show(self, place: object) -> None:
+        """Show the presenter's place."""
+        self.outcrop, self.fold = place.outcrop_title, place.fold_title
+        self.position = place.position_text or "no position"
+
+
+def _tall(widget: Widget, height_dp: float) -> None:
+    widget.size_hint_y = None
+    widget.height = dp(height_dp)
+
+
+def _fill_chip(chip: RecentChip, line: ReadingLine | None, mending: str) -> None:
+    chip.opacity, chip.disabled = (0.0, True) if line is None else (1.0, False)
+    if line is not None:
+        chip.reading_id, chip.text, chip.struck_out = line.reading_id, line.text, line.struck_out
+        chip.shape = MARKERS[line.feature]
+        chip.being_mended = line.reading_id == mending
+
+
+__all__ = ["Key", "LogLeaf"]
+
+load_kv("log")

@@ -1,0 +1,198 @@
+"""The page around the leaves: verdict strip, the leaf or two, the four names at the bottom, sheets on top."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from kivy.app import App
+from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
+from kivy.uix.behaviors import ButtonBehavior
+from kivy.uix.boxlayout import BoxLayout
+from kivy.uix.floatlayout import FloatLayout
+from kivy.uix.label import Label  # noqa: F401 - named in the .kv file
+
+from fieldapp.leaves import load_kv
+from fieldapp.leaves.parts import Sheet
+from fieldapp.states import Change, MessageKind
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from kivy.uix.widget import Widget
+
+    from fieldapp.look.form import Form
+
+LEAVES = ("Log", "Check", "Fault", "Hand over")
+
+
+class VerdictStrip(BoxLayout):
+    """The verdict: its sign, the sentence, and the figure with its interval. Stands on every leaf."""
+
+    sign = StringProperty("open ring")
+    headline = StringProperty("")
+    figures = StringProperty("")
+
+
+class LeafKey(ButtonBehavior, BoxLayout):
+    """The name of a leaf at the bottom; a bar above it marks the one shown."""
+
+    text = StringProperty("")
+    chosen = BooleanProperty(False)
+
+
+class Notice(BoxLayout):
+    """A message on leaves that have no place of their own for it."""
+
+    text = StringProperty("")
+    offer = StringProperty("")
+    loud = BooleanProperty(False)
+
+
+class DemoMark(BoxLayout):
+    """Says that these readings are invented, as long as they are on the screen."""
+
+
+class Outline(FloatLayout):
+    """The whole page. `make` gives the leaf of a name; leaves are made when first shown."""
+
+    form = ObjectProperty(None)
+    shown = StringProperty("Log")
+
+    def __init__(self, make: Callable[[str], Widget], **kwargs: object) -> None:
+        super().__init__(**kwargs)
+        self._make = make
+        self.leaves: dict[str, Widget] = {}
+        self._behind: dict[str, Change] = {}
+        self.leaf_keys: dict[str, LeafKey] = {}
+        self.demo_mark = DemoMark()
+        self.notice = Notice()
+        self.trouble = ""
+        for name in LEAVES:
+            key = self.leaf_keys[name] = LeafKey(text=name)
+            key.bind(on_release=lambda _key, name=name: self.show(name))
+            self.ids.leaf_keys.add_widget(key)
+
+    @property
+    def page(self) -> object:
+        """The presenter."""
+        return App.get_running_app().page
+
+    def leaf(self, name: str) -> Widget:
+        """Give the leaf of this name, made when it is first asked for."""
+        if name not in self.leaves:
+            self.leaves[name] = self._make(name)
+            self._behind[name] = ~Change(0)
+            self.leaves[name].form = self.form
+        return self.leaves[name]
+
+    @property
+    def names_shown(self) -> tuple[str, ...]:
+        """The leaves on the screen, from the left."""
+        if self.form is not None and self.form.split and self.shown in ("Log", "Check"):
+            return ("Log", "Check")
+        return (self.shown,)
+
+    def show(self, name: str) -> None:
+        """Show a leaf."""
+        self.shown = name
+        self._lay_out()
+
+    def on_form(self, _outline: Outline, form: Form) -> None:
+        """Arrange for another screen."""
+        for leaf in self.leaves.values():
+            leaf.form = form
+        self._lay_out()
+
+    def _lay_out(self) -> None:
+        body, form = self.ids.body, self.form
+        if form is None:
+            return
+        body.clear_widgets()
+        names = self.names_shown
+        for number, name in enumerate(names):
+            leaf = self.leaf(name)
+            leaf.size_hint_x = 1
+            if len(names) > 1 and number == 0:
+                share = form.log_width_dp / form.width_dp
+                leaf.size_hint_x = share / (1.0 - share)
+            body.add_widget(leaf)
+        for name, key in self.leaf_keys.items():
+            key.chosen = name in names
+        self._bring_up_to_date()
+        self._show_notice()
+
+    # Telling
+
+    def refresh(self, change: Change) -> None:
+        """Pass a change on: at once to what is on the screen, later to the rest."""
+        if change & Change.STRIP:
+            strip = self.page.strip
+            self.ids.strip.sign = strip.sign.value
+            self.ids.strip.headline, self.ids.strip.figures = strip.headline, strip.figures
+        if change & Change.PLACE:
+            self._mark_demo(demo=self.page.place.demo)
+        for name in self._behind:
+            self._behind[name] |= change
+        self._bring_up_to_date()
+        if change & Change.MESSAGE:
+            self._show_notice()
+        for child in self.children:
+            if isinstance(child, Sheet) and hasattr(child, "refresh"):
+                child.refresh(change)
+
+    def _bring_up_to_date(self) -> None:
+        for name in self.names_shown:
+            behind = self._behind.get(name, Change(0))
+            if behind and name in self.leaves:
+                self._behind[name] = Change(0)
+                self.leaves[name].refresh(behind)
+
+    def _mark_demo(self, *, demo: bool) -> None:
+        column = self.ids.column
+        if demo and self.demo_mark.parent is None:
+            column.add_widget(self.demo_mark, index=len(column.children) - 1)
+        elif not demo and self.demo_mark.parent is not None:
+            column.remove_widget(self.demo_mark)
+
+    def tell_trouble(self, text: str) -> None:
+        """Say that something went wrong inside the app; stands until it is closed."""
+        self.trouble = text
+        self._show_notice()
+
+    def close_notice(self) -> None:
+        """Take the message away."""
+        if self.trouble:
+            self.trouble = ""
+            self._show_notice()
+        else:
+            self.page.dismiss_message()
+
+    def take_offer(self) -> None:
+        """Do what the message offers."""
+        self.page.accept_offer()
+
+    def _show_notice(self) -> None:
+        message = self.page.message
+        notice = self.notice
+        if self.trouble:
+            notice.text, notice.offer, notice.loud = self.trouble, "", True
+        elif message is not None and "Log" not in self.names_shown:
+            notice.text, notice.offer = message.text, str(message.offer)
+            notice.loud = message.kind is not MessageKind.NOTE
+        else:
+            notice.text = notice.offer = ""
+        column = self.ids.column
+        if notice.text and notice.parent is None:
+            column.add_widget(notice, index=1)
+        elif not notice.text and notice.parent is not None:
+            column.remove_widget(notice)
+
+    # Sheets
+
+    @property
+    def sheet(self) -> Sheet | None:
+        """The sheet that lies on top, if any."""
+        return next((child for child in self.children if isinstance(child, Sheet)), None)
+
+
+load_kv("outline")

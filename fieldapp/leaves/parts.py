@@ -1,0 +1,152 @@
+"""What every leaf is made of: words that never clip, keys, and sheets that lie over the page."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from kivy.metrics import dp
+from kivy.properties import BooleanProperty, ColorProperty, NumericProperty, ObjectProperty, StringProperty
+from kivy.uix.behaviors import ButtonBehavior
+from kivy.uix.boxlayout import BoxLayout
+from kivy.uix.floatlayout import FloatLayout
+from kivy.uix.label import Label
+from kivy.uix.textinput import TextInput
+
+from fieldapp.drawing.signs import Marker, Sign  # noqa: F401 - the .kv files use them
+from fieldapp.leaves import load_kv
+
+if TYPE_CHECKING:
+    from kivy.input.motionevent import MotionEvent
+    from kivy.uix.widget import Widget
+
+SHRINK = 0.93
+LEAST_SHARE = 0.5
+
+
+class Words(Label):
+    """A label whose words always fit: type is made smaller where the widget is too small for it."""
+
+    def texture_update(self, *_: object) -> None:
+        """Render the words, smaller and smaller until they fit."""
+        if self.width < 2 or self.height < 2:
+            return  # not laid out yet, or hidden; a change of size renders again
+        full = self.font_size
+        share = 1.0
+        while True:
+            self._label.options["font_size"] = full * share
+            super().texture_update()
+            if share <= LEAST_SHARE or self._fits():
+                break
+            share *= SHRINK
+        self.shown_share = share
+
+    shown_share = NumericProperty(1.0)
+
+    def _fits(self) -> bool:
+        wide, high = self.texture_size
+        grows = self.text_size[0] is not None and self.text_size[1] is None  # its height follows the words
+        if wide > self.width + 1 or (high > self.height + 1 and not grows):
+            return False
+        if self.markup or not self.text_size[0]:
+            return True
+        # A word wider than the line would be cut in two.
+        room = self.text_size[0] - self.padding[0] - self.padding[2]
+        return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
+
+
+class Key(ButtonBehavior, Words):
+    """A key: `look` is "plain", "chosen", "accent", "expected" or "quiet"."""
+
+    look = StringProperty("plain")
+    ground = ColorProperty((1, 1, 1, 1))
+    outline = ColorProperty((0, 0, 0, 0))
+    outline_dp = NumericProperty(1.2)
+
+
+class SignKey(ButtonBehavior, BoxLayout):
+    """A key with a drawn sign and, where there is room, a word beside it."""
+
+    sign = StringProperty("")
+    text = StringProperty("")
+    look = StringProperty("plain")
+    sign_dp = NumericProperty(22.0)
+
+
+class Line(TextInput):
+    """One line of text, typed with the system's keyboard."""
+
+
+class Sheet(FloatLayout):
+    """Something that lies over the page until it is closed; a touch beside it closes it."""
+
+    title = StringProperty("")
+    body = ObjectProperty(None)
+    closable = BooleanProperty(True)
+    wide_dp = NumericProperty(560.0)
+
+    def open(self, parent: Widget) -> Sheet:
+        """Lay the sheet over the page."""
+        parent.add_widget(self)
+        return self
+
+    def close(self, *_: object) -> None:
+        """Take the sheet away."""
+        if self.parent is not None:
+            self.parent.remove_widget(self)
+
+    def on_touch_down(self, touch: MotionEvent) -> bool:
+        """Keep touches from the page below."""
+        if super().on_touch_down(touch):
+            return True
+        if self.closable and not self.ids.card.collide_point(*touch.pos):
+            self.close()
+        return True
+
+    def on_touch_move(self, touch: MotionEvent) -> bool:
+        """Keep touches from the page below."""
+        super().on_touch_move(touch)
+        return True
+
+    def on_touch_up(self, touch: MotionEvent) -> bool:
+        """Keep touches from the page below."""
+        super().on_touch_up(touch)
+        return True
+
+
+class Choice(BoxLayout):
+    """A row of keys of which one is chosen; dispatches `on_choice` with its value."""
+
+    choices = ObjectProperty(())  # pairs of value and label
+    chosen = ObjectProperty(None, allownone=True)
+
+    def __init__(self, **kwargs: object) -> None:
+        self.register_event_type("on_choice")
+        self._keys: dict[object, Key] = {}
+        super().__init__(**kwargs)
+        self.bind(choices=self._build, chosen=self._mark)
+        self._build()
+
+    def _build(self, *_: object) -> None:
+        self.clear_widgets()
+        self._keys = {}
+        for value, label in self.choices:
+            key = Key(text=label)
+            key.bind(on_release=lambda _key, value=value: self.dispatch("on_choice", value))
+            self._keys[value] = key
+            self.add_widget(key)
+        self._mark()
+
+    def _mark(self, *_: object) -> None:
+        for value, key in self._keys.items():
+            key.look = "chosen" if value == self.chosen else "plain"
+
+    def on_choice(self, value: object) -> None:
+        """A key was touched."""
+
+
+def line_height(font_size: float, lines: float = 1.0) -> float:
+    """Height in pixels of so many lines of type of this size in pixels."""
+    return font_size * 1.26 * lines + dp(2)
+
+
+load_kv("parts")

@@ -1,0 +1,1 @@
+"""How the page looks: colours, type, sizes and drawn signs."""
