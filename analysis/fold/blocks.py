@@ -1,0 +1,135 @@
+"""What keeps a verdict back: readings still missing, and conditions under which none may be given.
+
+Each function returns one sentence, or an empty string where its condition does not hold. Waiting is mended by
+further readings; a block says that the fold, or the way it was read, does not bear a verdict.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Final
+
+import numpy as np
+
+from analysis.fold.transection import FEWEST_CLUSTERS
+from analysis.fold.watch import (
+    GIRDLE_SCATTER_AT_MOST_DEG,
+    HINGE_SE_AT_MOST_DEG,
+    LINES_AT_FIRST_LOOK,
+    PLANES_AT_FIRST_LOOK,
+    stream_progress,
+)
+from analysis.fold.words import degrees
+from analysis.stats.watching import watched_multiplier
+
+if TYPE_CHECKING:
+    from analysis.fold.limbs import Limbs
+    from analysis.fold.records import Counts
+    from analysis.fold.transection import Transection
+    from analysis.orient.vectors import Floats
+    from analysis.stats.axes import AxisFit
+
+# Looked at again and again, so one in a thousand at a look.
+_OUTCROPS_DIFFER_Z: Final = 3.09
+_STREAMS_DIFFER_CONFIDENCE: Final = 0.99
+_FEWEST_TO_COMPARE: Final = 3
+# Twice the readings of the first look: from here on it is the fold that is unclear, not the count.
+_HINGE_SHOULD_BE_CLEAR_FROM: Final = 2.0
+_STEEP_LINE_SINE: Final = float(np.sin(np.radians(70.0)))
+
+
+def missing_for_hinge(counts: Counts) -> str:
+    """Wait for the first look at the hinge."""
+    if stream_progress(counts.bedding, counts.hinge) >= 1.0:
+        return ""
+    return (
+        f"The hinge needs {PLANES_AT_FIRST_LOOK:.0f} bedding readings or {LINES_AT_FIRST_LOOK:.0f} hinge lines: "
+        f"{counts.bedding} and {counts.hinge} so far."
+    )
+
+
+def missing_for_cleavage(counts: Counts) -> str:
+    """Wait for the first look at the cleavage."""
+    if stream_progress(counts.cleavage, counts.intersection) >= 1.0:
+        return ""
+    return (
+        f"The cleavage needs {PLANES_AT_FIRST_LOOK:.0f} cleavage readings or {LINES_AT_FIRST_LOOK:.0f} intersection "
+        f"lines: {counts.cleavage} and {counts.intersection} so far."
+    )
+
+
+def hinge_unclear(hinge: AxisFit, counts: Counts, limbs: Limbs | None) -> tuple[str, bool]:
+    """Wait for, or from twelve readings on be blocked by, a hinge that the bedding does not show clearly."""
+    se = float(np.degrees(hinge.less_certain_se_rad))
+    if se <= HINGE_SE_AT_MOST_DEG:
+        return "", False
+    known = f"The hinge is known to ±{degrees(2 * se)} only" if se < 45.0 else "The hinge is not determined yet"
+    why = (
+        "bedding so far lies on one side of the fold. Read the other limb, or hinge lines."
+        if limbs is None
+        else "the girdle is lost in the scatter. Read steeper parts of the limbs, or hinge lines."
+    )
+    blocked = bool(stream_progress(counts.bedding, counts.hinge) >= _HINGE_SHOULD_BE_CLEAR_FROM)
+    return f"{known}: {why}", blocked
+
+
+def not_cylindrical(hinge: AxisFit, counts: Counts) -> str:
+    """Block on bedding that does not lie on one girdle."""
+    scatter = float(np.degrees(hinge.scatter_rad[0]))
+    if counts.bedding < PLANES_AT_FIRST_LOOK or scatter <= GIRDLE_SCATTER_AT_MOST_DEG:
+        return ""
+    return (
+        f"Bedding lies {degrees(scatter)} off its girdle on average (at most {degrees(GIRDLE_SCATTER_AT_MOST_DEG)}): "
+        "at this scale the fold is not cylindrical. Check outcrop by outcrop, or a shorter stretch of the hinge."
+    )
+
+
+def outcrops_differ(transection: Transection) -> bool:
+    """Test whether outcrops differ by more than their readings' scatter: one in a thousand at a look.
+
+    The variance between outcrops over that of the readings follows F; its quantile is taken from chi-square
+    (Wilson & Hilferty 1931, from memory), widened for the readings' own degrees of freedom.
+    """
+    between, outcrops = float(transection.outcrop_variance), float(transection.outcrops)
+    within = float(transection.steady_hinge_variance + transection.steady_cleavage_variance)
+    if outcrops < 2.0 or not np.isfinite(between) or within <= 0.0:
+        return False
+    k, m = outcrops - 1.0, float(transection.steady_freedom)
+    ninth = 2.0 / (9.0 * k)
+    limit = (1.0 - ninth + _OUTCROPS_DIFFER_Z * ninth**0.5) ** 3 * max(m, 3.0) / (max(m, 3.0) - 2.0)
+    return between / within > limit
+
+
+def outcrops_disagree(transection: Transection) -> str:
+    """Block on outcrops that differ while there are too few to say by how much they do."""
+    if transection.outcrops >= FEWEST_CLUSTERS or not outcrops_differ(transection):
+        return ""
+    return (
+        f"The {int(transection.outcrops)} outcrops disagree by more than their readings scatter. "
+        f"Read at {FEWEST_CLUSTERS} outcrops or more, or check each by itself."
+    )
+
+
+def planes_against_lines(planes: AxisFit, lines: AxisFit) -> tuple[float, bool]:
+    """Give the angle, degrees, at which the mean intersection line leaves the mean cleavage plane, and whether
+    that is more than their errors allow.
+
+    An intersection line lies in the cleavage on either limb, so the limbs do not matter here.
+    """
+    if planes.count < _FEWEST_TO_COMPARE or lines.count < _FEWEST_TO_COMPARE:
+        return 0.0, False
+    sine = float(planes.vector @ lines.vector)
+    pulls = (planes.across.T @ lines.vector, lines.across.T @ planes.vector)
+    variance = sum(
+        max(float(pull @ fit.covariance @ pull), float(pull @ fit.even_covariance @ pull))
+        for pull, fit in zip(pulls, (planes, lines), strict=True)
+    )
+    looks = float(stream_progress(planes.count, lines.count))
+    limit = watched_multiplier(looks, planes.freedom + lines.freedom, _STREAMS_DIFFER_CONFIDENCE)
+    return float(np.degrees(np.arcsin(abs(sine)))), bool(abs(sine) > limit * variance**0.5)
+
+
+def too_steep_for_lines(hinge: Floats, line: Floats) -> str:
+    """Block lines alone where hinge or mean line are too steep to give a direction in plan."""
+    if max(abs(float(hinge[2])), abs(float(line[2]))) <= _STEEP_LINE_SINE:
+        return ""
+    return "Hinge or intersection plunge more than 70°: lines alone give no angle on the map. Read cleavage planes."

@@ -1,0 +1,194 @@
+"""The check of one fold: everything that the running sums say, in time that does not grow with the readings."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+
+from analysis.fold import blocks
+from analysis.fold.decision import decide
+from analysis.fold.intersection import computed_lines, limb_lines, side_of_outcrops
+from analysis.fold.limbs import Limbs, find_limbs, sides
+from analysis.fold.records import (
+    AxisEstimate,
+    Counts,
+    EllipseDeg,
+    FoldCheck,
+    LimbLine,
+    MeanIntersection,
+    SideEstimate,
+)
+from analysis.fold.settings import CheckSettings
+from analysis.fold.transection import (
+    Transection,
+    fit_cleavage,
+    fit_hinge,
+    fit_lines,
+    transection_of_lines,
+    transection_of_planes,
+)
+from analysis.orient.features import Feature
+from analysis.orient.vectors import lower_hemisphere
+from analysis.stats.axes import USUAL_SCATTER_DEG, AxisFit, confidence_ellipse
+from analysis.stats.moments import COUNT, WIDTH
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+    from analysis.orient.vectors import Floats
+    from analysis.stats.sums import RunningSums
+
+DEFAULT: Final = CheckSettings()
+
+
+class _Rows(NamedTuple):
+    """Moments (outcrops, 24) by feature."""
+
+    bedding: Floats
+    cleavage: Floats
+    intersection: Floats
+    hinge: Floats
+
+
+class _Beds(NamedTuple):
+    """Bedding by cells of attitude: moments (cells, 24), the outcrop of each, and its side of the fold."""
+
+    cells: Floats
+    owner: npt.NDArray[np.int64]
+    side: npt.NDArray[np.int64]
+    limbs: Limbs | None
+
+
+def check_fold(
+    sums: RunningSums, settings: CheckSettings = DEFAULT, *, fold: str = "", forecast: bool = True
+) -> FoldCheck:
+    """Check a fold from its running sums.
+
+    With `forecast` the check also says how many more readings are needed, and is "cannot be settled" where
+    that passes the limit. Without, it takes about a millisecond; `analysis.fold.decision.add_forecast` adds
+    the rest later.
+    """
+    counts = Counts(*(sums.count(feature) for feature in Feature), sums.outcrops_read)
+    rows = _Rows(*(sums.by_outcrop(feature) for feature in Feature))
+    hinge = _hinge(rows, counts, settings)
+    pole = None
+    if counts.cleavage:
+        pole = _estimate(fit_cleavage(rows.cleavage, rows.intersection), "planes", settings)
+    beds = None if hinge is None or not counts.bedding else _beds(sums, hinge.fit, pole)
+    lines = fit_lines(rows.intersection) if counts.intersection else None
+    check = FoldCheck(
+        fold=fold,
+        settings=settings,
+        readings=counts,
+        hinge=hinge,
+        cleavage=pole,
+        intersection=_mean_intersection(rows, counts, hinge, pole, beds, settings),
+        limbs=None if beds is None else beds.limbs,
+        limb_lines=_limb_lines(rows, beds, pole),
+    )
+    by_planes, by_lines = _transections(rows, hinge, pole, lines)
+    check = check.changed(
+        estimates=tuple(
+            SideEstimate(source, float(t.delta_deg), float(t.fixed_variance) ** 0.5)
+            for source, t in (("planes", by_planes), ("lines", by_lines))
+            if t is not None and np.isfinite(t.fixed_variance)
+        )
+    )
+    return decide(check, sums, by_planes or by_lines, _warnings(rows, check, beds, lines), lines, forecast=forecast)
+
+
+def _estimate(fit: AxisFit, source: str, settings: CheckSettings) -> AxisEstimate:
+    ellipse = None
+    if fit.count > 2.0 and np.isfinite(fit.covariance).all():
+        e = confidence_ellipse(fit, settings.confidence)
+        ellipse = EllipseDeg(float(e.major_deg), float(e.minor_deg), e.major_axis, e.minor_axis)
+    return AxisEstimate(lower_hemisphere(fit.vector), source, ellipse, fit)
+
+
+def _hinge(rows: _Rows, counts: Counts, settings: CheckSettings) -> AxisEstimate | None:
+    if counts.bedding < 2 and not counts.hinge:
+        return None
+    fit = fit_hinge(rows.bedding, rows.hinge)
+    if not np.isfinite(fit.even_covariance).all() and not counts.hinge:
+        return None  # bedding all alike: every direction in the bed could be the hinge
+    source = "both" if counts.bedding and counts.hinge else "bedding" if counts.bedding else "hinge lines"
+    return _estimate(fit, source, settings)
+
+
+def _beds(sums: RunningSums, hinge: AxisFit, pole: AxisEstimate | None) -> _Beds:
+    cells, owner = sums.bedding_cells()
+    side = sides(cells, hinge.across)
+    limbs = find_limbs(cells, side, hinge.across, None if pole is None else pole.vector)
+    return _Beds(cells, owner, side if limbs else np.zeros_like(side), limbs)
+
+
+def _mean_intersection(
+    rows: _Rows,
+    counts: Counts,
+    hinge: AxisEstimate | None,
+    pole: AxisEstimate | None,
+    beds: _Beds | None,
+    settings: CheckSettings,
+) -> MeanIntersection | None:
+    """Mean of measured lines, and of lines computed where S0 and S1 but no line were read.
+
+    A line measured on the very beds whose S0 and S1 were read is no independent evidence, so an outcrop gives
+    either its measured lines or its computed ones.
+    """
+    merged, computed = rows.intersection, 0
+    if hinge is not None and pole is not None and beds is not None:
+        bare = np.where(rows.intersection[:, COUNT, np.newaxis] > 0.5, 0.0, rows.cleavage)
+        scatter = np.array([hinge.fit.scatter_rad[0], pole.fit.scatter_rad[0], np.radians(USUAL_SCATTER_DEG)])
+        extra, places = computed_lines(beds.cells, beds.owner, beds.side, bare, scatter)
+        computed = len(extra)
+        added = np.zeros((len(merged), WIDTH))
+        np.add.at(added, places, extra)
+        merged = merged + added
+    if not counts.intersection + computed:
+        return None
+    return MeanIntersection(_estimate(fit_lines(merged), "lines", settings), counts.intersection, computed)
+
+
+def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> tuple[LimbLine, ...]:
+    if beds is None or beds.limbs is None or pole is None:
+        return ()
+    where = side_of_outcrops(beds.cells, beds.owner, beds.side, len(rows.bedding))
+    return limb_lines(beds.limbs, pole.vector, rows.intersection, where)
+
+
+def _transections(
+    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None, lines: AxisFit | None
+) -> tuple[Transection | None, Transection | None]:
+    """Transection from cleavage planes (with the lines in them), and from the mean measured line alone."""
+    if hinge is None:
+        return None, None
+    by_planes = by_lines = None
+    if pole is not None:
+        by_planes = transection_of_planes(hinge.fit, pole.fit, rows)
+    if lines is not None:
+        by_lines = transection_of_lines(hinge.fit, lines, (rows.bedding, rows.hinge, rows.intersection))
+    return by_planes, by_lines
+
+
+def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit | None) -> list[str]:
+    warnings = []
+    if lines is not None and beds is not None and beds.limbs is not None:
+        where = side_of_outcrops(beds.cells, beds.owner, beds.side, len(rows.bedding))
+        read = where[rows.intersection[:, COUNT] > 0.5]
+        if len(set(read.tolist()) - {-1}) == 1 and (read >= 0).all():
+            limb = beds.limbs.both[int(read[0])].name
+            warnings.append(
+                f"All intersection lines come from one limb (the {limb}): their mean is drawn along the cleavage. "
+                "Read some on the other limb."
+            )
+    if check.cleavage is None and check.readings.intersection:
+        warnings.append("From intersection lines alone: this takes the cleavage to be steep. Read cleavage planes.")
+    if check.hinge is not None and check.readings.bedding >= 6:
+        flat = sum(1 for limb in (check.limbs.both if check.limbs else ()) if limb.plane.dip_deg < 10.0)
+        if flat:
+            warnings.append("A limb dips less than 10°: the strikes of such beds say little, their poles all the same.")
+    return warnings
+
+
+__all__ = ["DEFAULT", "blocks", "check_fold"]

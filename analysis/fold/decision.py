@@ -1,0 +1,239 @@
+"""The verdict: what the transection and its interval allow to be said, what keeps it back, what to read next."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from analysis.fold import blocks
+from analysis.fold.advice import next_reading
+from analysis.fold.forecast import settle, split
+from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers
+from analysis.fold.transection import FEWEST_CLUSTERS, Transection, fit_cleavage
+from analysis.fold.watch import (
+    LINES_AT_FIRST_LOOK,
+    PLANES_AT_FIRST_LOOK,
+    information_since_first_look,
+    stream_progress,
+    watch,
+)
+from analysis.fold.words import degrees
+from analysis.orient.features import Feature
+from analysis.stats.quantiles import t_quantile
+
+if TYPE_CHECKING:
+    from analysis.stats.axes import AxisFit
+    from analysis.stats.sums import RunningSums
+
+
+def decide(
+    check: FoldCheck,
+    sums: RunningSums,
+    transection: Transection | None,
+    warnings: list[str],
+    lines: AxisFit | None,
+    *,
+    forecast: bool,
+) -> FoldCheck:
+    """Complete a check with its figures, its verdict and, if asked, its forecast."""
+    counts, settings = check.readings, check.settings
+    waiting = [s for s in (blocks.missing_for_hinge(counts), blocks.missing_for_cleavage(counts)) if s]
+    if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
+        if transection is not None and check.hinge is not None:
+            check = _with_angle(check, transection)
+        return _advised(check.changed(because=tuple(waiting), warnings=tuple(warnings)), sums)
+
+    check = _with_angle(_with_fixed_interval(check, transection), transection)
+    waits, blocked, notes = _kept_back(check, sums, transection, lines)
+    waiting += waits
+    progress = (
+        stream_progress(counts.bedding, counts.hinge),
+        stream_progress(counts.cleavage, counts.intersection),
+    )
+    information = information_since_first_look(transection, *progress)
+    clear = not any("hinge is" in s for s in waiting + blocked)
+    seen = watch(transection, information, min(progress) >= 1.0 and clear, settings)
+    variance = float(transection.variance)
+    check = check.changed(
+        interval_deg=(float(seen.low_deg), float(seen.high_deg)) if seen.looked else None,
+        numbers=WatchNumbers(
+            delta_deg=check.transection_deg or 0.0,
+            hinge_variance=float(transection.steady_hinge_variance),
+            cleavage_variance=float(transection.steady_cleavage_variance),
+            variance=variance,
+            freedom=float(transection.freedom),
+            information=float(information),
+            by_outcrop=bool(transection.by_outcrop),
+        )
+        if np.isfinite(variance) and variance > 0.0
+        else None,
+        warnings=(*warnings, *notes),
+    )
+    if blocked:
+        return _advised(
+            check.changed(verdict=Verdict.CANNOT_BE_SETTLED, because=tuple(blocked), blocked=True), sums
+        )
+    if seen.transected:
+        return check.changed(verdict=Verdict.TRANSECTED, because=_why_transected(check, transection))
+    if seen.axial_planar:
+        return check.changed(verdict=Verdict.AXIAL_PLANAR, because=_why_axial_planar(check, transection))
+    if not waiting:
+        waiting.append(
+            f"The interval neither leaves out 0 nor lies within ±{degrees(settings.margin_deg)} closely enough yet."
+        )
+    check = _advised(check.changed(because=tuple(waiting)), sums)
+    return add_forecast(check) if forecast else check
+
+
+def add_forecast(check: FoldCheck) -> FoldCheck:
+    """Add how many more readings should settle it; past the limit the fold cannot be settled here.
+
+    Does nothing where the verdict stands, where it is blocked, or where the readings give no error yet.
+    Takes a few milliseconds; run it away from the screen, for the check at hand only.
+    """
+    numbers, counts = check.numbers, check.readings
+    if check.verdict is not Verdict.KEEP_READING or numbers is None:
+        return check
+    by_lines = check.cleavage is None
+    held = (float(counts.bedding + counts.hinge), float(counts.cleavage + counts.intersection))
+    missing = (
+        _missing(counts.bedding, counts.hinge, PLANES_AT_FIRST_LOOK),
+        _missing(counts.cleavage, counts.intersection, LINES_AT_FIRST_LOOK if by_lines else PLANES_AT_FIRST_LOOK),
+    )
+    settling = settle(numbers, held, missing, check.settings)
+    limit = check.settings.forecast_limit
+    if not settling.median <= limit:
+        if any(missing):
+            return check  # too early to despair: the scatter itself is hardly known
+        return check.changed(
+            verdict=Verdict.CANNOT_BE_SETTLED,
+            because=(
+                f"More than {limit} further readings would be needed at the present scatter "
+                f"(the estimate is {degrees(numbers.delta_deg)}, its standard error {degrees(numbers.variance**0.5)}).",
+            ),
+        )
+    total = round(settling.median)
+    first = round(float(split(total, held, (numbers.hinge_variance, numbers.cleavage_variance))[0]))
+    first = max(min(first, total - round(missing[1])), round(missing[0]))
+    bedding = first if counts.bedding or not counts.hinge else 0
+    return check.changed(
+        more_readings=MoreReadings(
+            total=total,
+            low=round(settling.low),
+            high=round(min(settling.high, 8.0 * limit)),
+            bedding=bedding,
+            cleavage=0 if by_lines else total - first,
+            intersection=total - first if by_lines else 0,
+            hinge=first - bedding,
+        )
+    )
+
+
+def _missing(planes: int, lines: int, wanted: float) -> float:
+    left = 1.0 - float(stream_progress(planes, lines))
+    return float(np.ceil(max(left, 0.0) * wanted - 1e-9))
+
+
+def _with_angle(check: FoldCheck, transection: Transection) -> FoldCheck:
+    delta = float(transection.delta_deg)
+    sense = "unsigned" if not transection.has_sense else "clockwise" if delta > 0.0 else "anticlockwise" if delta < 0.0 else "none"
+    return check.changed(transection_deg=delta, sense=sense)
+
+
+def _with_fixed_interval(check: FoldCheck, transection: Transection) -> FoldCheck:
+    se, df = float(transection.fixed_variance) ** 0.5, float(transection.fixed_freedom)
+    if df <= 0.0:
+        return check.changed(se_deg=se)
+    half = t_quantile(0.5 + 0.5 * check.settings.confidence, df) * se
+    delta = float(transection.delta_deg)
+    return check.changed(se_deg=se, df=df, fixed_interval_deg=(delta - half, delta + half))
+
+
+def _kept_back(
+    check: FoldCheck, sums: RunningSums, transection: Transection, lines: AxisFit | None
+) -> tuple[list[str], list[str], list[str]]:
+    """Sentences on what to wait for, what blocks, and what else to mind."""
+    assert check.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
+    counts = check.readings
+    waits, blocked, notes = [], [], []
+    if not blocks.missing_for_hinge(counts):
+        unclear, for_good = blocks.hinge_unclear(check.hinge.fit, counts, check.limbs)
+        if unclear:
+            (blocked if for_good else waits).append(unclear)
+        blocked.append(blocks.not_cylindrical(check.hinge.fit, counts))
+    blocked.append(blocks.outcrops_disagree(transection))
+    if check.cleavage is None and lines is not None:
+        blocked.append(blocks.too_steep_for_lines(check.hinge.vector, lines.vector))
+    if check.cleavage is not None and lines is not None:
+        planes = fit_cleavage(sums.by_outcrop(Feature.CLEAVAGE))
+        angle, differ = blocks.planes_against_lines(planes, lines)
+        if differ:
+            blocked.append(
+                f"Cleavage planes and intersection lines disagree: the mean line leaves the mean plane by "
+                f"{degrees(angle)}, more than their errors allow. Read both again at one outcrop."
+            )
+    if not transection.has_sense:
+        notes.append("The hinge is too steep, or the cleavage too flat, for a sense on the map: the angle has no sign.")
+    if transection.outcrops >= FEWEST_CLUSTERS and blocks.outcrops_differ(transection):
+        notes.append(
+            "Outcrops differ by more than their readings scatter: the verdict is for the fold as a whole, and single "
+            "outcrops may differ from it."
+        )
+    return waits, [s for s in blocked if s], notes
+
+
+def _scale(transection: Transection) -> str:
+    n = int(transection.outcrops)
+    if n >= FEWEST_CLUSTERS:
+        return f"Holds for the stretch of the fold that the {n} outcrops span."
+    where = "one outcrop" if n == 1 else f"{n} outcrops"
+    return f"Holds for the {where} read; for the fold as a whole read at {FEWEST_CLUSTERS} or more."
+
+
+def _why_transected(check: FoldCheck, transection: Transection) -> tuple[str, ...]:
+    share = f"{100.0 * check.settings.confidence:g}%"
+    why = [f"The {share} interval, valid at all looks together, leaves out 0."]
+    margin = check.settings.margin_deg
+    if check.interval_deg is not None and max(abs(v) for v in check.interval_deg) < margin:
+        why.append(f"Measurable, but smaller than {degrees(margin)}.")
+    return (*why, _scale(transection))
+
+
+def _why_axial_planar(check: FoldCheck, transection: Transection) -> tuple[str, ...]:
+    return (
+        f"Two one-sided tests at {100.0 * (1.0 - check.settings.confidence):g}%, valid at all looks together, put the "
+        f"transection within ±{degrees(check.settings.margin_deg)}.",
+        _scale(transection),
+    )
+
+
+def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
+    """Add the next best reading."""
+    counts, numbers = check.readings, check.numbers
+    other = Feature.INTERSECTION if check.cleavage is None and counts.intersection else Feature.CLEAVAGE
+    gains = (1.0, 0.0)
+    if numbers is not None and not blocks.missing_for_hinge(counts) and not blocks.missing_for_cleavage(counts):
+        gains = (
+            numbers.hinge_variance / max(counts.bedding + counts.hinge, 1),
+            numbers.cleavage_variance / max(counts.cleavage + counts.intersection, 1),
+        )
+    else:
+        progress = (
+            stream_progress(counts.bedding, counts.hinge),
+            stream_progress(counts.cleavage, counts.intersection),
+        )
+        gains = (1.0 - float(progress[0]), 1.0 - float(progress[1]))
+    pole = None if check.cleavage is None else check.cleavage.vector
+    return check.changed(
+        next_reading=next_reading(
+            sums,
+            None if check.hinge is None else check.hinge.fit,
+            check.limbs,
+            pole,
+            gain_hinge=gains[0],
+            gain_cleavage=gains[1],
+            other=other,
+            new_outcrop=numbers is not None and numbers.by_outcrop,
+        )
+    )

@@ -1,0 +1,122 @@
+"""The two limbs of a fold, told apart from bedding kept by cells of attitude."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Final
+
+import numpy as np
+
+from analysis.orient.attitudes import Plane
+from analysis.orient.vectors import lower_hemisphere
+from analysis.stats.axes import eigen
+from analysis.stats.moments import COUNT, tensor
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+    from analysis.orient.vectors import Floats
+
+# Halves of a single cluster lie 2.65 of their standard deviations apart, halves of an even round 3.5 (computed
+# here, for a normal and a uniform distribution): from about there on both sides of the fold have been read.
+_TWO_LIMBS_FROM: Final = 3.2
+_OCTANTS: Final = ("N", "NE", "E", "SE", "S", "SW", "W", "NW")
+
+
+@dataclass(frozen=True, slots=True)
+class Limb:
+    """One limb: its mean bedding plane, the number of readings, and their spread about the hinge, degrees."""
+
+    plane: Plane
+    count: int
+    spread_deg: float
+
+    @property
+    def name(self) -> str:
+        """Name by the direction it dips in, such as 'limb dipping NW'."""
+        return f"limb dipping {_OCTANTS[round(self.plane.dip_direction_deg / 45.0) % 8]}"
+
+
+@dataclass(frozen=True, slots=True)
+class Limbs:
+    """Both limbs of a fold.
+
+    `interlimb_deg` is 0 to 180 degrees, measured across the axial surface; the axial surface bisects it. Of
+    the two bisecting planes the one nearer the cleavage is taken, or, without cleavage, the one that leaves
+    both limbs right way up.
+    """
+
+    first: Limb
+    second: Limb
+    interlimb_deg: float
+    axial_surface: Plane
+
+    @property
+    def both(self) -> tuple[Limb, Limb]:
+        """The two limbs."""
+        return self.first, self.second
+
+
+def sides(cells: Floats, across: Floats) -> npt.NDArray[np.int64]:
+    """Tell on which side of the fold, 0 or 1, each cell of bedding moments (cells, 24) lies.
+
+    `across` (3, 2) are two directions at right angles to the hinge. Angles about the hinge are doubled, since
+    poles are axes; the cloud of doubled angles is cut across its longest extent.
+    """
+    doubled = _doubled_angles(tensor(cells), across)
+    counts = cells[:, COUNT]
+    away = doubled / counts[:, np.newaxis] - doubled.sum(axis=0) / counts.sum()
+    _, vectors = np.linalg.eigh((away * counts[:, np.newaxis]).T @ away)
+    return np.asarray(away @ vectors[:, 1] > 0.0, dtype=np.int64)
+
+
+def find_limbs(cells: Floats, side: npt.NDArray[np.int64], across: Floats, cleavage: Floats | None) -> Limbs | None:
+    """Find both limbs, or None where only one side of the fold has been read.
+
+    Parameters
+    ----------
+    cells, side, across
+        Moments (cells, 24) of bedding, the side of each from `sides`, and (3, 2) the directions across the hinge.
+    cleavage
+        The cleavage pole, shape (3,), if known: it says which of the two bisecting planes is the axial surface.
+
+    """
+    if not (side.any() and not side.all()):
+        return None
+    sums = np.stack([cells[side == k].sum(axis=0) for k in (0, 1)])
+    moment = tensor(sums)
+    doubled = _doubled_angles(moment, across)
+    radius = np.linalg.norm(doubled, axis=-1)
+    about_hinge = np.trace(across.T @ moment @ across, axis1=-2, axis2=-1)
+    gathered = np.clip(radius / np.maximum(about_hinge, 1e-300), 1e-9, 1.0)
+    spread = 0.5 * np.degrees(np.sqrt(-2.0 * np.log(gathered)))
+    angles = np.arctan2(doubled[:, 1], doubled[:, 0])
+    apart = 0.5 * np.degrees(abs((angles[1] - angles[0] + np.pi) % (2.0 * np.pi) - np.pi))
+    counts = sums[:, COUNT]
+    pooled = float(np.sqrt(np.average(spread**2, weights=counts)))
+    if apart < _TWO_LIMBS_FROM * pooled or apart < 1.0:
+        return None
+    poles = eigen(moment)[1][..., 0]
+    first, second = (
+        Limb(Plane.from_pole(pole), round(float(count)), float(width))
+        for pole, count, width in zip(poles, counts, spread, strict=True)
+    )
+    return Limbs(first, second, *_bisected(poles, cleavage))
+
+
+def _bisected(poles: Floats, cleavage: Floats | None) -> tuple[float, Plane]:
+    """Interlimb angle, degrees, and axial surface of two limbs with these poles, shape (2, 3)."""
+    up = -lower_hemisphere(poles)
+    between = float(np.degrees(np.arccos(np.clip(up[0] @ up[1], -1.0, 1.0))))
+    upright, lying = up[0] - up[1], up[0] + up[1]
+    if cleavage is not None:
+        towards = [abs(float(axis @ cleavage)) / float(np.linalg.norm(axis)) for axis in (upright, lying)]
+        if towards[1] > towards[0]:
+            return between, Plane.from_pole(lying)
+    return 180.0 - between, Plane.from_pole(upright)
+
+
+def _doubled_angles(moment: Floats, across: Floats) -> Floats:
+    """Sum of (cos 2a, sin 2a) r^2, shape (..., 2), over axes at angle a about the hinge and r off it."""
+    plane = across.T @ moment @ across
+    return np.stack([plane[..., 0, 0] - plane[..., 1, 1], 2.0 * plane[..., 0, 1]], axis=-1)

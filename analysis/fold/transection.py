@@ -1,0 +1,184 @@
+"""Signed transection: the angle between the hinge and the cleavage plane, with what is known of its error.
+
+sin(transection) = h.s with hinge h and cleavage pole s (Borradaile 1978). Clockwise, positive, means that
+cleavage strikes clockwise of the hinge on a map: (h.s) [up.(h x s)] > 0. Everything broadcasts over a leading
+shape (...); variances are in degrees squared.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+
+from analysis.stats.axes import AxisFit, Stream, fit_axis
+from analysis.stats.moments import COUNT
+
+if TYPE_CHECKING:
+    from analysis.orient.vectors import Floats
+
+_UP: Final = np.array([0.0, 0.0, -1.0])
+_DEGREES_SQUARED: Final = float(np.degrees(1.0)) ** 2
+# No sense on the map where the direction about which hinge turns into cleavage lies within about 12 degrees
+# of horizontal: a steep hinge, or cleavage that dips gently.
+_NO_SENSE_BELOW: Final = 0.2
+# Outcrops needed before the scatter between them is taken as an estimate (METHOD: four or more).
+FEWEST_CLUSTERS: Final = 4
+
+
+class Transection(NamedTuple):
+    """The angle between hinge and cleavage, degrees, clockwise positive, and its variances, degrees squared.
+
+    Attributes
+    ----------
+    delta_deg
+        (...), signed where `has_sense`; else the angle without a sign.
+    has_sense
+        (...), whether the angle has a sense on the map.
+    hinge_variance, cleavage_variance
+        (...), the parts of the variance from either axis, whatever the distribution of readings.
+    steady_hinge_variance, steady_cleavage_variance
+        (...), the larger of those and of the parts if the scatter is even: what a watched interval needs.
+    outcrop_variance
+        (...), of the whole from the scatter between outcrops; nan with fewer than two.
+    outcrops
+        (...), outcrops with readings of either axis.
+    fixed_freedom, steady_freedom
+        (...), degrees of freedom of the two pairs above (Satterthwaite).
+
+    """
+
+    delta_deg: Floats
+    has_sense: Floats
+    hinge_variance: Floats
+    cleavage_variance: Floats
+    steady_hinge_variance: Floats
+    steady_cleavage_variance: Floats
+    outcrop_variance: Floats
+    outcrops: Floats
+    fixed_freedom: Floats
+    steady_freedom: Floats
+
+    @property
+    def fixed_variance(self) -> Floats:
+        """Variance, (...), of one look at readings that are independent."""
+        return self.hinge_variance + self.cleavage_variance
+
+    @property
+    def by_outcrop(self) -> Floats:
+        """Whether, (...), outcrops scatter more than their readings: they then give the variance."""
+        with np.errstate(invalid="ignore"):
+            return (self.outcrops >= FEWEST_CLUSTERS) & (
+                self.outcrop_variance > self.steady_hinge_variance + self.steady_cleavage_variance
+            )
+
+    @property
+    def variance(self) -> Floats:
+        """Variance, (...), for watching: the larger of reading level and outcrop level."""
+        return np.where(
+            self.by_outcrop, self.outcrop_variance, self.steady_hinge_variance + self.steady_cleavage_variance
+        )
+
+    @property
+    def freedom(self) -> Floats:
+        """Degrees of freedom, (...), of `variance`."""
+        return np.where(self.by_outcrop, self.outcrops - 1.0, self.steady_freedom)
+
+
+def fit_hinge(bedding: Floats, hinge_lines: Floats) -> AxisFit:
+    """Fit the hinge to moments (..., outcrops, 24) of bedding poles and of hinge lines.
+
+    The pi-axis of the bedding poles, the mean of the hinge lines, or both weighted by their scatter.
+    """
+    return fit_axis([Stream(bedding, along=False), Stream(hinge_lines, along=True)])
+
+
+def fit_cleavage(planes: Floats, intersections: Floats | None = None) -> AxisFit:
+    """Fit the cleavage pole to moments (..., outcrops, 24) of cleavage poles, and of intersection lines."""
+    streams = [Stream(planes, along=True)]
+    if intersections is not None:
+        streams.append(Stream(intersections, along=False))
+    return fit_axis(streams)
+
+
+def fit_lines(lines: Floats) -> AxisFit:
+    """Fit the mean of lines to their moments (..., outcrops, 24)."""
+    return fit_axis([Stream(lines, along=True)])
+
+
+def transection_of_planes(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> Transection:
+    """Transection from hinge and cleavage pole; `rows` are all moments (..., outcrops, 24) that went in."""
+    gradient = np.einsum("...ij,...i->...j", cleavage.across, hinge.vector)
+    return _transection(hinge, cleavage, cleavage.vector, gradient, rows)
+
+
+def transection_of_lines(hinge: AxisFit, line: AxisFit, rows: tuple[Floats, ...]) -> Transection:
+    """Transection from hinge and mean intersection line alone, taking the cleavage to be vertical.
+
+    The cleavage plane is the vertical one through the mean line L, s = L x up / |L x up|, so that planes and
+    lines estimate one quantity; for a horizontal hinge it is the angle between L and h in plan.
+    """
+    crossed = np.cross(line.vector, _UP)
+    length = np.maximum(np.linalg.norm(crossed, axis=-1), 1e-9)
+    pole = crossed / length[..., np.newaxis]
+    # d(h.s) for L turning along a direction u: (h.(u x up) - (h.s) s.(u x up)) / |L x up|.
+    moved = np.cross(line.across.swapaxes(-1, -2), _UP)
+    seen = hinge.vector - np.sum(hinge.vector * pole, axis=-1, keepdims=True) * pole
+    gradient = np.einsum("...ji,...i->...j", moved, seen) / length[..., np.newaxis]
+    return _transection(hinge, line, pole, gradient, rows)
+
+
+def _transection(
+    hinge: AxisFit, other: AxisFit, pole: Floats, gradient: Floats, rows: tuple[Floats, ...]
+) -> Transection:
+    sine = np.sum(hinge.vector * pole, axis=-1)
+    turning = np.sum(np.cross(hinge.vector, pole) * _UP, axis=-1)
+    has_sense = np.abs(turning) >= _NO_SENSE_BELOW
+    clockwise = np.where(sine * turning >= 0.0, 1.0, -1.0)
+    size = np.degrees(np.arcsin(np.minimum(np.abs(sine), 1.0)))
+    scale = _DEGREES_SQUARED / np.maximum(1.0 - sine * sine, 1e-12)
+    along_hinge = np.einsum("...ij,...i->...j", hinge.across, pole)
+
+    with np.errstate(invalid="ignore"):
+        parts = [
+            _quadratic(along_hinge, hinge.covariance) * scale,
+            _quadratic(gradient, other.covariance) * scale,
+            _quadratic(along_hinge, hinge.even_covariance) * scale,
+            _quadratic(gradient, other.even_covariance) * scale,
+        ]
+    of_hinge, of_other, even_hinge, even_other = (np.where(np.isnan(part), np.inf, part) for part in parts)
+    steady_hinge, steady_other = np.maximum(of_hinge, even_hinge), np.maximum(of_other, even_other)
+
+    held = sum(row[..., COUNT] for row in rows)
+    outcrops = np.count_nonzero(np.asarray(held) > 0.5, axis=-1).astype(float)
+    pull = np.einsum("...oj,...j->...o", hinge.influence, along_hinge)
+    pull = pull + np.einsum("...oj,...j->...o", other.influence, gradient)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        between = np.sum(pull * pull, axis=-1) * scale * outcrops / (outcrops - 1.0)
+    girdle = np.any(rows[0][..., COUNT] > 0.5, axis=-1)
+    fixed = _satterthwaite(of_hinge, hinge.count - np.where(girdle, 2.0, 1.0), of_other, other.count - 1.0)
+    return Transection(
+        delta_deg=np.where(has_sense, clockwise, 1.0) * size,
+        has_sense=has_sense,
+        hinge_variance=of_hinge,
+        cleavage_variance=of_other,
+        steady_hinge_variance=steady_hinge,
+        steady_cleavage_variance=steady_other,
+        outcrop_variance=np.where(outcrops > 1.0, between, np.nan),
+        outcrops=outcrops,
+        fixed_freedom=fixed,
+        steady_freedom=_satterthwaite(steady_hinge, hinge.freedom, steady_other, other.freedom),
+    )
+
+
+def _quadratic(vector: Floats, matrix: Floats) -> Floats:
+    return np.asarray(np.einsum("...i,...ij,...j->...", vector, matrix, vector))
+
+
+def _satterthwaite(first: Floats, first_freedom: Floats, second: Floats, second_freedom: Floats) -> Floats:
+    """Degrees of freedom of a sum of two variances (Satterthwaite 1946)."""
+    with np.errstate(invalid="ignore", divide="ignore"):
+        spread = first**2 / np.maximum(first_freedom, 1e-9) + second**2 / np.maximum(second_freedom, 1e-9)
+        freedom = (first + second) ** 2 / spread
+    # Two variances of zero (readings without any scatter) leave 0/0: the smaller number is the honest one.
+    return np.where(np.isfinite(freedom), freedom, np.maximum(np.minimum(first_freedom, second_freedom), 1.0))

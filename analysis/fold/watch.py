@@ -1,0 +1,87 @@
+"""From a transection and its variance to a decision that may be looked at after every reading.
+
+Broadcasts over a leading shape (...), so that the calibration runs the very code that the page runs.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+
+from analysis.stats.watching import equivalence_multiplier, watched_multiplier
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+    from analysis.fold.settings import CheckSettings
+    from analysis.fold.transection import Transection
+    from analysis.orient.vectors import Floats
+    from analysis.stats.axes import AxisFit
+
+# No verdict before so many readings of a stream; the clock of the interval starts there.
+PLANES_AT_FIRST_LOOK: Final = 6.0
+LINES_AT_FIRST_LOOK: Final = 5.0
+# The error of the angle is taken as linear in the error of the hinge; beyond this the girdle may even be lost
+# in the scatter and the hinge swing to another axis. Measured: see the calibration.
+HINGE_SE_AT_MOST_DEG: Final = 8.0
+# Bedding further off its girdle than this is not one cylindrical fold. Common practice, no source: a fold is
+# called cylindrical to within 10 and subcylindrical to within 20 degrees (Ramsay & Huber 1987, from memory).
+GIRDLE_SCATTER_AT_MOST_DEG: Final = 15.0
+
+
+class Watched(NamedTuple):
+    """A watched interval and what follows from it, each of shape (...)."""
+
+    low_deg: Floats
+    high_deg: Floats
+    looked: npt.NDArray[np.bool_]  # both streams have reached their first look, and the hinge is clear
+    transected: npt.NDArray[np.bool_]
+    axial_planar: npt.NDArray[np.bool_]
+
+
+def stream_progress(planes: npt.ArrayLike, lines: npt.ArrayLike) -> Floats:
+    """Readings of a stream, (...), in units of those needed for the first look."""
+    return np.asarray(
+        np.asarray(planes, dtype=float) / PLANES_AT_FIRST_LOOK + np.asarray(lines, dtype=float) / LINES_AT_FIRST_LOOK
+    )
+
+
+def hinge_is_clear(hinge: AxisFit) -> npt.NDArray[np.bool_]:
+    """Tell, (...), whether the hinge is known well enough for its error to be reckoned with."""
+    return np.asarray(np.degrees(hinge.less_certain_se_rad) <= HINGE_SE_AT_MOST_DEG)
+
+
+def information_since_first_look(
+    transection: Transection, hinge_progress: npt.ArrayLike, cleavage_progress: npt.ArrayLike
+) -> Floats:
+    """Information, (...), held now over that at the first look, from the counts and the variance now."""
+    of_hinge, of_cleavage = transection.steady_hinge_variance, transection.steady_cleavage_variance
+    with np.errstate(invalid="ignore", divide="ignore"):
+        grown = (of_hinge * hinge_progress + of_cleavage * cleavage_progress) / (of_hinge + of_cleavage)
+    return np.where(np.isfinite(grown), grown, 1.0)
+
+
+def watch(
+    transection: Transection, information: Floats, ready: npt.ArrayLike, settings: CheckSettings
+) -> Watched:
+    """Interval and decision; `ready` (...) says where both streams have reached their first look."""
+    variance, freedom = transection.variance, transection.freedom
+    with np.errstate(invalid="ignore"):
+        se = np.sqrt(variance)
+        half = watched_multiplier(information, freedom, settings.confidence) * se
+        # Readings without any scatter leave a variance of zero, at which there is nothing to start late.
+        floor = np.maximum(variance, 1e-12)
+        narrow = se * equivalence_multiplier(
+            floor, information, freedom, settings.margin_deg, 1.0 - settings.confidence
+        )
+    looked = np.asarray(ready, dtype=bool) & np.isfinite(half)
+    size = np.abs(transection.delta_deg)
+    transected = looked & (size > half)
+    return Watched(
+        low_deg=transection.delta_deg - half,
+        high_deg=transection.delta_deg + half,
+        looked=looked,
+        transected=transected,
+        axial_planar=looked & ~transected & (size + narrow < settings.margin_deg),
+    )

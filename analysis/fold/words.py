@@ -1,0 +1,74 @@
+"""The check in plain sentences: what the verdict strip, the command and the report print."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from analysis.fold.records import Verdict
+from analysis.orient.features import Feature
+
+if TYPE_CHECKING:
+    from analysis.fold.records import FoldCheck, MoreReadings
+
+_PLURAL = {
+    Feature.BEDDING: "bedding",
+    Feature.CLEAVAGE: "cleavage",
+    Feature.INTERSECTION: "intersection",
+    Feature.HINGE: "hinge",
+}
+
+
+def degrees(value: float) -> str:
+    """Write an angle to whole degrees, or to a tenth below ten, without a minus zero."""
+    text = f"{abs(value):.1f}" if abs(value) < 9.95 else f"{abs(value):.0f}"
+    return f"{text.removesuffix('.0')}°"
+
+
+def turned(value: float, *, signed: bool = True) -> str:
+    """Write a transection with its sense: '7° clockwise'."""
+    if not signed or degrees(value) == "0°":
+        return degrees(value)
+    return f"{degrees(value)} {'clockwise' if value > 0 else 'anticlockwise'}"
+
+
+def between(low: float, high: float, *, signed: bool = True) -> str:
+    """Write an interval of a transection: 'between 2° and 12° clockwise'."""
+    if not signed:
+        return f"between {degrees(max(low, 0.0))} and {degrees(high)}"
+    if low * high > 0.0:
+        near, far = sorted((abs(low), abs(high)))
+        return f"between {degrees(near)} and {degrees(far)} {'clockwise' if low > 0 else 'anticlockwise'}"
+    return f"between {turned(low)} and {turned(high)}"
+
+
+def headline(check: FoldCheck) -> str:
+    """Give the first line of the verdict strip: the state as a sentence."""
+    delta = check.transection_deg
+    if check.verdict is Verdict.TRANSECTED and delta is not None:
+        return f"Transected: cleavage {turned(delta, signed=check.sense != 'unsigned')} of the hinge"
+    if check.verdict is Verdict.AXIAL_PLANAR:
+        return f"Axial planar within {degrees(check.settings.margin_deg)}"
+    if check.verdict is Verdict.CANNOT_BE_SETTLED:
+        return "Cannot be settled here"
+    if check.more_readings is not None:
+        return f"Keep reading: about {more(check.more_readings)} should settle it"
+    return "Keep reading"
+
+
+def figure_line(check: FoldCheck) -> str:
+    """Give the second line of the verdict strip: the figure, and never without its interval."""
+    if check.transection_deg is None or check.interval_deg is None:
+        return check.because[0] if check.because else "No readings yet."
+    signed = check.sense != "unsigned"
+    return (
+        f"cleavage {turned(check.transection_deg, signed=signed)} of the hinge, "
+        f"{between(*check.interval_deg, signed=signed)}"
+    )
+
+
+def more(readings: MoreReadings) -> str:
+    """Write further readings by feature: '6 more cleavage and 2 more bedding readings'."""
+    parts = [(getattr(readings, feature.value), _PLURAL[feature]) for feature in Feature]
+    wanted = sorted(((n, name) for n, name in parts if n > 0), reverse=True)
+    text = " and ".join(f"{n} more {name}" for n, name in wanted)
+    return f"{text} reading{'s' if sum(n for n, _ in wanted) != 1 else ''}"
