@@ -265,16 +265,19 @@ def _offsets_m(origin: Position, places: Sequence[Position]) -> Any:  # noqa: AN
 
 
 def _utm_degrees(zone: int, half: str, easting_m: float, northing_m: float) -> tuple[float, float]:
-    from pygeodesy.errors import RangeError  # noqa: PLC0415 (as in to_utm)
-    from pygeodesy.utm import Utm, UTMError  # noqa: PLC0415
+    from pygeodesy.utm import Utm, UTMError  # noqa: PLC0415 (as in to_utm)
 
     try:
-        # Strict limits would refuse eastings past a zone's edge, which maps near an edge do print.
-        found = Utm(zone, half, easting_m, northing_m, falsed=True).toLatLon(unfalse=True)
-    except (UTMError, RangeError, ValueError) as error:
+        # With a band given the library leaves the limits to us; which band does not change the figures.
+        found = Utm(zone, half, easting_m, northing_m, band="N" if half == "N" else "M").toLatLon()
+        latitude, longitude = float(found.lat), float(found.lon)
+    except (UTMError, ValueError):
+        latitude = longitude = math.nan
+    # Squares and grid lines at the ends of the grid run a little past it.
+    if not GRID_SOUTH_deg - 0.001 <= latitude <= GRID_NORTH_deg + 0.001:
         raise PositionError(
             f"easting {easting_m:g} m, northing {northing_m:g} m is no place in zone {zone}",
             where="grid position",
-            expected="a place on the UTM grid",
-        ) from error
-    return float(found.lat), (float(found.lon) + 180.0) % 360.0 - 180.0
+            expected="a place on the UTM grid, 80 S to 84 N",
+        )
+    return latitude, (longitude + 180.0) % 360.0 - 180.0
