@@ -36,6 +36,7 @@ PAIR_LIMIT = -2.0 * math.log(0.0026998)
 FEWEST_FOR_OUTLIER = 6  # METHOD: nothing is concluded from fewer readings in a stream
 OUTLIER_SIGMAS = 3.5
 OUTLIER_PAIR_LIMIT = -2.0 * math.log(0.001)
+NO_GIRDLE_CHANCE = 0.001
 PRIOR_READINGS = 4.0
 PRIOR_SCATTER_DEG = 6.0
 
@@ -277,7 +278,7 @@ def check_computed(
     computed = Line.from_vector(along)
     return EntryWarning(
         EntryCheck.COMPUTED_OFF_MEASURED,
-        f"Measured line lies {off:.0f}° from {_written(computed, notation)}, where bedding and cleavage meet.",
+        f"The line lies {off:.0f}° from {_written(computed, notation)}, where bedding and cleavage meet.",
     )
 
 
@@ -314,8 +315,13 @@ def _off_girdle(pole: Floats, poles: Floats) -> tuple[float, bool]:
         seen = float(np.median(squares)) / 0.4549
         variance = (PRIOR_READINGS * prior + len(poles) * seen) / (PRIOR_READINGS + len(poles))
         kept = poles[squares <= OUTLIER_SIGMAS**2 * variance]
-    # The girdle's axis wavers towards the other two principal axes by variance * value/(n gap^2), the gap being
-    # the difference of eigenvalues (Tyler 1981, Prentice 1984, from memory). Without a girdle the gap is none.
+    # No girdle, no distance from it: the two smaller eigenvalues of a round cluster differ by chance alone.
+    # For two normal directions the sphericity W to the power (n-2)/2 is uniform (Mauchly 1940, from memory).
+    sphericity = 4.0 * values[0] * values[1] / max((values[0] + values[1]) ** 2, 1e-300)
+    if sphericity ** ((len(kept) - 2) / 2.0) > NO_GIRDLE_CHANCE:
+        return 0.0, False
+    # The girdle's axis wavers towards the other two principal axes by variance * value/(n gap^2), the gap
+    # being the difference of eigenvalues (Tyler 1981, Prentice 1984, from memory).
     gaps = np.maximum(values[1:] - values[0], 1e-9)
     leverage = np.sum((pole @ frame[:, 1:]) ** 2 * values[1:] / gaps**2) / len(kept)
     off = math.asin(min(1.0, abs(float(pole @ frame[:, 0]))))

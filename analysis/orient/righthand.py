@@ -26,8 +26,9 @@ OCTANTS = ("N", "NE", "E", "SE", "S", "SW", "W", "NW")
 
 # A quadrant this close to the strike line fits neither side. "Within 45 degrees of strike + 90", a quarter of
 # the compass, would be too narrow for eight quadrants: a tap on the neighbour of the right octant lies up to
-# 67.5 degrees from the dip direction (22.5 for the octant, 45 for the neighbour), and noise adds more. Both sides must reach that far, or good entries are questioned and reversed ones pass with the
-# wrong words. Simulated with 3 degrees of pole noise, dips 15 to 75 degrees and one neighbour tapped in ten:
+# 67.5 degrees from the dip direction (22.5 for the octant, 45 for the neighbour), and noise adds more. Both
+# sides must reach that far, or good entries are questioned and reversed ones pass with the wrong words.
+# Simulated with 3 degrees of pole noise, dips 15 to 75 degrees and one neighbour tapped in ten:
 # 45 degrees either side of strike + 90 questions 5% of good entries and calls 95 to 96% of reversed strikes
 # reversed; 80 degrees questions 0.02% and calls 99.9%.
 ALONG_STRIKE_DEG = 10.0
@@ -38,7 +39,7 @@ PRIOR_READINGS = 4.0  # METHOD's weak prior on the scatter of readings: 4 pseudo
 PRIOR_SCATTER_DEG = 5.0
 RAYLEIGH_MEDIAN = math.sqrt(2.0 * math.log(2.0))  # median distance from the centre in units of the scatter
 FAR_OUTSIDE = 2.0  # scatters from the centre of the cluster: the entry at least so far
-WELL_INSIDE = 3.0  # the reversed plane at most so far
+WELL_INSIDE = 4.0  # the reversed plane at most so far; the scatter of the first few readings is ill known
 # Log likelihood ratio asked of "reversed" against "as entered". One strike in fifty reversed would ask for
 # ln 49 = 3.9 if a question and a miss cost alike; a question costs one glance, so less is asked.
 REVERSED_LOG_RATIO = 2.0

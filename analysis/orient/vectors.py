@@ -14,6 +14,7 @@ from analysis.errors import AttitudeError
 
 Floats = npt.NDArray[np.float64]
 DOWN: Floats = np.array([0.0, 0.0, 1.0])
+_NEXT, _AFTER = np.array([1, 2, 0]), np.array([2, 0, 1])
 
 
 def wrap_azimuth_deg(azimuth_deg: npt.ArrayLike) -> Floats:
@@ -75,6 +76,11 @@ def strike_dip_deg(pole: npt.ArrayLike) -> tuple[Floats, Floats]:
     """Right-hand-rule strike and dip, in degrees, of the planes with these poles, shape (..., 3)."""
     trend, plunge = trend_plunge_deg(pole)
     return wrap_azimuth_deg(trend + 90.0), 90.0 - plunge
+
+
+def cross(first: Floats, second: Floats) -> Floats:
+    """Cross product of vectors with shapes (..., 3) that broadcast; several times faster than numpy's for few."""
+    return first[..., _NEXT] * second[..., _AFTER] - first[..., _AFTER] * second[..., _NEXT]
 
 
 def axis_angle_deg(first: npt.ArrayLike, second: npt.ArrayLike) -> Floats:
