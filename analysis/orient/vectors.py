@@ -79,7 +79,7 @@ def strike_dip_deg(pole: npt.ArrayLike) -> tuple[Floats, Floats]:
 
 
 def cross(first: Floats, second: Floats) -> Floats:
-    """Cross product of vectors with shapes (..., 3) that broadcast; several times faster than numpy's for few."""
+    """Cross product of vectors with shapes (..., 3) that broadcast; faster than numpy's for few vectors."""
     return first[..., _NEXT] * second[..., _AFTER] - first[..., _AFTER] * second[..., _NEXT]
 
 

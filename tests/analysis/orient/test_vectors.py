@@ -143,3 +143,10 @@ def test_a_place_outside_the_net_stands_for_its_rim(xy):
     assert np.linalg.norm(back) == pytest.approx(1.0)
     assert back[2] == pytest.approx(0.0, abs=1e-15)
     np.testing.assert_allclose(back[:2], np.array(xy)[::-1] / np.hypot(*xy))
+
+
+@given(AXES, AXES)
+def test_the_cross_product_is_numpys(first, second):
+    np.testing.assert_allclose(vectors.cross(first, second), np.cross(first, second), atol=1e-15)
+    many = np.array([second, -first, first + second])
+    np.testing.assert_allclose(vectors.cross(first, many), np.cross(first, many), atol=1e-15)
