@@ -52,12 +52,16 @@ class _Rows(NamedTuple):
 
 
 class _Beds(NamedTuple):
-    """Bedding by cells of attitude: moments (cells, 24), the outcrop of each, and its side of the fold."""
+    """Bedding by cells of attitude: moments (cells, 24), the outcrop of each, its side of the fold, the limbs.
+
+    `outcrop_side` (outcrops,) is the side of an outcrop that lies on one limb, else -1.
+    """
 
     cells: Floats
     owner: npt.NDArray[np.int64]
     side: npt.NDArray[np.int64]
     limbs: Limbs | None
+    outcrop_side: npt.NDArray[np.int64]
 
 
 def check_fold(
@@ -120,7 +124,9 @@ def _beds(sums: RunningSums, hinge: AxisFit, pole: AxisEstimate | None) -> _Beds
     cells, owner = sums.bedding_cells()
     side = sides(cells, hinge.across)
     limbs = find_limbs(cells, side, hinge.across, None if pole is None else pole.vector)
-    return _Beds(cells, owner, side if limbs else np.zeros_like(side), limbs)
+    side = side if limbs else np.zeros_like(side)
+    outcrop_side = side_of_outcrops(cells, owner, side, len(sums.outcrops))
+    return _Beds(cells, owner, side, limbs, outcrop_side)
 
 
 def _mean_intersection(
@@ -153,8 +159,7 @@ def _mean_intersection(
 def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> tuple[LimbLine, ...]:
     if beds is None or beds.limbs is None or pole is None:
         return ()
-    where = side_of_outcrops(beds.cells, beds.owner, beds.side, len(rows.bedding))
-    return limb_lines(beds.limbs, pole.vector, rows.intersection, where)
+    return limb_lines(beds.limbs, pole.vector, rows.intersection, beds.outcrop_side)
 
 
 def _transections(
@@ -174,8 +179,7 @@ def _transections(
 def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit | None) -> list[str]:
     warnings = []
     if lines is not None and beds is not None and beds.limbs is not None:
-        where = side_of_outcrops(beds.cells, beds.owner, beds.side, len(rows.bedding))
-        read = where[rows.intersection[:, COUNT] > 0.5]
+        read = beds.outcrop_side[rows.intersection[:, COUNT] > 0.5]
         if len(set(read.tolist()) - {-1}) == 1 and (read >= 0).all():
             limb = beds.limbs.both[int(read[0])].name
             warnings.append(

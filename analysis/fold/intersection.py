@@ -9,7 +9,7 @@ import numpy as np
 from analysis.errors import AttitudeError
 from analysis.fold.records import LimbLine
 from analysis.orient.attitudes import Line
-from analysis.orient.vectors import lower_hemisphere
+from analysis.orient.vectors import cross, lower_hemisphere
 from analysis.stats.axes import eigen
 from analysis.stats.moments import COUNT, WIDTH, moments, tensor
 
@@ -57,7 +57,7 @@ def computed_lines(
         return np.zeros((0, WIDTH)), places
     beds, cleaved = grouped[places], cleavage[places // 2]
     poles = eigen(tensor(np.stack([beds, cleaved])))[1][..., 0]
-    lines = np.cross(poles[0], poles[1])
+    lines = cross(poles[0], poles[1])
     sine = np.linalg.norm(lines, axis=-1)
     clear = sine >= _SINE_AT_LEAST
     bed_variance = scatter_rad[0] ** 2 / beds[clear, COUNT]
@@ -87,7 +87,7 @@ def limb_lines(
     """
     result = []
     for k, limb in enumerate(limbs.both):
-        crossed = np.cross(limb.plane.pole, cleavage_pole)
+        crossed = cross(limb.plane.pole, cleavage_pole)
         try:
             line = Line.from_vector(crossed)
         except AttitudeError:  # a limb parallel to the cleavage has no line of intersection with it

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
+from analysis.orient.vectors import cross
 from analysis.stats.axes import AxisFit, Stream, fit_axis
 from analysis.stats.moments import COUNT
 
@@ -118,11 +119,11 @@ def transection_of_lines(hinge: AxisFit, line: AxisFit, rows: tuple[Floats, ...]
     The cleavage plane is the vertical one through the mean line L, s = L x up / |L x up|, so that planes and
     lines estimate one quantity; for a horizontal hinge it is the angle between L and h in plan.
     """
-    crossed = np.cross(line.vector, _UP)
+    crossed = cross(line.vector, _UP)
     length = np.maximum(np.linalg.norm(crossed, axis=-1), 1e-9)
     pole = crossed / length[..., np.newaxis]
     # d(h.s) for L turning along a direction u: (h.(u x up) - (h.s) s.(u x up)) / |L x up|.
-    moved = np.cross(line.across.swapaxes(-1, -2), _UP)
+    moved = cross(line.across.swapaxes(-1, -2), _UP)
     seen = hinge.vector - np.sum(hinge.vector * pole, axis=-1, keepdims=True) * pole
     gradient = np.einsum("...ji,...i->...j", moved, seen) / length[..., np.newaxis]
     return _transection(hinge, line, pole, gradient, rows)
@@ -132,7 +133,7 @@ def _transection(
     hinge: AxisFit, other: AxisFit, pole: Floats, gradient: Floats, rows: tuple[Floats, ...]
 ) -> Transection:
     sine = np.sum(hinge.vector * pole, axis=-1)
-    turning = np.sum(np.cross(hinge.vector, pole) * _UP, axis=-1)
+    turning = np.sum(cross(hinge.vector, pole) * _UP, axis=-1)
     has_sense = np.abs(turning) >= _NO_SENSE_BELOW
     clockwise = np.where(sine * turning >= 0.0, 1.0, -1.0)
     size = np.degrees(np.arcsin(np.minimum(np.abs(sine), 1.0)))

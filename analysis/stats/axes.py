@@ -69,7 +69,8 @@ class AxisFit(NamedTuple):
     eigenvalues
         (..., 3), of M, descending: the axis' own first.
     scatter_rad
-        (..., streams), standard deviation of one reading about the fit, in one direction.
+        (..., streams), standard deviation of one reading about the fit, in one direction; streams as given,
+        without those that hold no reading.
     count
         (...), number of readings.
     freedom
@@ -122,12 +123,14 @@ def fit_axis(streams: Sequence[Stream]) -> AxisFit:
 
     The covariance of an eigenvector u_c is sum w^2 (u_j.x)(u_k.x)(u_c.x)^2 / [(m_c - m_j)(m_c - m_k)], m the
     eigenvalues of M (Tyler 1981; Prentice 1984; Fisher, Lewis & Embleton 1987 ch. 6, from memory), here with
-    n/(n - 1). With readings in several streams each is weighted by the scatter about its own axis.
+    n/(n - 1). With readings in several streams each is weighted by the scatter about its own axis; streams
+    without any reading are left out.
     """
+    streams = [stream for stream in streams if stream.rows[..., COUNT].any()] or list(streams[:1])
     totals = [stream.rows.sum(axis=-2) for stream in streams]
     tensors = [tensor(total) for total in totals]
     counts = [total[..., COUNT] for total in totals]
-    if sum(bool(np.any(count)) for count in counts) > 1:
+    if len(streams) > 1:
         weights = [
             _weight(t, n, along=stream.along) for t, n, stream in zip(tensors, counts, streams, strict=True)
         ]
