@@ -56,7 +56,7 @@ class Neighbour:
 
 @dataclass(frozen=True, slots=True)
 class Around:
-    """What an entry is held against: readings of the fold, the outcrop it is at, its correction in degrees."""
+    """What an entry is held against: readings of the fold, its outcrop, its correction in degrees."""
 
     neighbours: tuple[Neighbour, ...] = ()
     outcrop: str = ""

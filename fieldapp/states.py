@@ -266,7 +266,7 @@ class Offer(StrEnum):
     NONE = ""
     UNDO = "Undo"
     ADD_BACKUP = "Add the backup"
-    TRY_AGAIN = "Try again"
+    CORRECT_NORTH = "Correct them"
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,17 +8,19 @@ from __future__ import annotations
 
 import json
 import shutil
-from contextlib import contextmanager
+import sqlite3
+from contextlib import closing, contextmanager
 from dataclasses import dataclass
 from datetime import datetime
 from typing import TYPE_CHECKING
 
+from fieldapp.notebook.backups import KEPT, back_up, readings_in
 from fieldapp.notebook.errors import plain_errors
 from fieldapp.notebook.rows import INSERT, SELECT, digest_of, reading_from, row_values
+from fieldapp.notebook.schema import migrate
 from fieldapp.states import FaultInput
 
 if TYPE_CHECKING:
-    import sqlite3
     from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
     from pathlib import Path
 
@@ -277,6 +279,35 @@ class Notebook:
         """Time of the newest hand-over."""
         rows = self._read("SELECT max(made_at) FROM hand_overs")
         return datetime.fromisoformat(str(rows[0][0])) if rows[0][0] else None
+
+    # -- backups -------------------------------------------------------------------------------------------
+
+    def restore(self, backup: Path) -> None:
+        """Put the whole notebook back to a backup; how it is now is kept as a backup of its own first."""
+        readings_in(backup)  # a backup that cannot be read must not replace anything
+        now = self._clock()
+        back_up(self.path, now.date(), name=f"{now:%Y-%m-%dT%H%M%SZ} before restoring", kept=KEPT + 1)
+        with (
+            plain_errors(self.path),
+            closing(sqlite3.connect(f"{backup.resolve().as_uri()}?mode=ro", uri=True)) as source,
+        ):
+            source.backup(self._db)
+            migrate(self._db, self.path, self._clock)
+
+    def add_backup(self, backup: Path) -> int:
+        """Add the revisions that a backup holds and the notebook does not; give their number."""
+        readings = readings_in(backup)
+        added = 0
+        with self._writing() as db:
+            for reading in readings:
+                found = db.execute(
+                    "SELECT 1 FROM revisions WHERE reading_id = ? AND revision = ? AND digest = ?",
+                    (reading.reading_id, reading.revision, digest_of(reading)),
+                ).fetchone()
+                if not found:
+                    self._add(db, reading, "kept")
+                    added += 1
+        return added
 
     def space_left_bytes(self) -> int | None:
         """Free bytes on the storage that the notebook lies on; None where the system does not say."""

@@ -1,0 +1,122 @@
+"""The forecast, computed by a worker and taken only while it is about the readings as they stand.
+
+At most one is under way. What is asked for meanwhile waits, and only the last of it is ever computed, so
+that fast entry never queues up forecasts of folds that no longer exist.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from analysis.fold.decision import add_forecast
+from analysis.fold.forecast import split
+from analysis.orient.features import Feature
+from analysis.stats.watching import watched_multiplier
+from fieldapp.states import ForecastPoint, FunnelState
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from analysis.fold.records import FoldCheck
+    from fieldapp.dispatch import Dispatch
+    from fieldapp.states import FunnelPoint
+
+AHEAD_POINTS = 12
+
+
+@dataclass(frozen=True, slots=True)
+class Forecast:
+    """A check with its forecast, the version of the readings it is about, and the interval expected ahead."""
+
+    version: int
+    check: FoldCheck
+    ahead: tuple[ForecastPoint, ...]
+
+
+def forecast_of(check: FoldCheck, version: int) -> Forecast:
+    """Compute the forecast of a check; runs on any thread."""
+    told = add_forecast(check)
+    return Forecast(version, told, interval_ahead(told))
+
+
+def interval_ahead(check: FoldCheck) -> tuple[ForecastPoint, ...]:
+    """The interval expected as readings are added at the present scatter, out to where it should settle.
+
+    Readings are split over the two streams as the forecast splits them; the transection is taken to stay
+    where it is.
+    """
+    numbers, more, settings = check.numbers, check.more_readings, check.settings
+    if numbers is None or more is None or more.total < 1:
+        return ()
+    streams = (
+        float(max(1, check.readings.of(Feature.BEDDING) + check.readings.of(Feature.HINGE))),
+        float(max(1, check.readings.of(Feature.CLEAVAGE) + check.readings.of(Feature.INTERSECTION))),
+    )
+    parts = (numbers.hinge_variance, numbers.cleavage_variance)
+    now = parts[0] + parts[1]
+    if not now > 0.0:
+        return ()
+    steps = np.unique(np.round(np.linspace(0.0, float(more.total), AHEAD_POINTS)))
+    first, second = split(steps, streams, parts)
+    later = parts[0] * streams[0] / (streams[0] + first) + parts[1] * streams[1] / (streams[1] + second)
+    freedom = numbers.freedom * (1.0 + steps / sum(streams))
+    half = watched_multiplier(numbers.information * now / later, freedom, settings.confidence) * np.sqrt(
+        numbers.variance * later / now
+    )
+    start = sum(check.readings.of(feature) for feature in Feature)
+    return tuple(
+        ForecastPoint(start + int(step), numbers.delta_deg - float(h), numbers.delta_deg + float(h))
+        for step, h in zip(steps, half, strict=True)
+        if np.isfinite(h)
+    )
+
+
+class Forecaster:
+    """Keeps one forecast under way and the newest that came; `came` is called with each that is taken."""
+
+    def __init__(self, dispatch: Dispatch, came: Callable[[Forecast], None]) -> None:
+        self._dispatch = dispatch
+        self._came = came
+        self._under_way = False
+        self._waiting: tuple[FoldCheck, int] | None = None
+        self._newest: Forecast | None = None
+
+    def seek(self, check: FoldCheck, version: int) -> None:
+        """Ask for the forecast of a check."""
+        self._waiting = (check, version)
+        if not self._under_way:
+            self._start()
+
+    def _start(self) -> None:
+        if self._waiting is None:
+            return
+        check, version = self._waiting
+        self._waiting = None
+        self._under_way = True
+        self._dispatch(lambda: forecast_of(check, version), self._done, self._failed)
+
+    def _done(self, forecast: Forecast) -> None:
+        self._under_way = False
+        if self._waiting is None:
+            self._newest = forecast
+            self._came(forecast)
+        else:
+            self._start()
+
+    def _failed(self, error: Exception) -> None:
+        self._under_way = False
+        self._start()
+        raise error  # to the log of mishaps; the check stands without its forecast
+
+    def funnel(self, points: tuple[FunnelPoint, ...], margin_deg: float, version: int) -> FunnelState:
+        """The funnel with its dotted continuation, where the forecast is about these readings."""
+        newest = self._newest
+        if newest is None or newest.version != version or newest.check.more_readings is None:
+            return FunnelState(points, margin_deg)
+        now = sum(newest.check.readings.of(feature) for feature in Feature)
+        more = newest.check.more_readings
+        settles = (now + more.total, now + more.low, now + more.high)
+        return FunnelState(points, margin_deg, newest.ahead, *settles)

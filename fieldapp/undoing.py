@@ -1,0 +1,58 @@
+"""What can be taken back, newest first. Kept in memory: after a restart, striking out is still there."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from analysis.files.reading import Reading
+    from fieldapp.entry import EntryDraft
+
+DEPTH = 50
+
+
+class StepKind(StrEnum):
+    """What was done."""
+
+    KEPT = "kept"
+    REVISED = "revised"
+    TAKEN_IN = "taken in"
+
+
+@dataclass(frozen=True, slots=True)
+class Step:
+    """One thing done: the reading (or the take-in), how it was before, the draft it came from."""
+
+    kind: StepKind
+    reading_id: str
+    before: Reading | None = None
+    draft: EntryDraft | None = None
+    take_in: int = 0
+
+
+class UndoStack:
+    """The last things done, at most DEPTH."""
+
+    def __init__(self) -> None:
+        self._steps: list[Step] = []
+
+    def __bool__(self) -> bool:
+        return bool(self._steps)
+
+    def push(self, step: Step) -> None:
+        """Note one thing done."""
+        self._steps = [*self._steps[-(DEPTH - 1) :], step]
+
+    def newest(self) -> Step | None:
+        """The thing done last."""
+        return self._steps[-1] if self._steps else None
+
+    def pop(self) -> None:
+        """Forget the thing done last: it was taken back."""
+        self._steps.pop()
+
+    def forget_take_in(self, take_in: int) -> None:
+        """Forget a take-in that was undone from its own leaf."""
+        self._steps = [s for s in self._steps if s.kind is not StepKind.TAKEN_IN or s.take_in != take_in]
