@@ -119,7 +119,9 @@ def to_utm(position: Position, zone: int | None = None) -> UtmPosition:
         )
     from pygeodesy.utm import toUtm8  # noqa: PLC0415 (start time: loaded with the first grid position)
 
-    own = toUtm8(position.latitude_deg, position.longitude_deg)
+    # A hair south of the equator, less than a micrometre, the library's band and half do not agree.
+    latitude = position.latitude_deg if abs(position.latitude_deg) > 1e-11 else 0.0
+    own = toUtm8(latitude, position.longitude_deg)
     found = own
     if zone is not None and zone != own.zone:
         apart = abs(zone - own.zone)
@@ -129,7 +131,7 @@ def to_utm(position: Position, zone: int | None = None) -> UtmPosition:
                 where="zone",
                 expected="the zone of the map in use, at most two from the position's own",
             )
-        found = toUtm8(position.latitude_deg, position.longitude_deg, zone=zone, strict=False)
+        found = toUtm8(latitude, position.longitude_deg, zone=zone, strict=False)
     return UtmPosition(
         zone=int(found.zone),
         band=str(own.band),

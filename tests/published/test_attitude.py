@@ -16,7 +16,7 @@ from analysis.orient.attitude import (
 from analysis.orient.attitudes import Line, Plane
 from analysis.orient.vectors import axis_angle_deg
 
-# ahrs.common.orientation.ecompass(acceleration, field, frame="ENU"): rows east, north, up, in the device frame
+# ahrs.common.orientation.ecompass(acceleration, field, frame="ENU"): rows east, north, up, device frame
 ECOMPASS = [
     (
         (0.3, -0.2, 9.8),
