@@ -1,1 +1,1 @@
-"""The explanations: what rotation in shear and transpression predict beside a fault, and what the folds say."""
+"""The explanations: what shear and transpression predict beside a fault, and what the folds say of it."""

@@ -31,8 +31,10 @@ from analysis.strain.observed import Fault, FoldPair, fold_fault_angle_deg, pair
 from analysis.strain.separation import (
     ReadingsToSeparate,
     Separation,
-    needed_separation,
+    needed_se,
+    odds_needed,
     readings_to_separate,
+    resolved_se,
     separation,
 )
 
@@ -157,15 +159,15 @@ class FaultCheck:
         By how much the two predictions differ here (degrees of transection, or of fold-fault angle where that
         lies beyond rotation's reach).
     separation_se, needed_se
-        That difference in standard errors, and the separation at which the likelihood points the right way in
-        95 of 100 cases: twice the one-sided t.
+        That difference in standard errors, and the separation at which a decisive likelihood ratio for the
+        right explanation can be counted on (see `analysis.strain.separation`).
     readings_to_separate
         Further readings that would bring it there: 0 where they can be told apart already, None where no
-        number within the forecast limit would.
+        number would, or none within the forecast limit.
     more
         The same by stream.
     can_be_told_apart
-        Whether the readings at hand can tell the two apart.
+        Whether the readings at hand tell the two apart, by the three rules of `analysis.strain.separation`.
     strike_in_the_way
         Whether readings would tell them apart if only the fault's strike were known better.
     sense_hint
@@ -247,15 +249,17 @@ def explain(
     told = strike_in_the_way = False
     if metric is not None:
         ratio = _ratio(explanations[0], explanations[1])
-        needed = needed_separation(settings.confidence, pair.df)
-        apart = separation(metric, angle, covariance)
-        told = apart.difference_deg >= settings.floor_deg and apart.standard_errors >= needed
-        more = readings_to_separate(apart, pair, fault, told=told, settings=settings)
+        needed = needed_se(settings.confidence, pair.df)
+        apart = separation(angle, covariance)
+        told = (
+            apart.difference_deg >= settings.floor_deg
+            and apart.standard_errors >= resolved_se(settings.confidence, pair.df)
+            and max(ratio or 1.0, 1.0 / (ratio or 1.0)) >= odds_needed(settings.confidence)
+        )
+        more = ReadingsToSeparate(0, 0, 0) if told else readings_to_separate(angle, pair, fault, settings)
         if more is None and fault.strike_se_deg > 0.0:
             exact = dataclasses.replace(fault, strike_se_deg=0.0)
-            strike_in_the_way = (
-                readings_to_separate(apart, pair, exact, told=False, settings=settings) is not None
-            )
+            strike_in_the_way = readings_to_separate(angle, pair, exact, settings) is not None
     check = FaultCheck(
         fold=fold,
         fault=fault,

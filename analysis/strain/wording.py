@@ -113,41 +113,45 @@ def _rotation(check: FaultCheck) -> Iterator[str]:
 
 def _comparison(check: FaultCheck, settings: ExplainSettings) -> Iterator[str]:
     rotation = check.explanations[0]
-    difference, ratio = check.difference_deg or 0.0, check.likelihood_ratio or 0.0
-    reach = 0.0 <= (check.fold_fault_angle_deg or 0.0) <= shear.START_ANGLE_DEG
-    if reach:
+    ratio, apart, needed = check.likelihood_ratio or 0.0, check.separation_se or 0.0, check.needed_se or 0.0
+    if _within_reach(check):
         yield (
             f"Here rotation predicts a transection of {abs(rotation.predicted_transection_deg):.1f}°"
-            f"{_turn(rotation.predicted_transection_deg)}, partitioned transpression none:"
-            f" {check.separation_se or 0.0:.1f} standard errors apart, {check.needed_se or 0.0:.1f} are"
-            " needed."
+            f"{_turn(rotation.predicted_transection_deg)}, partitioned transpression none: the two are"
+            f" {apart:.1f} standard errors apart, and {needed:.1f} can be counted on to decide."
         )
     else:
         yield (
-            f"The angle lies {difference:.1f}° outside what rotation reaches, 0 to 45°:"
-            f" {check.separation_se or 0.0:.1f} standard errors, {check.needed_se or 0.0:.1f} are needed."
+            f"The angle lies {check.difference_deg or 0.0:.1f}° outside what rotation reaches, 0 to 45°:"
+            f" {apart:.1f} standard errors, and {needed:.1f} can be counted on to decide."
         )
     favoured = "rotation" if ratio > 1.0 else "partitioned transpression"
     if _neither_fits(check):
         yield "Neither of the two fits the readings."
-        return
-    if check.can_be_told_apart:
+    elif check.can_be_told_apart:
         yield f"Of the two the readings favour {favoured}, {_odds(ratio)}."
-        return
-    yield f"The likelihood ratio, {_odds(ratio)} for {favoured}, is not to be relied on at this separation."
-    if check.more is not None:
+    else:
+        yield from _undecided(check, settings, f"{_odds(ratio)} for {favoured}")
+
+
+def _undecided(check: FaultCheck, settings: ExplainSettings, odds: str) -> Iterator[str]:
+    if (check.difference_deg or 0.0) < settings.floor_deg:
         yield (
-            f"About {check.more.total} more readings should separate the two: {check.more.hinge} on"
-            f" the hinge (bedding or hinge lines), {check.more.cleavage} on the cleavage."
-        )
-    elif difference < settings.floor_deg:
-        yield (
-            f"The two differ by {difference:.1f}°, less than the {settings.floor_deg:g}° to which a"
-            " compass can be trusted: no number of readings tells them apart."
+            f"They differ by less than the {settings.floor_deg:g}° to which a compass can be trusted: no"
+            " number of readings tells them apart."
         )
         yield _displacement(check)
+        return
+    yield f"The likelihood ratio, {odds}, does not decide between them."
+    if check.more is not None:
+        yield (
+            f"About {check.more.total} more readings should: {check.more.hinge} on the hinge (bedding or"
+            f" hinge lines) and {check.more.cleavage} on the cleavage."
+        )
     elif check.pair.hinge_readings < 1 or check.pair.cleavage_readings < 1:
-        yield "How many readings would separate them cannot be said without the numbers of readings."
+        yield "How many readings would cannot be said without the numbers of readings."
+    elif (check.separation_se or 0.0) >= (check.needed_se or 0.0):
+        yield "The pair lies between the two: more readings need not settle it, another explanation may."
     else:
         yield (
             f"Not even {settings.forecast_limit} readings of hinge and of cleavage would tell them apart"
@@ -210,6 +214,10 @@ def _turn(transection_deg: float) -> str:
 def _odds(ratio: float) -> str:
     odds = max(ratio, 1.0 / max(ratio, 1e-300))
     return "more than 1000 to 1" if odds > 1000.0 else f"{_two(odds)} to 1"
+
+
+def _within_reach(check: FaultCheck) -> bool:
+    return 0.0 <= (check.fold_fault_angle_deg or 0.0) <= shear.START_ANGLE_DEG
 
 
 def _neither_fits(check: FaultCheck) -> bool:
