@@ -78,5 +78,9 @@ def next_reading(
     else:
         where, feature = cleavage_where(sums, other), other
     if new_outcrop:
-        where = f"at a new outcrop, {where.removeprefix('at outcrop ')}" if feature is Feature.BEDDING else "at a new outcrop"
+        where = (
+            f"at a new outcrop, {where.removeprefix('at outcrop ')}"
+            if feature is Feature.BEDDING
+            else "at a new outcrop"
+        )
     return NextReading(feature, where)

@@ -62,7 +62,9 @@ def hinge_unclear(hinge: AxisFit, counts: Counts, limbs: Limbs | None) -> tuple[
     se = float(np.degrees(hinge.less_certain_se_rad))
     if se <= HINGE_SE_AT_MOST_DEG:
         return "", False
-    known = f"The hinge is known to ±{degrees(2 * se)} only" if se < 45.0 else "The hinge is not determined yet"
+    known = (
+        f"The hinge is known to ±{degrees(2 * se)} only" if se < 45.0 else "The hinge is not determined yet"
+    )
     why = (
         "bedding so far lies on one side of the fold. Read the other limb, or hinge lines."
         if limbs is None
@@ -96,7 +98,7 @@ def outcrops_differ(transection: Transection) -> bool:
     k, m = outcrops - 1.0, float(transection.steady_freedom)
     ninth = 2.0 / (9.0 * k)
     limit = (1.0 - ninth + _OUTCROPS_DIFFER_Z * ninth**0.5) ** 3 * max(m, 3.0) / (max(m, 3.0) - 2.0)
-    return between / within > limit
+    return bool(between / within > limit)
 
 
 def outcrops_disagree(transection: Transection) -> str:
@@ -110,12 +112,12 @@ def outcrops_disagree(transection: Transection) -> str:
 
 
 def planes_against_lines(planes: AxisFit, lines: AxisFit) -> tuple[float, bool]:
-    """Give the angle, degrees, at which the mean intersection line leaves the mean cleavage plane, and whether
-    that is more than their errors allow.
+    """Give the angle, degrees, between mean intersection line and mean cleavage plane, and whether it is too much.
 
+    It is too much where it passes what the errors of both allow, at all looks together.
     An intersection line lies in the cleavage on either limb, so the limbs do not matter here.
     """
-    if planes.count < _FEWEST_TO_COMPARE or lines.count < _FEWEST_TO_COMPARE:
+    if planes.readings < _FEWEST_TO_COMPARE or lines.readings < _FEWEST_TO_COMPARE:
         return 0.0, False
     sine = float(planes.vector @ lines.vector)
     pulls = (planes.across.T @ lines.vector, lines.across.T @ planes.vector)
@@ -123,7 +125,7 @@ def planes_against_lines(planes: AxisFit, lines: AxisFit) -> tuple[float, bool]:
         max(float(pull @ fit.covariance @ pull), float(pull @ fit.even_covariance @ pull))
         for pull, fit in zip(pulls, (planes, lines), strict=True)
     )
-    looks = float(stream_progress(planes.count, lines.count))
+    looks = float(stream_progress(planes.readings, lines.readings))
     limit = watched_multiplier(looks, planes.freedom + lines.freedom, _STREAMS_DIFFER_CONFIDENCE)
     return float(np.degrees(np.arcsin(abs(sine)))), bool(abs(sine) > limit * variance**0.5)
 

@@ -6,7 +6,6 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
-from analysis.fold import blocks
 from analysis.fold.decision import decide
 from analysis.fold.intersection import computed_lines, limb_lines, side_of_outcrops
 from analysis.fold.limbs import Limbs, find_limbs, sides
@@ -23,10 +22,10 @@ from analysis.fold.settings import CheckSettings
 from analysis.fold.transection import (
     Transection,
     fit_cleavage,
+    fit_cleavage_to_lines,
     fit_hinge,
     fit_lines,
-    transection_of_lines,
-    transection_of_planes,
+    transection,
 )
 from analysis.orient.features import Feature
 from analysis.orient.vectors import lower_hemisphere
@@ -73,7 +72,13 @@ def check_fold(
     that passes the limit. Without, it takes about a millisecond; `analysis.fold.decision.add_forecast` adds
     the rest later.
     """
-    counts = Counts(*(sums.count(feature) for feature in Feature), sums.outcrops_read)
+    counts = Counts(
+        bedding=sums.count(Feature.BEDDING),
+        cleavage=sums.count(Feature.CLEAVAGE),
+        intersection=sums.count(Feature.INTERSECTION),
+        hinge=sums.count(Feature.HINGE),
+        outcrops=sums.outcrops_read,
+    )
     rows = _Rows(*(sums.by_outcrop(feature) for feature in Feature))
     hinge = _hinge(rows, counts, settings)
     pole = None
@@ -91,7 +96,7 @@ def check_fold(
         limbs=None if beds is None else beds.limbs,
         limb_lines=_limb_lines(rows, beds, pole),
     )
-    by_planes, by_lines = _transections(rows, hinge, pole, lines)
+    by_planes, by_lines = _transections(rows, hinge, pole)
     check = check.changed(
         estimates=tuple(
             SideEstimate(source, float(t.delta_deg), float(t.fixed_variance) ** 0.5)
@@ -99,12 +104,14 @@ def check_fold(
             if t is not None and np.isfinite(t.fixed_variance)
         )
     )
-    return decide(check, sums, by_planes or by_lines, _warnings(rows, check, beds, lines), lines, forecast=forecast)
+    return decide(
+        check, sums, by_planes or by_lines, _warnings(rows, check, beds, lines), lines, forecast=forecast
+    )
 
 
 def _estimate(fit: AxisFit, source: str, settings: CheckSettings) -> AxisEstimate:
     ellipse = None
-    if fit.count > 2.0 and np.isfinite(fit.covariance).all():
+    if fit.readings > 2.0 and np.isfinite(fit.covariance).all():
         e = confidence_ellipse(fit, settings.confidence)
         ellipse = EllipseDeg(float(e.major_deg), float(e.minor_deg), e.major_axis, e.minor_axis)
     return AxisEstimate(lower_hemisphere(fit.vector), source, ellipse, fit)
@@ -163,16 +170,17 @@ def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> t
 
 
 def _transections(
-    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None, lines: AxisFit | None
+    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None
 ) -> tuple[Transection | None, Transection | None]:
-    """Transection from cleavage planes (with the lines in them), and from the mean measured line alone."""
+    """Transection from cleavage planes with the lines in them, and from measured lines alone."""
     if hinge is None:
         return None, None
     by_planes = by_lines = None
     if pole is not None:
-        by_planes = transection_of_planes(hinge.fit, pole.fit, rows)
-    if lines is not None:
-        by_lines = transection_of_lines(hinge.fit, lines, (rows.bedding, rows.hinge, rows.intersection))
+        by_planes = transection(hinge.fit, pole.fit, rows)
+    if rows.intersection[:, COUNT].any():
+        alone = fit_cleavage_to_lines(rows.intersection)
+        by_lines = transection(hinge.fit, alone, (rows.bedding, rows.hinge, rows.intersection))
     return by_planes, by_lines
 
 
@@ -187,12 +195,13 @@ def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit 
                 "Read some on the other limb."
             )
     if check.cleavage is None and check.readings.intersection:
-        warnings.append("From intersection lines alone: this takes the cleavage to be steep. Read cleavage planes.")
+        warnings.append(
+            "From intersection lines alone: this takes the cleavage to be steep. Read cleavage planes."
+        )
     if check.hinge is not None and check.readings.bedding >= 6:
         flat = sum(1 for limb in (check.limbs.both if check.limbs else ()) if limb.plane.dip_deg < 10.0)
         if flat:
-            warnings.append("A limb dips less than 10°: the strikes of such beds say little, their poles all the same.")
+            warnings.append(
+                "A limb dips less than 10°: the strikes of such beds say little, their poles all the same."
+            )
     return warnings
-
-
-__all__ = ["DEFAULT", "blocks", "check_fold"]

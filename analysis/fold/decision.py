@@ -99,20 +99,20 @@ def add_forecast(check: FoldCheck) -> FoldCheck:
     held = (float(counts.bedding + counts.hinge), float(counts.cleavage + counts.intersection))
     missing = (
         _missing(counts.bedding, counts.hinge, PLANES_AT_FIRST_LOOK),
-        _missing(counts.cleavage, counts.intersection, LINES_AT_FIRST_LOOK if by_lines else PLANES_AT_FIRST_LOOK),
+        _missing(
+            counts.cleavage, counts.intersection, LINES_AT_FIRST_LOOK if by_lines else PLANES_AT_FIRST_LOOK
+        ),
     )
     settling = settle(numbers, held, missing, check.settings)
     limit = check.settings.forecast_limit
     if not settling.median <= limit:
         if any(missing):
             return check  # too early to despair: the scatter itself is hardly known
-        return check.changed(
-            verdict=Verdict.CANNOT_BE_SETTLED,
-            because=(
-                f"More than {limit} further readings would be needed at the present scatter "
-                f"(the estimate is {degrees(numbers.delta_deg)}, its standard error {degrees(numbers.variance**0.5)}).",
-            ),
+        why = (
+            f"More than {limit} further readings would be needed at the present scatter "
+            f"(the estimate is {degrees(numbers.delta_deg)}, its standard error {degrees(numbers.variance**0.5)})."
         )
+        return check.changed(verdict=Verdict.CANNOT_BE_SETTLED, because=(why,))
     total = round(settling.median)
     first = round(float(split(total, held, (numbers.hinge_variance, numbers.cleavage_variance))[0]))
     first = max(min(first, total - round(missing[1])), round(missing[0]))
@@ -137,7 +137,15 @@ def _missing(planes: int, lines: int, wanted: float) -> float:
 
 def _with_angle(check: FoldCheck, transection: Transection) -> FoldCheck:
     delta = float(transection.delta_deg)
-    sense = "unsigned" if not transection.has_sense else "clockwise" if delta > 0.0 else "anticlockwise" if delta < 0.0 else "none"
+    sense = (
+        "unsigned"
+        if not transection.has_sense
+        else "clockwise"
+        if delta > 0.0
+        else "anticlockwise"
+        if delta < 0.0
+        else "none"
+    )
     return check.changed(transection_deg=delta, sense=sense)
 
 
@@ -156,7 +164,9 @@ def _kept_back(
     """Sentences on what to wait for, what blocks, and what else to mind."""
     assert check.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
     counts = check.readings
-    waits, blocked, notes = [], [], []
+    waits: list[str] = []
+    blocked: list[str] = []
+    notes: list[str] = []
     if not blocks.missing_for_hinge(counts):
         unclear, for_good = blocks.hinge_unclear(check.hinge.fit, counts, check.limbs)
         if unclear:
@@ -174,7 +184,9 @@ def _kept_back(
                 f"{degrees(angle)}, more than their errors allow. Read both again at one outcrop."
             )
     if not transection.has_sense:
-        notes.append("The hinge is too steep, or the cleavage too flat, for a sense on the map: the angle has no sign.")
+        notes.append(
+            "The hinge is too steep, or the cleavage too flat, for a sense on the map: the angle has no sign."
+        )
     if transection.outcrops >= FEWEST_CLUSTERS and blocks.outcrops_differ(transection):
         notes.append(
             "Outcrops differ by more than their readings scatter: the verdict is for the fold as a whole, and single "
@@ -201,11 +213,11 @@ def _why_transected(check: FoldCheck, transection: Transection) -> tuple[str, ..
 
 
 def _why_axial_planar(check: FoldCheck, transection: Transection) -> tuple[str, ...]:
-    return (
+    why = (
         f"Two one-sided tests at {100.0 * (1.0 - check.settings.confidence):g}%, valid at all looks together, put the "
-        f"transection within ±{degrees(check.settings.margin_deg)}.",
-        _scale(transection),
+        f"transection within ±{degrees(check.settings.margin_deg)}."
     )
+    return why, _scale(transection)
 
 
 def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
@@ -213,7 +225,11 @@ def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
     counts, numbers = check.readings, check.numbers
     other = Feature.INTERSECTION if check.cleavage is None and counts.intersection else Feature.CLEAVAGE
     gains = (1.0, 0.0)
-    if numbers is not None and not blocks.missing_for_hinge(counts) and not blocks.missing_for_cleavage(counts):
+    if (
+        numbers is not None
+        and not blocks.missing_for_hinge(counts)
+        and not blocks.missing_for_cleavage(counts)
+    ):
         gains = (
             numbers.hinge_variance / max(counts.bedding + counts.hinge, 1),
             numbers.cleavage_variance / max(counts.cleavage + counts.intersection, 1),

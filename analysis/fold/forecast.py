@@ -48,7 +48,9 @@ def _steps(limit: int) -> npt.NDArray[np.float64]:
     return np.unique(np.round(np.geomspace(1.0, _HORIZON * limit, _STEPS)))
 
 
-def split(readings: npt.ArrayLike, counts: tuple[float, float], variances: tuple[float, float]) -> tuple[Floats, Floats]:
+def split(
+    readings: npt.ArrayLike, counts: tuple[float, float], variances: tuple[float, float]
+) -> tuple[Floats, Floats]:
     """Split so many further readings (...) over two streams so that the sum of variances falls fastest.
 
     `counts` are the streams' readings now and `variances` their parts of the variance now.

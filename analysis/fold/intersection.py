@@ -24,7 +24,11 @@ _SINE_AT_LEAST: Final = 0.1
 
 
 def computed_lines(
-    cells: Floats, owner: npt.NDArray[np.int64], side: npt.NDArray[np.int64], cleavage: Floats, scatter_rad: Floats
+    cells: Floats,
+    owner: npt.NDArray[np.int64],
+    side: npt.NDArray[np.int64],
+    cleavage: Floats,
+    scatter_rad: Floats,
 ) -> tuple[Floats, npt.NDArray[np.int64]]:
     """Moments of the lines in which bedding and cleavage meet, outcrop by outcrop and limb by limb.
 

@@ -70,7 +70,9 @@ def sides(cells: Floats, across: Floats) -> npt.NDArray[np.int64]:
     return np.asarray(away @ vectors[:, 1] > 0.0, dtype=np.int64)
 
 
-def find_limbs(cells: Floats, side: npt.NDArray[np.int64], across: Floats, cleavage: Floats | None) -> Limbs | None:
+def find_limbs(
+    cells: Floats, side: npt.NDArray[np.int64], across: Floats, cleavage: Floats | None
+) -> Limbs | None:
     """Find both limbs, or None where only one side of the fold has been read.
 
     Parameters

@@ -76,7 +76,11 @@ class AxisEstimate:
     @property
     def ellipse_json(self) -> list[float] | None:
         """[major, minor] half-angles, degrees."""
-        return None if self.ellipse is None else [_rounded(self.ellipse.major_deg), _rounded(self.ellipse.minor_deg)]
+        return (
+            None
+            if self.ellipse is None
+            else [round(half, 6) for half in (self.ellipse.major_deg, self.ellipse.minor_deg)]
+        )
 
 
 @dataclass(frozen=True, slots=True)

@@ -11,18 +11,22 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
-from analysis.orient.vectors import cross
+from analysis.orient.vectors import DOWN, cross
 from analysis.stats.axes import AxisFit, Stream, fit_axis
-from analysis.stats.moments import COUNT
+from analysis.stats.moments import COUNT, WIDTH, moments
 
 if TYPE_CHECKING:
+    import numpy.typing as npt
+
     from analysis.orient.vectors import Floats
 
-_UP: Final = np.array([0.0, 0.0, -1.0])
 _DEGREES_SQUARED: Final = float(np.degrees(1.0)) ** 2
 # No sense on the map where the direction about which hinge turns into cleavage lies within about 12 degrees
 # of horizontal: a steep hinge, or cleavage that dips gently.
 _NO_SENSE_BELOW: Final = 0.2
+# Cleavage read by lines alone is taken to dip 90 degrees within this, one standard deviation. Common practice,
+# no source: cleavage beside strike-slip faults is steep.
+STEEP_WITHIN_DEG: Final = 15.0
 # Outcrops needed before the scatter between them is taken as an estimate (METHOD: four or more).
 FEWEST_CLUSTERS: Final = 4
 
@@ -66,7 +70,7 @@ class Transection(NamedTuple):
         return self.hinge_variance + self.cleavage_variance
 
     @property
-    def by_outcrop(self) -> Floats:
+    def by_outcrop(self) -> npt.NDArray[np.bool_]:
         """Whether, (...), outcrops scatter more than their readings: they then give the variance."""
         with np.errstate(invalid="ignore"):
             return (self.outcrops >= FEWEST_CLUSTERS) & (
@@ -107,68 +111,71 @@ def fit_lines(lines: Floats) -> AxisFit:
     return fit_axis([Stream(lines, along=True)])
 
 
-def transection_of_planes(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> Transection:
-    """Transection from hinge and cleavage pole; `rows` are all moments (..., outcrops, 24) that went in."""
-    gradient = np.einsum("...ij,...i->...j", cleavage.across, hinge.vector)
-    return _transection(hinge, cleavage, cleavage.vector, gradient, rows)
+def fit_cleavage_to_lines(intersections: Floats) -> AxisFit:
+    """Fit the cleavage pole to moments (..., outcrops, 24) of intersection lines alone, taking cleavage to be steep.
 
-
-def transection_of_lines(hinge: AxisFit, line: AxisFit, rows: tuple[Floats, ...]) -> Transection:
-    """Transection from hinge and mean intersection line alone, taking the cleavage to be vertical.
-
-    The cleavage plane is the vertical one through the mean line L, s = L x up / |L x up|, so that planes and
-    lines estimate one quantity; for a horizontal hinge it is the angle between L and h in plan.
+    The lines lie in the cleavage; that it is steep goes in as one line known beforehand, the vertical, which
+    lies in it within STEEP_WITHIN_DEG. Lines from both limbs of a transected fold spread along the cleavage and
+    outweigh that; where they do not spread, the result is the vertical plane through their mean, and for a
+    horizontal hinge the transection is the angle between mean line and hinge in plan.
     """
-    crossed = cross(line.vector, _UP)
-    length = np.maximum(np.linalg.norm(crossed, axis=-1), 1e-9)
-    pole = crossed / length[..., np.newaxis]
-    # d(h.s) for L turning along a direction u: (h.(u x up) - (h.s) s.(u x up)) / |L x up|.
-    moved = cross(line.across.swapaxes(-1, -2), _UP)
-    seen = hinge.vector - np.sum(hinge.vector * pole, axis=-1, keepdims=True) * pole
-    gradient = np.einsum("...ji,...i->...j", moved, seen) / length[..., np.newaxis]
-    return _transection(hinge, line, pole, gradient, rows)
+    vertical = np.broadcast_to(moments(DOWN), (*intersections.shape[:-2], 1, WIDTH))
+    return fit_axis(
+        [
+            Stream(intersections, along=False),
+            Stream(vertical, along=False, scatter_rad=float(np.radians(STEEP_WITHIN_DEG))),
+        ]
+    )
 
 
-def _transection(
-    hinge: AxisFit, other: AxisFit, pole: Floats, gradient: Floats, rows: tuple[Floats, ...]
-) -> Transection:
+def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> Transection:
+    """Transection from the fits of hinge and cleavage pole.
+
+    `rows` are the moments (..., outcrops, 24) of all readings that went in, bedding first.
+    """
+    pole = cleavage.vector
     sine = np.sum(hinge.vector * pole, axis=-1)
-    turning = np.sum(cross(hinge.vector, pole) * _UP, axis=-1)
+    turning = np.sum(cross(hinge.vector, pole) * -DOWN, axis=-1)
     has_sense = np.abs(turning) >= _NO_SENSE_BELOW
     clockwise = np.where(sine * turning >= 0.0, 1.0, -1.0)
     size = np.degrees(np.arcsin(np.minimum(np.abs(sine), 1.0)))
     scale = _DEGREES_SQUARED / np.maximum(1.0 - sine * sine, 1e-12)
-    along_hinge = np.einsum("...ij,...i->...j", hinge.across, pole)
+    hinge_pull = np.einsum("...ij,...i->...j", hinge.across, pole)
+    cleavage_pull = np.einsum("...ij,...i->...j", cleavage.across, hinge.vector)
 
     with np.errstate(invalid="ignore"):
         parts = [
-            _quadratic(along_hinge, hinge.covariance) * scale,
-            _quadratic(gradient, other.covariance) * scale,
-            _quadratic(along_hinge, hinge.even_covariance) * scale,
-            _quadratic(gradient, other.even_covariance) * scale,
+            _quadratic(hinge_pull, hinge.covariance) * scale,
+            _quadratic(cleavage_pull, cleavage.covariance) * scale,
+            _quadratic(hinge_pull, hinge.even_covariance) * scale,
+            _quadratic(cleavage_pull, cleavage.even_covariance) * scale,
         ]
-    of_hinge, of_other, even_hinge, even_other = (np.where(np.isnan(part), np.inf, part) for part in parts)
-    steady_hinge, steady_other = np.maximum(of_hinge, even_hinge), np.maximum(of_other, even_other)
+    of_hinge, of_cleavage, even_hinge, even_cleavage = (
+        np.where(np.isnan(part), np.inf, part) for part in parts
+    )
+    steady_hinge, steady_cleavage = np.maximum(of_hinge, even_hinge), np.maximum(of_cleavage, even_cleavage)
 
     held = sum(row[..., COUNT] for row in rows)
     outcrops = np.count_nonzero(np.asarray(held) > 0.5, axis=-1).astype(float)
-    pull = np.einsum("...oj,...j->...o", hinge.influence, along_hinge)
-    pull = pull + np.einsum("...oj,...j->...o", other.influence, gradient)
+    pull = np.einsum("...oj,...j->...o", hinge.influence, hinge_pull)
+    pull = pull + np.einsum("...oj,...j->...o", cleavage.influence, cleavage_pull)
     with np.errstate(invalid="ignore", divide="ignore"):
         between = np.sum(pull * pull, axis=-1) * scale * outcrops / (outcrops - 1.0)
     girdle = np.any(rows[0][..., COUNT] > 0.5, axis=-1)
-    fixed = _satterthwaite(of_hinge, hinge.count - np.where(girdle, 2.0, 1.0), of_other, other.count - 1.0)
+    fixed = _satterthwaite(
+        of_hinge, hinge.readings - np.where(girdle, 2.0, 1.0), of_cleavage, cleavage.readings - 1.0
+    )
     return Transection(
         delta_deg=np.where(has_sense, clockwise, 1.0) * size,
         has_sense=has_sense,
         hinge_variance=of_hinge,
-        cleavage_variance=of_other,
+        cleavage_variance=of_cleavage,
         steady_hinge_variance=steady_hinge,
-        steady_cleavage_variance=steady_other,
+        steady_cleavage_variance=steady_cleavage,
         outcrop_variance=np.where(outcrops > 1.0, between, np.nan),
         outcrops=outcrops,
         fixed_freedom=fixed,
-        steady_freedom=_satterthwaite(steady_hinge, hinge.freedom, steady_other, other.freedom),
+        steady_freedom=_satterthwaite(steady_hinge, hinge.freedom, steady_cleavage, cleavage.freedom),
     )
 
 

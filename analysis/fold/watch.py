@@ -42,9 +42,8 @@ class Watched(NamedTuple):
 
 def stream_progress(planes: npt.ArrayLike, lines: npt.ArrayLike) -> Floats:
     """Readings of a stream, (...), in units of those needed for the first look."""
-    return np.asarray(
-        np.asarray(planes, dtype=float) / PLANES_AT_FIRST_LOOK + np.asarray(lines, dtype=float) / LINES_AT_FIRST_LOOK
-    )
+    of_planes = np.asarray(planes, dtype=float) / PLANES_AT_FIRST_LOOK
+    return np.asarray(of_planes + np.asarray(lines, dtype=float) / LINES_AT_FIRST_LOOK)
 
 
 def hinge_is_clear(hinge: AxisFit) -> npt.NDArray[np.bool_]:
@@ -53,7 +52,7 @@ def hinge_is_clear(hinge: AxisFit) -> npt.NDArray[np.bool_]:
 
 
 def information_since_first_look(
-    transection: Transection, hinge_progress: npt.ArrayLike, cleavage_progress: npt.ArrayLike
+    transection: Transection, hinge_progress: Floats, cleavage_progress: Floats
 ) -> Floats:
     """Information, (...), held now over that at the first look, from the counts and the variance now."""
     of_hinge, of_cleavage = transection.steady_hinge_variance, transection.steady_cleavage_variance

@@ -42,11 +42,15 @@ class Stream(NamedTuple):
         Moments, (..., outcrops, 24).
     along
         Whether its axes lie along the axis sought; else they lie at right angles to it.
+    scatter_rad
+        Standard deviation of one axis in one direction, radians, where it is known beforehand; None where the
+        readings tell it.
 
     """
 
     rows: Floats
     along: bool
+    scatter_rad: float | None = None
 
 
 class AxisFit(NamedTuple):
@@ -71,7 +75,7 @@ class AxisFit(NamedTuple):
     scatter_rad
         (..., streams), standard deviation of one reading about the fit, in one direction; streams as given,
         without those that hold no reading.
-    count
+    readings
         (...), number of readings.
     freedom
         (...), degrees of freedom of the scatter: one residual for a reading at right angles to the axis, two
@@ -86,7 +90,7 @@ class AxisFit(NamedTuple):
     influence: Floats
     eigenvalues: Floats
     scatter_rad: Floats
-    count: Floats
+    readings: Floats
     freedom: Floats
 
     @property
@@ -110,9 +114,12 @@ def _variance(squares: Floats, freedom: Floats) -> Floats:
     )
 
 
-def _weight(moment: Floats, count: Floats, *, along: bool) -> Floats:
+def _weight(stream: Stream, moment: Floats, count: Floats) -> Floats:
     """Weight in M of a stream that is fitted with others: +-1/variance about its own axis."""
-    values = np.linalg.eigvalsh(moment)
+    along = stream.along
+    if stream.scatter_rad is not None:
+        return np.full(count.shape, (1.0 if along else -1.0) / stream.scatter_rad**2)
+    values: Floats = np.asarray(np.linalg.eigvalsh(moment), dtype=float)
     squares = values[..., 0] + values[..., 1] if along else values[..., 0]
     freedom = 2.0 * count - 2.0 if along else count - 2.0
     return (1.0 if along else -1.0) / _variance(squares, freedom)
@@ -131,16 +138,15 @@ def fit_axis(streams: Sequence[Stream]) -> AxisFit:
     tensors = [tensor(total) for total in totals]
     counts = [total[..., COUNT] for total in totals]
     if len(streams) > 1:
-        weights = [
-            _weight(t, n, along=stream.along) for t, n, stream in zip(tensors, counts, streams, strict=True)
-        ]
+        weights = [_weight(stream, t, n) for stream, t, n in zip(streams, tensors, counts, strict=True)]
     else:
-        weights = [np.full(n.shape, 1.0 if stream.along else -1.0) for n, stream in zip(counts, streams, strict=True)]
+        weights = [
+            np.full(n.shape, 1.0 if stream.along else -1.0) for n, stream in zip(counts, streams, strict=True)
+        ]
 
     pulled = sum(w[..., np.newaxis, np.newaxis] * t for w, t in zip(weights, tensors, strict=True))
     values, vectors = eigen(np.asarray(pulled))
     axis, across = vectors[..., 0], vectors[..., 1:]
-    turned = across.swapaxes(-1, -2)
     gaps = values[..., :1] - values[..., 1:]
     apart = gaps > _SAME_EIGENVALUE * np.abs(values).max(axis=-1, keepdims=True)
     reach = np.where(apart, 1.0 / np.where(apart, gaps, 1.0), np.inf)
@@ -150,42 +156,74 @@ def fit_axis(streams: Sequence[Stream]) -> AxisFit:
     all_residuals = np.asarray(sum(residuals))
     freedom = all_residuals - 2.0
     share = np.maximum(freedom, 0.0) / np.maximum(all_residuals, 1.0)
-    pairs = product_pairs(turned, axis[..., np.newaxis, :])
-    meat, even_meat = np.zeros(()), np.zeros(())
-    scatter, pull = [], np.zeros(())
-    for stream, total, moment, weight, residual in zip(streams, totals, tensors, weights, residuals, strict=True):
-        along_axis = np.einsum("...i,...ij,...j->...", axis, moment, axis)
-        if stream.along:
-            squares = np.trace(moment, axis1=-2, axis2=-1) - along_axis
-            spread = along_axis[..., np.newaxis, np.newaxis] * np.eye(2)
-        else:
-            squares = along_axis
-            spread = turned @ moment @ across
-        variance = _variance(squares, residual * share)
-        scatter.append(np.sqrt(variance))
-        squared = (weight * weight)[..., np.newaxis, np.newaxis]
-        meat = meat + squared * (pairs @ fourth(total) @ pairs.swapaxes(-1, -2))
-        even_meat = even_meat + squared * variance[..., np.newaxis, np.newaxis] * spread
-        by_outcrop = tensor(stream.rows) @ axis[..., np.newaxis, :, np.newaxis]
-        pull = pull + weight[..., np.newaxis, np.newaxis] * (turned[..., np.newaxis, :, :] @ by_outcrop)[..., 0]
+    parts = [
+        _stream_part(stream, total, moment, weight, residual * share, axis, across)
+        for stream, total, moment, weight, residual in zip(
+            streams, totals, tensors, weights, residuals, strict=True
+        )
+    ]
 
     count = np.asarray(sum(counts))
-    known = (count > 1.0)[..., np.newaxis, np.newaxis] & np.isfinite(reach_squared)
+    determined = (count > 1.0)[..., np.newaxis, np.newaxis] & np.isfinite(reach_squared)
     with np.errstate(invalid="ignore", divide="ignore"):
         unbiased = (count / (count - 1.0))[..., np.newaxis, np.newaxis]
-        covariance = np.where(known, unbiased * meat * reach_squared, np.inf)
-        even_covariance = np.where(known, even_meat * reach_squared, np.inf)
+        covariance = np.where(determined, unbiased * sum(part.meat for part in parts) * reach_squared, np.inf)
+        even_covariance = np.where(determined, sum(part.even_meat for part in parts) * reach_squared, np.inf)
         finite_reach = np.where(np.isfinite(reach), reach, 0.0)
     return AxisFit(
         vector=axis,
         across=across,
         covariance=covariance,
         even_covariance=even_covariance,
-        influence=pull * finite_reach[..., np.newaxis, :],
+        influence=np.asarray(sum(part.pull for part in parts)) * finite_reach[..., np.newaxis, :],
         eigenvalues=values,
-        scatter_rad=np.stack(scatter, axis=-1),
-        count=count,
+        scatter_rad=np.stack([part.scatter_rad for part in parts], axis=-1),
+        readings=count,
         freedom=freedom,
+    )
+
+
+class _Part(NamedTuple):
+    """What one stream adds to the errors of a fit; `meat` is the middle of the sandwich."""
+
+    scatter_rad: Floats
+    meat: Floats
+    even_meat: Floats
+    pull: Floats
+
+
+def _stream_part(
+    stream: Stream,
+    total: Floats,
+    moment: Floats,
+    weight: Floats,
+    freedom: Floats,
+    axis: Floats,
+    across: Floats,
+) -> _Part:
+    turned = across.swapaxes(-1, -2)
+    along_axis = np.einsum("...i,...ij,...j->...", axis, moment, axis)
+    if stream.along:
+        squares = np.trace(moment, axis1=-2, axis2=-1) - along_axis
+        spread = along_axis[..., np.newaxis, np.newaxis] * np.eye(2)
+    else:
+        squares = along_axis
+        spread = turned @ moment @ across
+    squared = (weight * weight)[..., np.newaxis, np.newaxis]
+    if stream.scatter_rad is not None:
+        # What is known beforehand has shown no residual; its error is what it was said to be. It belongs to
+        # no outcrop, so it pulls for none.
+        scatter = np.full(squares.shape, stream.scatter_rad)
+        even = squared * stream.scatter_rad**2 * spread
+        return _Part(scatter, even, even, np.zeros((1, 2)))
+    variance = _variance(squares, freedom)
+    pairs = product_pairs(turned, axis[..., np.newaxis, :])
+    by_outcrop = tensor(stream.rows) @ axis[..., np.newaxis, :, np.newaxis]
+    return _Part(
+        scatter_rad=np.sqrt(variance),
+        meat=squared * (pairs @ fourth(total) @ pairs.swapaxes(-1, -2)),
+        even_meat=squared * variance[..., np.newaxis, np.newaxis] * spread,
+        pull=weight[..., np.newaxis, np.newaxis] * (turned[..., np.newaxis, :, :] @ by_outcrop)[..., 0],
     )
 
 
@@ -204,7 +242,7 @@ def confidence_ellipse(fit: AxisFit, confidence: float = 0.95) -> Ellipse:
     Half-angles are 90 degrees where the axis is undetermined or fewer than three readings bear on it.
     Fisher, Lewis & Embleton (1987) ch. 6, from memory; the F in place of chi-square holds small samples.
     """
-    freedom = fit.count - 2.0
+    freedom = fit.readings - 2.0
     finite = np.isfinite(fit.covariance).all(axis=(-1, -2)) & (freedom > 0.0)
     covariance = np.where(finite[..., np.newaxis, np.newaxis], fit.covariance, np.eye(2))
     values, turns = np.linalg.eigh(covariance)

@@ -35,7 +35,7 @@ _PAIR_AT: Final = np.array([[_PAIRS.index((min(i, j), max(i, j))) for j in range
 _QUAD_AT: Final = np.array([[_QUADS.index(tuple(sorted(p + q))) for q in _PAIRS] for p in _PAIRS])
 _PAIR_I, _PAIR_J = (np.array([pair[k] for pair in _PAIRS]) for k in (0, 1))
 # For each quadruple one pair of pairs that makes it.
-_QUAD_FROM: Final = np.array([np.argwhere(_QUAD_AT == k)[0] for k in range(15)])
+_QUAD_FROM: Final = np.array([np.argwhere(k == _QUAD_AT)[0] for k in range(15)])
 # A symmetric product u v, written in the order of _PAIRS, counts its off-diagonal terms twice.
 _TWICE: Final = np.array([1.0, 1.0, 1.0, 2.0, 2.0, 2.0])
 
@@ -68,7 +68,7 @@ def fourth(rows: Floats) -> Floats:
 def product_pairs(u: Floats, v: Floats) -> Floats:
     """Coefficients, shape (..., 6), that read sum w (u.x)(v.x) ... out of `fourth` and `tensor` rows."""
     mixed = 0.5 * (u[..., _PAIR_I] * v[..., _PAIR_J] + u[..., _PAIR_J] * v[..., _PAIR_I])
-    return mixed * _TWICE
+    return np.asarray(mixed * _TWICE)
 
 
 def scaled(rows: Floats, weight: npt.ArrayLike) -> Floats:

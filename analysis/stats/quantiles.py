@@ -47,7 +47,9 @@ def t_quantile(probability: float, freedom: float) -> float:
     if tail == 0.5:
         return 0.0
     t = float(student_multiplier(-_NORMAL.inv_cdf(tail), freedom))
-    density = math.lgamma(0.5 * (freedom + 1.0)) - math.lgamma(0.5 * freedom) - 0.5 * math.log(freedom * math.pi)
+    density = (
+        math.lgamma(0.5 * (freedom + 1.0)) - math.lgamma(0.5 * freedom) - 0.5 * math.log(freedom * math.pi)
+    )
     for _ in range(60):
         have = max(t_tail(t, freedom), _TINY)
         slope = math.exp(density - 0.5 * (freedom + 1.0) * math.log1p(t * t / freedom)) * t / have
@@ -65,7 +67,7 @@ def student_multiplier(z: npt.ArrayLike, freedom: npt.ArrayLike) -> Floats:
     """
     m = np.asarray(freedom, dtype=float)
     scaled = np.asarray(z, dtype=float) * (8.0 * m + 3.0) / (8.0 * m + 1.0)
-    return np.sqrt(m * np.expm1(np.minimum(scaled * scaled / m, 600.0)))
+    return np.asarray(np.sqrt(m * np.expm1(np.minimum(scaled * scaled / m, 600.0))))
 
 
 def _incomplete_beta(x: float, complement: float, a: float) -> float:

@@ -133,12 +133,13 @@ class RunningSums:
         return self + RunningSums()
 
     def _merged(self, other: RunningSums, sign: float) -> RunningSums:
+        # Both are of this class, so their inner tables are this class's business.
         result = RunningSums()
         for source, factor in ((self, 1.0), (other, sign)):
-            slots = [result._slot(name) for name in source._outcrop_at]
-            result._rows[slots] += factor * source._rows
-            places = [result._cell_slot(slots[slot], cell) for slot, cell in source._cell_at]
-            result._cell_rows[places] += factor * source._cell_rows[: len(places)]
+            slots = [result._slot(name) for name in source._outcrop_at]  # noqa: SLF001
+            result._rows[slots] += factor * source._rows  # noqa: SLF001
+            places = [result._cell_slot(slots[slot], cell) for slot, cell in source._cell_at]  # noqa: SLF001
+            result._cell_rows[places] += factor * source._cell_rows[: len(places)]  # noqa: SLF001
         empty = np.abs(result._rows[..., COUNT]) < 0.5
         result._rows[empty] = 0.0
         result._cell_rows[np.abs(result._cell_rows[:, COUNT]) < 0.5] = 0.0
