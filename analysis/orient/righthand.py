@@ -30,7 +30,7 @@ OCTANTS = ("N", "NE", "E", "SE", "S", "SW", "W", "NW")
 # sides must reach that far, or good entries are questioned and reversed ones pass with the wrong words.
 # Simulated with 3 degrees of pole noise, dips 15 to 75 degrees and one neighbour tapped in ten:
 # 45 degrees either side of strike + 90 questions 5% of good entries and calls 95 to 96% of reversed strikes
-# reversed; 80 degrees questions 0.02% and calls 99.9%.
+# reversed; 80 degrees questions 0.03% and calls 99.97%.
 ALONG_STRIKE_DEG = 10.0
 
 FEWEST_NEIGHBOURS = 5
@@ -38,14 +38,14 @@ MOST_NEIGHBOURS = 200  # the newest ones speak for the outcrop; the time stays b
 PRIOR_READINGS = 4.0  # METHOD's weak prior on the scatter of readings: 4 pseudo-readings at 5 degrees
 PRIOR_SCATTER_DEG = 5.0
 RAYLEIGH_MEDIAN = math.sqrt(2.0 * math.log(2.0))  # median distance from the centre in units of the scatter
-FAR_OUTSIDE = 2.0  # scatters from the centre of the cluster: the entry at least so far
-WELL_INSIDE = 4.0  # the reversed plane at most so far; the scatter of the first few readings is ill known
+# The reversed plane lies so many scatters from the centre at most; the first few readings tell the scatter badly.
+WELL_INSIDE = 4.0
 # Log likelihood ratio asked of "reversed" against "as entered". One strike in fifty reversed would ask for
-# ln 49 = 3.9 if a question and a miss cost alike; a question costs one glance, so less is asked.
+# ln 49 = 3.9 if a question and a miss cost alike; a question costs one glance, so less is asked. It also puts
+# the entry at least two scatters from the centre.
 REVERSED_LOG_RATIO = 2.0
-LONE_SHARE = (
-    0.15  # of unconfirmed readings on the entry's own side, this share (or a single one) excuses nothing
-)
+# Of unconfirmed readings on the entry's own side this share, or a single one, excuses nothing.
+LONE_SHARE = 0.15
 
 
 class QuadrantFit(StrEnum):
@@ -141,7 +141,7 @@ def reversed_among_neighbours(
     centre, scatter = robust_centre(poles)
     entry_off = float(vectors.axis_angle_deg(plane.pole, centre))
     mend_off = float(vectors.axis_angle_deg(mend.pole, centre))
-    if entry_off < FAR_OUTSIDE * scatter or mend_off > WELL_INSIDE * scatter:
+    if mend_off > WELL_INSIDE * scatter:
         return None
     if entry_off**2 - mend_off**2 < 2.0 * scatter**2 * REVERSED_LOG_RATIO:
         return None

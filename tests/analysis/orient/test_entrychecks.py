@@ -250,6 +250,17 @@ def test_the_first_bed_of_the_other_limb_is_no_outlier():
         assert entrychecks.check_outlier(vectors.pole_vector(180.0, 50.0), one_limb, Feature.BEDDING) is None
 
 
+def test_a_girdle_known_from_one_limb_only_does_not_judge_the_other():
+    """Dips of 25 to 65 on one limb draw a girdle whose axis still wavers: 1 alarm in 100 at most."""
+    rng = np.random.default_rng(10)
+    alarms = 0
+    for _ in range(300):
+        one_limb = jittered(rng, vectors.pole_vector(0.0, rng.uniform(25.0, 65.0, 15)), 5.0)
+        entry = jittered(rng, vectors.pole_vector(180.0, 50.0)[np.newaxis], 5.0)[0]
+        alarms += entrychecks.check_outlier(entry, one_limb, Feature.BEDDING) is not None
+    assert alarms <= 3
+
+
 @pytest.mark.parametrize(
     ("feature", "words"),
     [

@@ -174,6 +174,11 @@ def test_fewer_than_five_neighbours_say_nothing(n):
     assert righthand.reversed_among_neighbours(Plane(226, 50), LIMB[:n]) is None
 
 
+def test_the_newest_two_hundred_neighbours_speak_for_the_outcrop():
+    neighbours = np.vstack([np.tile(OTHER_LIMB, (100, 1)), np.tile(LIMB[5], (200, 1))])
+    assert righthand.reversed_among_neighbours(Plane(225, 50), neighbours) == Plane(45, 50)
+
+
 def test_identical_neighbours_are_a_cluster():
     assert righthand.reversed_among_neighbours(Plane(225, 50), np.tile(LIMB[5], (5, 1))) == Plane(45, 50)
 
