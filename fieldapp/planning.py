@@ -7,13 +7,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from analysis.orient.righthand import robust_centre
 from analysis.orient.vectors import strike_dip_deg, trend_plunge_deg
 from fieldapp.states import PlanOutcrop, PlanState
 
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
-    from analysis.orient.vectors import Floats
+    from analysis.orient.righthand import robust_centre
+from analysis.orient.vectors import Floats
     from fieldapp.checking import Neighbour
 
 # WGS 84: equatorial radius in metres and first eccentricity squared.
@@ -83,12 +85,13 @@ def _attitudes(neighbours: Sequence[Neighbour]) -> Mapping[tuple[str, str], tupl
     for n in neighbours:
         kind = str(n.feature) if n.feature.is_plane else "lines"
         axes.setdefault((n.outcrop, kind), []).append(n.vector)
-    return {key: _mean(key[1] != "lines", np.stack(rows)) for key, rows in axes.items()}
+    return {key: _middle_attitude(np.stack(rows), plane=key[1] != "lines") for key, rows in axes.items()}
 
 
-def _mean(plane: bool, axes: Floats) -> tuple[float, float]:
-    principal = np.linalg.eigh(axes.T @ axes)[1][:, -1]
-    azimuth, inclination = strike_dip_deg(principal) if plane else trend_plunge_deg(principal)
+def _middle_attitude(axes: Floats, *, plane: bool) -> tuple[float, float]:
+    """Centre of the main cluster: where both limbs stand in an outcrop, their mean would be no bed at all."""
+    centre, _ = robust_centre(axes)
+    azimuth, inclination = strike_dip_deg(centre) if plane else trend_plunge_deg(centre)
     return float(azimuth), float(inclination)
 
 

@@ -102,6 +102,12 @@ class Notebook:
             if draft is not None:
                 self._put_draft(db, draft)
 
+    def keep_all(self, readings: Iterable[Reading]) -> None:
+        """Add many revisions, all of them or none."""
+        with self._writing() as db:
+            for reading in readings:
+                self._add(db, reading, "kept")
+
     def _add(self, db: sqlite3.Connection, reading: Reading, origin: str) -> int:
         self._make_place(db, reading.fold, reading.outcrop)
         values = (None, digest_of(reading), origin, self._now(), *row_values(reading))
