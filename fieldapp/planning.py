@@ -14,8 +14,7 @@ from fieldapp.states import PlanOutcrop, PlanState
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
-    from analysis.orient.righthand import robust_centre
-from analysis.orient.vectors import Floats
+    from analysis.orient.vectors import Floats
     from fieldapp.checking import Neighbour
 
 # WGS 84: equatorial radius in metres and first eccentricity squared.

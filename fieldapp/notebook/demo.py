@@ -149,7 +149,7 @@ def _readings_of(
                     "position_source": "invented",
                     **_attitude(feature, axis),
                 }
-                yield Reading(**fields)  # type: ignore[arg-type]  # Reading checks each value
+                yield Reading(**fields)
 
 
 def _scattered(axis: Floats, scatter_deg: float, rng: np.random.Generator) -> Floats:
