@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from analysis.fold.transection import FEWEST_CLUSTERS
+from analysis.fold.transection import FEWEST_CLUSTERS, outcrop_freedom
 from analysis.fold.watch import (
     GIRDLE_SCATTER_AT_MOST_DEG,
     HINGE_SE_AT_MOST_DEG,
@@ -91,7 +91,10 @@ def outcrops_differ(transection: Transection) -> bool:
     The variance between outcrops over that of the readings follows F; its quantile is taken from chi-square
     (Wilson & Hilferty 1931, from memory), widened for the readings' own degrees of freedom.
     """
-    between, outcrops = float(transection.outcrop_variance), float(transection.outcrops)
+    outcrops = float(transection.outcrops)
+    between = float(transection.outcrop_variance * outcrop_freedom(transection.outcrops)) / max(
+        outcrops - 1.0, 1.0
+    )
     within = float(transection.steady_hinge_variance + transection.steady_cleavage_variance)
     if outcrops < 2.0 or not np.isfinite(between) or within <= 0.0:
         return False

@@ -1,0 +1,116 @@
+"""Trials of the check on invented folds, many at a time: what planning and calibration are reckoned from.
+
+The folds are watched as a geologist watches: a look after every single reading, from the first look on. The
+numbers come from the functions that the page itself runs, broadcast over folds and looks.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Literal, NamedTuple
+
+import numpy as np
+
+from analysis.fold.settings import CheckSettings
+from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge, transection
+from analysis.fold.watch import (
+    GIRDLE_SCATTER_AT_MOST_DEG,
+    hinge_is_clear,
+    information_since_first_look,
+    stream_progress,
+    watch,
+)
+from analysis.stats.moments import COUNT, moments
+from analysis.stats.quantiles import student_multiplier
+from analysis.stats.synthetic import FoldDesign, draw
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+    from analysis.orient.vectors import Floats
+
+Mode = Literal["planes", "lines", "planes and lines"]
+_NORMAL_975 = 1.959963984540054
+
+
+class Trials(NamedTuple):
+    """What each look at each fold showed; shape (folds, looks) unless said otherwise.
+
+    `readings` (looks,) are the readings taken by then, over both streams. `naive_*` are what one ordinary
+    interval, not made for watching, would have said at that look.
+    """
+
+    readings: npt.NDArray[np.int64]
+    delta_deg: Floats
+    low_deg: Floats
+    high_deg: Floats
+    looked: npt.NDArray[np.bool_]
+    transected: npt.NDArray[np.bool_]
+    axial_planar: npt.NDArray[np.bool_]
+    naive_low_deg: Floats
+    naive_high_deg: Floats
+
+    @property
+    def settled_after(self) -> Floats:
+        """Readings over both streams until the first verdict, (folds,); infinite where none came."""
+        settled = self.transected | self.axial_planar
+        return np.where(settled.any(axis=1), self.readings[settled.argmax(axis=1)], np.inf)
+
+
+def looks(first: tuple[int, int], last: int) -> npt.NDArray[np.int64]:
+    """Readings of both streams, (looks, 2), read in turn, from the first look to `last` of each."""
+    n = max(first)
+    start = np.array([[n, n]])
+    steps = [pair for k in range(n, last) for pair in ((k + 1, k), (k + 1, k + 1))]
+    return np.concatenate([start, np.array(steps, dtype=np.int64).reshape(-1, 2)])
+
+
+def run_trials(
+    design: FoldDesign,
+    folds: int,
+    readings: int,
+    rng: np.random.Generator,
+    settings: CheckSettings,
+    mode: Mode = "planes",
+) -> Trials:
+    """Watch so many folds of one design, up to so many readings of each stream.
+
+    Streams are bedding and, by mode, cleavage planes, intersection lines, or both of these read together.
+    """
+    drawn = draw(design, readings, folds, rng)
+    at = looks((6, 6) if mode == "planes" else (6, 5), readings)
+    bedding = _by_look(drawn.bedding, drawn.outcrop, at[:, 0], design.outcrops)
+    none = np.zeros_like(bedding)
+    planes = none if mode == "lines" else _by_look(drawn.cleavage, drawn.outcrop, at[:, 1], design.outcrops)
+    lines = none if mode == "planes" else _by_look(drawn.lines, drawn.outcrop, at[:, 1], design.outcrops)
+
+    hinge = fit_hinge(bedding, none)
+    cleavage = fit_cleavage_to_lines(lines) if mode == "lines" else fit_cleavage(planes, lines)
+    found = transection(hinge, cleavage, (bedding, planes, lines))
+    n_planes, n_lines = (rows[..., COUNT].sum(axis=-1) for rows in (planes, lines))
+    information = information_since_first_look(
+        found, stream_progress(at[:, 0], 0), stream_progress(n_planes, n_lines)
+    )
+    scattered = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
+    seen = watch(found, information, hinge_is_clear(hinge) & ~scattered, settings)
+    naive = student_multiplier(_NORMAL_975, found.fixed_freedom) * np.sqrt(found.fixed_variance)
+    return Trials(
+        readings=at.sum(axis=1),
+        delta_deg=found.delta_deg,
+        low_deg=seen.low_deg,
+        high_deg=seen.high_deg,
+        looked=seen.looked,
+        transected=seen.transected,
+        axial_planar=seen.axial_planar,
+        naive_low_deg=found.delta_deg - naive,
+        naive_high_deg=found.delta_deg + naive,
+    )
+
+
+def _by_look(
+    axes: Floats, outcrop: npt.NDArray[np.int64], held: npt.NDArray[np.int64], outcrops: int
+) -> Floats:
+    """Moments, (folds, looks, outcrops, 24), of the first `held` (looks,) axes (folds, readings, 3)."""
+    rows = (
+        moments(axes)[:, :, np.newaxis, :] * (outcrop[:, np.newaxis] == np.arange(outcrops))[..., np.newaxis]
+    )
+    return np.asarray(np.cumsum(rows, axis=1)[:, held - 1])
