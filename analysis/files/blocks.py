@@ -26,11 +26,12 @@ if TYPE_CHECKING:
     from collections.abc import Hashable
     from datetime import datetime
 
-    from analysis.files.faults import FaultLog
+    from analysis.files.faults import RowFault
     from analysis.files.header import Header
     from analysis.files.records import Records
 
-HOPELESS_ROWS = 10_000  # so many bad rows, and not one good, are enough to know
+HOPELESS_ROWS = 10_000  # so many bad rows at the start, and not one good, are enough to know
+MAX_BAD_ROWS = 100_000  # with some good ones among them
 
 Array = npt.NDArray[Any]
 Bools = npt.NDArray[np.bool_]
@@ -69,8 +70,10 @@ class Block:
                 value = reading.other.get(name, "")
             if isinstance(column, Coded):
                 column.codes[row] = column.code_of(value)
-            else:
-                column[row] = stored(value, BY_NAME.get(name))
+                continue
+            if not column.flags.writeable:  # it belongs to the frame reader
+                column = self.columns[name] = column.copy()  # noqa: PLW2901 - the copy takes its place
+            column[row] = stored(value, BY_NAME.get(name))
 
     def keep(self, rows: Bools) -> None:
         """Drop all other rows."""
@@ -108,38 +111,37 @@ def is_coded(column: Column) -> bool:
     return column.kind in _CODED and column.name != "reading_id"
 
 
-class BlockReader:
-    """Turns the records of one file into blocks of columns, and logs the faults of the others."""
+@dataclass(frozen=True, slots=True)
+class ReadBlock:
+    """A block of good rows, and the faults of each bad one."""
 
-    def __init__(self, header: Header, log: FaultLog) -> None:
+    block: Block
+    faults: list[list[RowFault]]
+
+
+class BlockReader:
+    """Turns the records of one file into blocks of columns; blocks may be read in several threads at once."""
+
+    def __init__(self, header: Header) -> None:
         self.header = header
-        self.log = log
-        self.good = self.bad = 0
+        # Which decimal mark the last block had: only where to begin trying.
         self._decimal = "."
         self._columns = [column_named(name) for name in header.names]
-        self._dtypes: dict[int, str] = {}
-        self._blanks: dict[int, list[str]] = {}
-        for place, column in enumerate(self._columns):
-            kind = Kind.TEXT if column is None else column.kind
-            if kind is Kind.NUMBER:
-                self._dtypes[place], self._blanks[place] = "float64", [""]
-            elif kind in (Kind.TEXT, Kind.TIME) or (column is not None and column.name == "reading_id"):
-                self._dtypes[place] = "object"
-            else:
-                self._dtypes[place] = "category"
+        self._numbers = [
+            place
+            for place, column in enumerate(self._columns)
+            if column is not None and column.kind is Kind.NUMBER
+        ]
 
-    def read(self, records: Records) -> Block:
-        """Make columns of the good rows; raises CsvError where nothing but bad rows has come so far."""
+    def read(self, records: Records) -> ReadBlock:
+        """Make columns of the good rows; raises CsvError where a file begins with nothing but bad rows."""
         doubtful = self._not_plain(records)
         frame = self._frame(_blanked(records, doubtful, self.header.line_end), records)
         block, refused = self._columns_of(frame, plain=b"'" not in records.text)
         block.lines = records.lines.astype(np.int32)
         doubtful |= refused | _unsure(block.columns)
-        if doubtful.any():
-            self._judge(records, block, doubtful)
-        else:
-            self.good += len(records)
-        return block
+        faults = self._judge(records, block, doubtful) if doubtful.any() else []
+        return ReadBlock(block, faults)
 
     def _not_plain(self, records: Records) -> Bools:
         """Mark the records that the frame reader must not see."""
@@ -163,35 +165,51 @@ class BlockReader:
             marked[-1] |= records.cells[-1] < len(self.header.names)
         return marked
 
-    def _frame(self, text: bytes, records: Records) -> pd.DataFrame:
+    def _frame(self, text: bytes, records: Records) -> dict[int, pd.Series[Any]]:
+        """Parse the text: numbers as floats where all are plain, all else as text, by place."""
         for decimal in dict.fromkeys((self._decimal, ".", "," if self.header.delimiter == ";" else ".")):
             try:
-                frame = self._parsed(text, decimal, self._dtypes)
+                frame = self._parsed(text, decimal, self._numbers)
             except (ValueError, OverflowError):  # some cell is no plain number
                 continue
             self._decimal = decimal
             break
         else:
-            numbers = {place: "category" for place, dtype in self._dtypes.items() if dtype == "float64"}
-            frame = self._parsed(text, ".", self._dtypes | numbers)
+            frame = self._parsed(text, ".", [])
+        series = {place: frame[place] for place in range(len(self._columns))}
+        # Text is taken as the frame reader infers it, which is fastest; where it took text for numbers (an
+        # outcrop named 007) the column is read again.
+        guessed = [
+            place
+            for place, each in series.items()
+            if not (each.dtype == object or isinstance(each.dtype, pd.StringDtype))
+            and not (place in self._numbers and each.dtype == np.float64)
+        ]
+        if guessed:
+            again = self._parsed(text, ".", [], text_only=guessed)
+            series |= {place: again[place] for place in guessed}
         if len(frame) != len(records):  # pragma: no cover - would be a fault of this package
             raise CsvError(
                 f"{len(frame)} rows parsed where {len(records)} were cut",
                 where=f"{self.header.file}, line {int(records.lines[0])}",
                 expected="one row a record",
             )
-        return frame
+        return series
 
-    def _parsed(self, text: bytes, decimal: str, dtypes: dict[int, str]) -> pd.DataFrame:
+    def _parsed(
+        self, text: bytes, decimal: str, numbers: list[int], text_only: list[int] | None = None
+    ) -> pd.DataFrame:
+        dtypes: dict[int, Any] = dict.fromkeys(numbers, "float64") | dict.fromkeys(text_only or [], object)
         return pd.read_csv(  # type: ignore[call-overload, no-any-return]  # dtypes by place are not typed
             io.BytesIO(text),
             sep=self.header.delimiter,
             decimal=decimal,
             header=None,
-            names=range(len(dtypes)),
+            names=range(len(self._columns)),
+            usecols=text_only,
             index_col=False,
             dtype=dtypes,
-            na_values={place: blanks for place, blanks in self._blanks.items() if dtypes[place] == "float64"},
+            na_values={place: [""] for place in numbers},
             keep_default_na=False,
             skip_blank_lines=False,
             engine="c",
@@ -199,11 +217,11 @@ class BlockReader:
             encoding="utf-8",
         )
 
-    def _columns_of(self, frame: pd.DataFrame, *, plain: bool) -> tuple[Block, Bools]:
+    def _columns_of(self, frame: dict[int, pd.Series[Any]], *, plain: bool) -> tuple[Block, Bools]:
         columns: dict[str, Array | Coded] = {}
-        refused = np.zeros(len(frame), dtype=bool)
+        refused = np.zeros(len(frame[0]), dtype=bool)
         for place, (name, column) in enumerate(zip(self.header.names, self._columns, strict=True)):
-            series = frame.pop(place)  # type: ignore[arg-type]  # columns are named by place
+            series = frame.pop(place)
             if column is None:
                 columns[name] = _texts(series, plain=plain)
             elif column.name == "reading_id":
@@ -222,10 +240,13 @@ class BlockReader:
             _take_dip_direction(columns, refused)
         return Block(columns, np.empty(0, dtype=np.int32)), refused
 
-    def _judge(self, records: Records, block: Block, doubtful: Bools) -> None:
+    def _judge(self, records: Records, block: Block, doubtful: Bools) -> list[list[RowFault]]:
+        """Judge the doubtful rows one by one; the mended ones are written into the block, the bad ones drop."""
         good = ~doubtful
         ended = records.text.endswith(self.header.line_end)
-        self.good += int(np.count_nonzero(good))
+        begins = len(records) > 0 and int(records.lines[0]) == self.header.first_line
+        faults: list[list[RowFault]] = []
+        some_good = bool(good.any())
         for row in np.flatnonzero(doubtful).tolist():
             verdict = judge_row(
                 records.record(row),
@@ -236,18 +257,23 @@ class BlockReader:
             )
             if isinstance(verdict, Reading):
                 block.put(row, verdict)
-                good[row] = True
-                self.good += 1
+                good[row] = some_good = True
             elif verdict is not None:
-                self.log.add(verdict)
-                self.bad += 1
-                if self.bad >= HOPELESS_ROWS and not self.good:
-                    raise CsvError(
-                        f"not one of {self.bad} rows is a reading; first {self.log.kept[0]}",
-                        where=self.header.file,
-                        mend="Mend that, and what is like it.",
-                    )
+                faults.append(verdict)
+                if len(faults) >= (MAX_BAD_ROWS if some_good or not begins else HOPELESS_ROWS):
+                    raise hopeless(len(faults), faults[0][0])
         block.keep(good)
+        return faults
+
+
+def hopeless(rows: int, first: RowFault) -> CsvError:
+    """Make the error that gives a file up."""
+    return CsvError(
+        f"{rows} rows are no readings; the first: {first}",
+        where=first.file,
+        expected="a file of readings",
+        mend="Mend that, and what is like it.",
+    )
 
 
 def _blanked(records: Records, rows: Bools, line_end: bytes) -> bytes:
@@ -324,7 +350,9 @@ def _numbers(series: pd.Series[Any], column: Column, refused: Bools, delimiter: 
 
 
 def _categories(series: pd.Series[Any]) -> tuple[Array, list[str]]:
-    return series.cat.codes.to_numpy(), [str(text) for text in series.cat.categories.tolist()]
+    # Not the category dtype of the frame reader, which would take 007 and 7 for one.
+    codes, texts = pd.factorize(series.array)
+    return codes, list(texts)
 
 
 def _coded(series: pd.Series[Any], column: Column, refused: Bools) -> Coded:

@@ -12,12 +12,15 @@ from __future__ import annotations
 import contextlib
 import os
 import secrets
+from collections import deque
 from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
+from itertools import chain
 from pathlib import Path
 from typing import TYPE_CHECKING, BinaryIO, cast
 
 from analysis.errors import CsvError
-from analysis.files.blocks import BlockReader
+from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless
 from analysis.files.cells import quoted
 from analysis.files.columns import NAMES
 from analysis.files.faults import FaultLog, RowFault
@@ -30,6 +33,7 @@ if TYPE_CHECKING:
 Source = str | os.PathLike[str] | BinaryIO
 Progress = Callable[[float], None]
 
+_MAX_WORKERS = 4  # threads; parsing leaves Python's lock to others most of the time
 _WRITE_ROWS = 20_000  # rows turned to text at once
 
 
@@ -62,19 +66,49 @@ def read_table(*sources: Source, strict: bool = False, progress: Progress | None
             try:
                 records = RecordFile(file, stream)
                 builder.start_file(file, records.header.other_names, records.header.unnamed)
-                reader = BlockReader(records.header, log)
-                for block in records:
-                    builder.add(reader.read(block))
+                for read, bytes_read in _read_blocks(records):
+                    builder.add(read.block)
+                    log.add_rows(read.faults)
                     if strict and log.rows:
                         raise log.refuse()
+                    if log.rows > MAX_BAD_ROWS:
+                        raise hopeless(log.rows, log.kept[0])
                     if progress is not None and whole and length is not None:
-                        progress(min(1.0, (done + records.bytes_read) / whole))
+                        progress(min(1.0, (done + bytes_read) / whole))
             except OSError as error:
                 raise _unreadable(file, error) from error
         done += length or 0
     if progress is not None and whole:
         progress(1.0)
     return builder.build(log.kept, log.rows)
+
+
+def _read_blocks(records: RecordFile) -> Iterator[tuple[ReadBlock, int]]:
+    """Read the blocks of a file in their order, several at once; with the bytes read so far."""
+    reader = BlockReader(records.header)
+    blocks = iter(records)
+    first = next(blocks, None)
+    if first is None:
+        return
+    second = next(blocks, None)
+    if second is None:  # most files are one block: no thread for those
+        yield reader.read(first), records.bytes_read
+        return
+    workers = min(_MAX_WORKERS, os.cpu_count() or 1)
+    with ThreadPoolExecutor(workers) as pool:
+        waiting: deque[tuple[Future[ReadBlock], int]] = deque()
+        try:
+            for block in chain((first, second), blocks):
+                waiting.append((pool.submit(reader.read, block), records.bytes_read))
+                if len(waiting) > workers:
+                    future, bytes_read = waiting.popleft()
+                    yield future.result(), bytes_read
+            while waiting:
+                future, bytes_read = waiting.popleft()
+                yield future.result(), bytes_read
+        finally:
+            for future, _ in waiting:
+                future.cancel()
 
 
 def read_readings(

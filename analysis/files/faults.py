@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from analysis.errors import CsvError
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Sequence
 
 MAX_FAULTS_KEPT = 1000  # faults kept word for word; those beyond are only counted
 MAX_FOUND = 60  # characters of a cell shown
@@ -47,10 +47,13 @@ class FaultLog:
         self.kept: list[RowFault] = []
         self.rows = 0
 
-    def add(self, faults: Iterable[RowFault]) -> None:
-        """Add the faults of one row."""
-        self.rows += 1
-        self.kept.extend(list(faults)[: max(0, MAX_FAULTS_KEPT - len(self.kept))])
+    def add_rows(self, rows: Sequence[Sequence[RowFault]]) -> None:
+        """Add the faults of some rows."""
+        self.rows += len(rows)
+        for faults in rows:
+            if len(self.kept) >= MAX_FAULTS_KEPT:
+                break
+            self.kept.extend(faults)
 
     def refuse(self) -> CsvError:
         """Make the error that refuses a file with faults, naming the first of them."""

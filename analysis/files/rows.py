@@ -10,12 +10,13 @@ from analysis.files.cells import CellValue, cell_value, unguarded
 from analysis.files.columns import DIP_DIRECTION
 from analysis.files.faults import RowFault, shown
 from analysis.files.header import column_named
-from analysis.files.reading import Reading
+from analysis.files.reading import CONTENT_SPACE, Reading
 
 if TYPE_CHECKING:
     from analysis.files.header import Header
 
-NO_ID = "-"  # stands for an id that is yet to be made from the content; never leaves this package
+# Stands for an id that is yet to be made from the content; an id no content has, that leaves this package never.
+NO_ID = str(CONTENT_SPACE)
 # Strike and dip direction of one row may differ by this much, in degrees, and still be one measurement.
 SAME_STRIKE_DEG = 0.5
 
