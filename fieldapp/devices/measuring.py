@@ -74,7 +74,7 @@ class MeasureSettings:
     least_samples: int = 8
     settled_error_deg: float = 0.25
     longest_s: float = 10.0
-    still_s: float = 0.6
+    still_s: float = 0.3
     silent_s: float = 1.5
     give_up_s: float = 10.0
     asleep_s: float = 2.0
