@@ -45,3 +45,38 @@ def test_every_file_that_a_page_points_to_exists(page):
     links = re.findall(r"\]\(([^)\s#]+)\)", (ROOT / page).read_text(encoding="utf-8"))
     local = [link for link in links if "://" not in link]
     assert [link for link in local if not (ROOT / link).exists()] == []
+
+
+CITATION = re.compile(
+    r"\b(?P<last>[A-Z][a-z]{2,})(?:\s+et\s+al\.)?(?:'s)?\s+\(?(?P<year>1[89]\d\d|20\d\d)\b(?:-\d+)?"
+)
+NO_AUTHORS = {"Model"}
+
+
+def uncited(text, references):
+    """Return the citations in a text, as last author and year, that a list of references lacks."""
+    entries = references.splitlines()
+    cited = {(found["last"], found["year"]) for found in CITATION.finditer(text)}
+    return sorted(
+        f"{author} {year}"
+        for author, year in cited
+        if author not in NO_AUTHORS and not any(author in entry and year in entry for entry in entries)
+    )
+
+
+@pytest.mark.parametrize("package", ["analysis", "fieldapp"])
+def test_every_citation_is_among_the_references(package):
+    """Each author and year named in the code stands in the list of DEVELOPERS.md."""
+    references = section(DEVELOPERS, "References")
+    missing = {
+        path.relative_to(ROOT).as_posix(): found
+        for path in sorted((ROOT / package).rglob("*.py"))
+        if (found := uncited(path.read_text(encoding="utf-8"), references))
+    }
+    assert missing == {}
+
+
+def test_a_missing_reference_is_found():
+    """The checker of citations finds an author and year that the list lacks, and lets listed ones be."""
+    text = "after Adams & Baker (1984), Carter et al. 2021-24, and Dunn's (1959) form"
+    assert uncited(text, "- Adams & Baker 1984.") == ["Carter 2021", "Dunn 1959"]
