@@ -140,8 +140,7 @@ class HingewiseApp(App):
             from fieldapp.notebook.demo import make_demo
 
             make_demo(path, self.clock_utc)
-        north = getattr(self.devices, "to_true_north", None)
-        self.page = open_page(path, clock=self.clock_utc, dispatch=dispatch, to_true_north=north, demo=demo)
+        self.page = open_page(path, clock=self.clock_utc, dispatch=dispatch, demo=demo)
         self.notebook_path, self.demo = path, demo
         self._stop_listening = [self.page.listen(self._changed), self.page.on_signal(self._signalled)]
 

@@ -186,7 +186,7 @@ class EqualAreaNet(Widget):
                 red, green, blue, _ = colour
                 add_mesh(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
             add_mesh(group, colour, [strokes.line(piece, dp(2)) for piece in pieces])
-        size = round(dp(self.marker_dp * 1.7))
+        size = round(dp(self.marker_dp * (1.15 if shape == "disc" else 1.6)))
         ground = PAINTS.marker("disc", size + round(dp(4)))
         half = ground.width / 2.0
         group.add(Color(*self.theme.card))

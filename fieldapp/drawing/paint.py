@@ -10,6 +10,7 @@ from kivy.graphics import Color, InstructionGroup, Mesh, Rectangle
 from kivy.graphics.texture import Texture
 
 from fieldapp.drawing import strokes
+from fieldapp.look.fonts import FONT_NAME
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
@@ -65,7 +66,7 @@ class Paints:
         if texture is None:
             if len(self._words) > MOST_WORDS:
                 self._words.clear()
-            label = CoreLabel(text=text, font_size=size_px, bold=bold, color=(1, 1, 1, 1))
+            label = CoreLabel(text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1))
             label.refresh()
             texture = self._words[key] = label.texture
         return texture

@@ -31,7 +31,7 @@ def no_vectors() -> Floats:
     return np.zeros((0, 3))
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Ellipse:
     """A confidence ellipse round an axis: half axes in degrees along two tangents, each (3,)."""
 
@@ -41,7 +41,7 @@ class Ellipse:
     minor_axis: Floats
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Mean:
     """An axis with its ellipse and its words: the hinge, the mean intersection."""
 
@@ -50,7 +50,7 @@ class Mean:
     ellipse: Ellipse | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Points:
     """The readings of one feature: poles or lines (n, 3), their keys, and which are of this outcrop (n,)."""
 
@@ -59,7 +59,7 @@ class Points:
     here: npt.NDArray[np.bool_]
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class NetScene:
     """Everything on the equal-area net."""
 
@@ -72,7 +72,7 @@ class NetScene:
     chosen_key: str = ""
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class FunnelScene:
     """The transection against the count of readings; angles in degrees, clockwise positive.
 

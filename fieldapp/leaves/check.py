@@ -11,7 +11,6 @@ from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
 from kivy.uix.scrollview import ScrollView
 
-from analysis.orient.features import Feature
 from fieldapp.drawing.funnel import NarrowingFunnel
 from fieldapp.drawing.net import EqualAreaNet
 from fieldapp.drawing.plan import PlanSketch
@@ -208,10 +207,9 @@ class CheckLeaf(FloatLayout):
         self.net.marker_dp = 12.0 if form.large else 10.0
         self._picture_box.spacing = dp(form.gap_dp)
         self._fill_picture()
-        if form.split or form.low:
-            self.add_widget(self._side_by_side(form))
-        else:
-            self.add_widget(self._column(form))
+        content = self._side_by_side(form) if form.split or form.low else self._column(form)
+        content.pos_hint = {"x": 0.0, "y": 0.0}
+        self.add_widget(content)
         self._show_named()
 
     def _means(self, form: Form) -> BoxLayout:
@@ -277,7 +275,5 @@ class CheckLeaf(FloatLayout):
             whole.add_widget(self._means(form))
         return whole
 
-
-LEGEND = ((Feature.BEDDING, "bedding pole"), (Feature.CLEAVAGE, "cleavage pole"))
 
 load_kv("check")

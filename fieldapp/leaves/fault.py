@@ -45,6 +45,7 @@ class FaultLeaf(BoxLayout):
     angle = StringProperty("")
     waiting = StringProperty("")
     caution = StringProperty(CAUTION)
+    senses = ObjectProperty(SENSES)
 
     @property
     def page(self) -> object:

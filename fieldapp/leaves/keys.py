@@ -22,7 +22,7 @@ class KeyPad(GridLayout):
         super().__init__(cols=3, **kwargs)
         for digit in "".join(DIGIT_ROWS):
             self._add(digit, PadKey(text=digit))
-        self._add("back", SignKey(sign="backspace", sign_dp=30))
+        self._add("back", SignKey(sign="backspace", sign_dp=28))
         self._add("0", PadKey(text="0"))
         self._add(".", PadKey(text="."))
 
@@ -47,8 +47,8 @@ class DirectionKey(Key):
 class DirectionGrid(GridLayout):
     """Eight directions of dip as on a map, north up.
 
-    Dispatches `on_direction` with "N" to "NW". With `last_row` it fills the place of the key pad and has back, a
-    way back to the digits and clear below, dispatched as `on_sign` with "back", "digits" and "clear".
+    Dispatches `on_direction` with "N" to "NW". With `last_row` it fills the place of the key pad and has back and
+    a way back to the digits below, dispatched as `on_sign` with "back" and "digits".
     """
 
     chosen = StringProperty("")
@@ -72,13 +72,13 @@ class DirectionGrid(GridLayout):
                 self.add_widget(key)
         if self.last_row:
             for name, key in (
-                ("back", SignKey(sign="backspace", sign_dp=30)),
+                ("back", SignKey(sign="backspace", sign_dp=28)),
                 ("digits", Key(text="1 2 3")),
-                ("clear", Key(text="Clear")),
             ):
                 key.bind(on_press=lambda _key, name=name: self.dispatch("on_sign", name))
                 self.keys[name] = key
                 self.add_widget(key)
+            self.add_widget(Widget())
         self.bind(chosen=self._mark, expected=self._mark)
 
     def _mark(self, *_: object) -> None:

@@ -78,14 +78,14 @@ class CheckSlot(BoxLayout):
     can_close = BooleanProperty(False)
 
     def __init__(self, **kwargs: object) -> None:
-        self.register_event_type("on_offer")
-        self.register_event_type("on_close")
+        self.register_event_type("on_take")
+        self.register_event_type("on_put_away")
         super().__init__(**kwargs)
 
-    def on_offer(self) -> None:
+    def on_take(self) -> None:
         """The key was touched."""
 
-    def on_close(self) -> None:
+    def on_put_away(self) -> None:
         """The words are to go."""
 
 
@@ -95,10 +95,10 @@ class SideKeys(BoxLayout):
     has_sensors = BooleanProperty(False)
 
     def __init__(self, **kwargs: object) -> None:
-        super().__init__(orientation="vertical", **kwargs)
         self.keys = {name: Key(text=name.capitalize()) for name in ("measure", "note", "clear")}
         self.keys["keep"] = KeepKey(text="Keep")
         self._pair = BoxLayout()
+        super().__init__(orientation="vertical", **kwargs)
         self._build()
 
     def on_has_sensors(self, *_: object) -> None:
@@ -169,8 +169,8 @@ class LogLeaf(BoxLayout):
         for grid in (self.grid_small, self.grid_large):
             grid.bind(on_direction=lambda _grid, name: self.page.choose_quadrant(name))
             grid.bind(on_sign=lambda _grid, sign: self.sign(sign))
-        self.check_slot.bind(on_offer=lambda _slot: self._take_offer())
-        self.check_slot.bind(on_close=lambda _slot: self.page.dismiss_message())
+        self.check_slot.bind(on_take=lambda _slot: self._take_offer())
+        self.check_slot.bind(on_put_away=lambda _slot: self.page.dismiss_message())
         for name in ("keep", "clear", "note", "measure"):
             self.side.keys[name].bind(on_release=lambda _key, name=name: getattr(self, f"press_{name}")())
         self.place_row.bind(on_release=lambda _row: App.get_running_app().open_sheet("place"))

@@ -102,6 +102,7 @@ class Outline(FloatLayout):
         for leaf in self.leaves.values():
             leaf.form = form
         self._lay_out()
+        self.refresh(Change.STRIP)
 
     def _lay_out(self) -> None:
         body, form = self.ids.body, self.form
@@ -128,7 +129,8 @@ class Outline(FloatLayout):
         if change & Change.STRIP:
             strip = self.page.strip
             self.ids.strip.sign = strip.sign.value
-            self.ids.strip.headline, self.ids.strip.figures = strip.headline, strip.figures
+            self.ids.strip.headline = strip.headline
+            self.ids.strip.figures = self._shortened(strip.figures)
         if change & Change.PLACE:
             self._mark_demo(demo=self.page.place.demo)
         for name in self._behind:
@@ -139,6 +141,12 @@ class Outline(FloatLayout):
         for child in self.children:
             if isinstance(child, Sheet) and hasattr(child, "refresh"):
                 child.refresh(change)
+
+    def _shortened(self, figures: str) -> str:
+        """On a narrow strip the line says its angle and interval without repeating what they are between."""
+        if self.form is None or self.form.width_dp >= 560.0:
+            return figures
+        return figures.removeprefix("cleavage ").replace(" of the hinge", "", 1)
 
     def _bring_up_to_date(self) -> None:
         for name in self.names_shown:

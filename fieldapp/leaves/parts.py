@@ -4,8 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from kivy.metrics import dp
-from kivy.properties import BooleanProperty, ColorProperty, NumericProperty, ObjectProperty, StringProperty
+from kivy.properties import BooleanProperty, ColorProperty, NumericProperty, ObjectProperty, OptionProperty, StringProperty
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
@@ -24,7 +23,21 @@ LEAST_SHARE = 0.5
 
 
 class Words(Label):
-    """A label whose words always fit: type is made smaller where the widget is too small for it."""
+    """A label whose words always fit: type is made smaller where the widget is too small for it.
+
+    `fit` is "box" (words wrap in the widget), "grow" (words wrap and `texture_size` says how high they are) or
+    "line" (words stand on one line).
+    """
+
+    fit = OptionProperty("box", options=("box", "grow", "line"))
+    shown_share = NumericProperty(1.0)
+
+    def on_size(self, *_: object) -> None:
+        """Wrap to the new width."""
+        # No height is set: Kivy would cut off, unseen, what does not fit in it.
+        self.text_size = (None if self.fit == "line" else self.width, None)
+
+    on_fit = on_size
 
     def texture_update(self, *_: object) -> None:
         """Render the words, smaller and smaller until they fit."""
@@ -40,16 +53,15 @@ class Words(Label):
             share *= SHRINK
         self.shown_share = share
 
-    shown_share = NumericProperty(1.0)
-
     def _fits(self) -> bool:
         wide, high = self.texture_size
-        grows = self.text_size[0] is not None and self.text_size[1] is None  # its height follows the words
-        if wide > self.width + 1 or (high > self.height + 1 and not grows):
+        if wide > self.width + 1 or (high > self.height + 1 and self.fit != "grow"):
             return False
-        if self.markup or not self.text_size[0]:
+        if self.fit == "line" or self.text_size[0] is None:
             return True
         # A word wider than the line would be cut in two.
+        if self.markup:
+            return True
         room = self.text_size[0] - self.padding[0] - self.padding[2]
         return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
 
@@ -142,11 +154,6 @@ class Choice(BoxLayout):
 
     def on_choice(self, value: object) -> None:
         """A key was touched."""
-
-
-def line_height(font_size: float, lines: float = 1.0) -> float:
-    """Height in pixels of so many lines of type of this size in pixels."""
-    return font_size * 1.26 * lines + dp(2)
 
 
 load_kv("parts")

@@ -15,9 +15,7 @@ SIGNS = "°±−–×·…₀₁→←↑↓✓Δσ≥≤’"
 
 
 def register() -> None:
-    """Make the font the page's default; safe to call again."""
-    from kivy.config import Config  # noqa: PLC0415 - this module must be importable without Kivy
-    from kivy.core.text import LabelBase  # noqa: PLC0415
+    """Make the font known under its name; safe to call again."""
+    from kivy.core.text import LabelBase  # noqa: PLC0415 - this module must be importable without Kivy
 
     LabelBase.register(FONT_NAME, str(REGULAR_FILE), fn_bold=str(BOLD_FILE))
-    Config.set("kivy", "default_font", [FONT_NAME, str(REGULAR_FILE), str(REGULAR_FILE), str(BOLD_FILE), str(BOLD_FILE)])

@@ -15,6 +15,11 @@ LOW_DP = 480.0  # lower than this and wider than high: a phone on its side
 LINE = 1.26  # height of a line of type, as a share of its size
 
 
+def line_height(font_size: float, lines: float = 1.0) -> float:
+    """Height in pixels of so many lines of type of this size in pixels."""
+    return font_size * LINE * lines + 2.0
+
+
 @dataclass(frozen=True, slots=True)
 class Form:
     """The arrangement for a window of this size."""
@@ -150,7 +155,7 @@ class Form:
         """The digits as typed."""
         if self.large:
             return 64.0 if not self.split else 42.0
-        return 34.0 if self.low or self.height_dp < 700.0 else 46.0
+        return 34.0 if self.low else 42.0 if self.height_dp < 700.0 else 48.0
 
     @property
     def grid_beside(self) -> bool:

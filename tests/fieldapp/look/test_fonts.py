@@ -1,0 +1,78 @@
+"""The bundled font holds every sign that the app can show, and its licence lies beside it."""
+
+from __future__ import annotations
+
+import ast
+import re
+from pathlib import Path
+
+import fieldapp
+import pytest
+from fontTools.ttLib import TTFont
+
+import analysis
+from fieldapp.look.fonts import BOLD_FILE, FONT_FOLDER, REGULAR_FILE
+
+PACKAGES = [Path(fieldapp.__file__).parent, Path(analysis.__file__).parent / "fold", Path(analysis.__file__).parent / "orient"]
+
+
+# These hold signs that are read from what somebody typed, and are never shown.
+ONLY_READ = {"forms.py", "position_text.py"}
+
+
+def python_strings(path):
+    """Give the strings of a Python file that are not docstrings."""
+    tree = ast.parse(path.read_text(encoding="utf-8"))
+    docs = {
+        id(node.body[0].value)
+        for node in ast.walk(tree)
+        if isinstance(node, ast.Module | ast.ClassDef | ast.FunctionDef) and node.body
+        and isinstance(node.body[0], ast.Expr)
+    }
+    for node in ast.walk(tree):
+        if isinstance(node, ast.Constant) and isinstance(node.value, str) and id(node) not in docs:
+            yield node.value
+
+
+def signs_used():
+    """Give every sign outside ASCII in the words of the app and of the checks it shows."""
+    used = {}
+    for package in PACKAGES:
+        for path in package.rglob("*.py"):
+            if path.name in ONLY_READ:
+                continue
+            for text in python_strings(path):
+                for sign in text:
+                    if ord(sign) > 126:
+                        used.setdefault(sign, path.name)
+        for path in package.rglob("*.kv"):
+            for text in re.findall(r'"[^"\n]*"', path.read_text(encoding="utf-8")):
+                for sign in text:
+                    if ord(sign) > 126:
+                        used.setdefault(sign, path.name)
+    return used
+
+
+@pytest.mark.parametrize("path", [REGULAR_FILE, BOLD_FILE], ids=lambda path: path.stem)
+def test_every_sign_used_is_in_the_font(path):
+    """Every sign in the app's own words, and all of printable ASCII, has a glyph in this weight."""
+    held = TTFont(path).getBestCmap()
+    assert {sign: where for sign, where in signs_used().items() if ord(sign) not in held} == {}
+    assert [chr(code) for code in range(0x20, 0x7F) if code not in held] == []
+
+
+def test_signs_are_found():
+    """The search for signs finds the degree sign and the plus-minus, so that it can fail."""
+    assert {"°", "±"} <= set(signs_used())
+
+
+def test_a_sign_the_font_lacks_would_be_seen():
+    """The font has no pencil (U+270E): one in a word would fail the test above."""
+    assert 0x270E not in TTFont(REGULAR_FILE).getBestCmap()
+
+
+def test_the_licence_lies_beside_the_font():
+    """The SIL Open Font License and the copyright notices are shipped with the files."""
+    text = (FONT_FOLDER / "OFL.txt").read_text(encoding="utf-8")
+    assert "SIL OPEN FONT LICENSE Version 1.1" in text
+    assert "Copyright 2012 AIRBUS" in text
