@@ -213,9 +213,9 @@ def from_mgrs(text: str) -> Position:
         ) from error
     size = float(10 ** (5 - len(figures) // 2))
     half = "N" if str(corner.band) >= "N" else "S"
-    latitude, longitude = _utm_degrees(
-        int(utm.zone), half, float(utm.easting) + size / 2, float(utm.northing) + size / 2
-    )
+    easting, northing = float(utm.easting) + size / 2, float(utm.northing) + size / 2
+    # The middle of a large square at the grid's end may lie beyond it: a metre is some 1e-5 degrees.
+    latitude, longitude = _utm_degrees(int(utm.zone), half, easting, northing, beyond_deg=size * 1e-5)
     return Position(latitude, longitude, accuracy_m=size / math.sqrt(2.0))
 
 
@@ -266,7 +266,9 @@ def _offsets_m(origin: Position, places: Sequence[Position]) -> Any:  # noqa: AN
     return np.stack([north, east], axis=-1)
 
 
-def _utm_degrees(zone: int, half: str, easting_m: float, northing_m: float) -> tuple[float, float]:
+def _utm_degrees(
+    zone: int, half: str, easting_m: float, northing_m: float, beyond_deg: float = 0.0
+) -> tuple[float, float]:
     from pygeodesy.utm import Utm, UTMError  # noqa: PLC0415 (as in to_utm)
 
     try:
@@ -275,8 +277,8 @@ def _utm_degrees(zone: int, half: str, easting_m: float, northing_m: float) -> t
         latitude, longitude = float(found.lat), float(found.lon)
     except (UTMError, ValueError):
         latitude = longitude = math.nan
-    # Squares and grid lines at the ends of the grid run a little past it.
-    if not GRID_SOUTH_deg - 0.001 <= latitude <= GRID_NORTH_deg + 0.001:
+    beyond_deg += 0.001  # grid lines at the ends of the grid run a little past it
+    if not GRID_SOUTH_deg - beyond_deg <= latitude <= GRID_NORTH_deg + beyond_deg:
         raise PositionError(
             f"easting {easting_m:g} m, northing {northing_m:g} m is no place in zone {zone}",
             where="grid position",
