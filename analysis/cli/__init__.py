@@ -1,0 +1,31 @@
+"""The `hingewise` command: turns typed errors into one clear line, shows progress, prints.
+
+Each command is a module of this room; `hingewise` is the group that holds them.
+"""
+
+from __future__ import annotations
+
+import click
+
+from analysis import __version__
+from analysis.cli.check import check
+from analysis.cli.common import OneLineErrors
+from analysis.cli.replay import replay
+from analysis.cli.simulate import simulate
+
+__all__ = ["hingewise"]
+
+
+@click.group(cls=OneLineErrors, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(__version__, prog_name="hingewise")
+def hingewise() -> None:
+    r"""Check whether the folds beside a fault are transected by their cleavage.
+
+    \b
+    Example:
+      hingewise check readings.csv
+    """
+
+
+for _command in (check, replay, simulate):
+    hingewise.add_command(_command)

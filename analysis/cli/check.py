@@ -1,0 +1,170 @@
+"""hingewise check: a readable verdict per fold."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import click
+import numpy as np
+
+from analysis.cli.common import (
+    axes_by_feature,
+    chosen_folds,
+    files_argument,
+    fold_options,
+    print_json,
+    read_files,
+    settings_options,
+    strict_option,
+    sums_of_table,
+)
+from analysis.fold.check import check_fold
+from analysis.fold.outliers import find_outliers
+from analysis.fold.settings import CheckSettings
+from analysis.fold.words import degrees, figure_line, headline, more, turned
+from analysis.orient.features import Feature
+from analysis.stats.sums import FEATURES
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+    from analysis.files.table import ReadingTable
+    from analysis.fold.outliers import Outlier
+    from analysis.fold.records import AxisEstimate, FoldCheck
+    from analysis.orient.attitudes import Line
+
+_OUTLIERS_NAMED = 5
+_WIDTH = 14
+
+
+@click.command()
+@files_argument
+@click.option("--json", "as_json", is_flag=True, help="Print one JSON array, an object per fold.")
+@fold_options
+@settings_options
+@strict_option
+def check(
+    files: tuple[Path, ...],
+    fold: str | None,
+    outcrop: str | None,
+    margin_deg: float,
+    confidence: float,
+    *,
+    as_json: bool,
+    strict: bool,
+) -> None:
+    r"""Give a verdict for every fold in FILE...
+
+    \b
+    Example:
+      hingewise check monday.csv tuesday.csv --margin 4
+    """
+    settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
+    table = read_files(files, strict=strict)
+    checks = [check_table(part, settings, name) for name, part in chosen_folds(table, fold, outcrop)]
+    if as_json:
+        print_json([one.to_json() for one in checks])
+        return
+    if not checks:
+        click.echo("No readings stand in these files.")
+    click.echo("\n\n".join(text_of(one) for one in checks))
+
+
+def check_table(table: ReadingTable, settings: CheckSettings, fold: str) -> FoldCheck:
+    """Check the readings of one fold, and say what its outliers do to the verdict."""
+    sums = sums_of_table(table)
+    whole = check_fold(sums, settings, fold=fold)
+    outliers = find_outliers(axes_by_feature(table))
+    if not outliers:
+        return whole
+    rows = _rows_of(table, outliers)
+    without = check_fold(
+        sums_of_table(table.take(np.setdiff1d(np.arange(len(table)), rows))), settings, fold=fold
+    )
+    return whole.changed(warnings=(*whole.warnings, _outlier_sentence(table, outliers, rows, without)))
+
+
+def _rows_of(table: ReadingTable, outliers: tuple[Outlier, ...]) -> list[int]:
+    places = [np.flatnonzero(table.feature == code) for code in range(len(FEATURES))]
+    return [int(places[FEATURES.index(outlier.feature)][outlier.place]) for outlier in outliers]
+
+
+def _outlier_sentence(
+    table: ReadingTable, outliers: tuple[Outlier, ...], rows: list[int], without: FoldCheck
+) -> str:
+    named = []
+    for outlier, row in list(zip(outliers, rows, strict=True))[:_OUTLIERS_NAMED]:
+        file, line = table.place(row)
+        where = f"in {file}, line {line}" if file else f"at outcrop {table.outcrop[row] or '(unnamed)'}"
+        named.append(f"{outlier.feature} {where} ({degrees(outlier.off_deg)} off the fit)")
+    rest = len(outliers) - len(named)
+    text = "; ".join(named) + (f"; and {rest} more" if rest else "")
+    word = "Reading" if len(outliers) == 1 else "Readings"
+    return (
+        f"{word} far off: {text}. Kept all the same; without: {headline(without)} ({figure_line(without)})."
+    )
+
+
+def text_of(check: FoldCheck) -> str:
+    """Write a check as readable lines."""
+    lines = [check.fold or "(unnamed fold)", f"  {headline(check)}", f"  {figure_line(check)}", ""]
+    counts = check.readings
+    read = ", ".join(f"{counts.of(feature)} {feature}" for feature in Feature)
+    lines.append(
+        _row("Readings", f"{read}, at {counts.outcrops} outcrop{'' if counts.outcrops == 1 else 's'}")
+    )
+    if check.hinge is not None:
+        lines.append(_row("Hinge", f"{_line(check.hinge)}, from {check.hinge.source}"))
+    if check.cleavage is not None:
+        plane = check.cleavage.plane
+        lines.append(
+            _row("Cleavage", f"{plane.strike_deg:03.0f}/{plane.dip_deg:02.0f}{_ellipse(check.cleavage)}")
+        )
+    if check.intersection is not None:
+        mean = check.intersection
+        lines.append(
+            _row("Intersection", f"{_line(mean.axis)}, {mean.measured} measured, {mean.computed} computed")
+        )
+    if check.limbs is not None:
+        limbs = "; ".join(
+            f"{limb.plane.strike_deg:03.0f}/{limb.plane.dip_deg:02.0f} ({limb.count})"
+            for limb in check.limbs.both
+        )
+        lines.append(_row("Limbs", f"{limbs}; interlimb angle {degrees(check.limbs.interlimb_deg)}"))
+    lines += [
+        _row("L01 on limb", f"{one.limb.removeprefix('limb ')}: {_limb_line(one.computed)} computed"
+             + (f", {_limb_line(one.measured)} measured ({one.measured_count})" if one.measured else ""))
+        for one in check.limb_lines
+    ]  # fmt: skip
+    signed = check.sense != "unsigned"
+    if len(check.estimates) > 1:
+        both = "; ".join(
+            f"{e.source} {turned(e.delta_deg, signed=signed)} ± {degrees(e.se_deg)}" for e in check.estimates
+        )
+        lines.append(_row("Side by side", both))
+    lines += [_row("Because" if k == 0 else "", sentence) for k, sentence in enumerate(check.because)]
+    if check.more_readings is not None:
+        m = check.more_readings
+        lines.append(_row("Forecast", f"{more(m)}; likely between {m.low} and {m.high} in all"))
+    if check.next_reading is not None:
+        lines.append(_row("Read next", f"{check.next_reading.feature}, {check.next_reading.where}"))
+    lines += [_row("Mind" if k == 0 else "", warning) for k, warning in enumerate(check.warnings)]
+    return "\n".join(lines)
+
+
+def _row(name: str, text: str) -> str:
+    return f"  {name:<{_WIDTH}}{text}"
+
+
+def _line(axis: AxisEstimate) -> str:
+    return f"{axis.line.trend_deg:03.0f}/{axis.line.plunge_deg:02.0f}{_ellipse(axis)}"
+
+
+def _limb_line(line: Line) -> str:
+    return f"{line.trend_deg:03.0f}/{line.plunge_deg:02.0f}"
+
+
+def _ellipse(axis: AxisEstimate) -> str:
+    if axis.ellipse is None:
+        return ""
+    return f" (±{degrees(axis.ellipse.major_deg)} by ±{degrees(axis.ellipse.minor_deg)})"

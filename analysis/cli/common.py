@@ -1,0 +1,154 @@
+"""What the commands share: one-line errors, progress, options, and the way from files to running sums."""
+
+from __future__ import annotations
+
+import json
+import sys
+from contextlib import contextmanager
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+import numpy as np
+
+from analysis.errors import HingewiseError, SettingError
+from analysis.stats.sums import FEATURES, RunningSums
+
+if TYPE_CHECKING:
+    from collections.abc import Callable, Iterator
+
+    from analysis.files.table import ReadingTable
+    from analysis.orient.features import Feature
+
+_FAULTS_SHOWN = 20
+_SHOW_PROGRESS_FROM_BYTES = 2**22
+
+AnyCommand = TypeVar("AnyCommand", bound="Callable[..., Any]")
+
+
+class OneLineErrors(click.Group):
+    """A group of commands whose errors, ours and the files', are one line and exit code 2."""
+
+    def invoke(self, ctx: click.Context) -> Any:  # noqa: ANN401 - as click has it
+        """Run a command; a HingewiseError becomes an error of the command line."""
+        try:
+            return super().invoke(ctx)
+        except HingewiseError as error:
+            raise _OneLine(str(error)) from error
+
+
+class _OneLine(click.ClickException):
+    exit_code = 2
+
+    def show(self, file: Any = None) -> None:  # noqa: ANN401 - as click has it
+        text = " ".join(self.format_message().split())
+        click.echo(f"hingewise: {text}", file=file or sys.stderr)
+
+
+files_argument = click.argument(
+    "files", metavar="FILE...", nargs=-1, required=True, type=click.Path(path_type=Path)
+)
+strict_option = click.option(
+    "--strict", is_flag=True, help="Refuse a file with a bad row, instead of leaving it out."
+)
+
+
+def settings_options(command: AnyCommand) -> AnyCommand:
+    """Add --margin and --confidence."""
+    command = click.option(
+        "--margin",
+        "margin_deg",
+        metavar="DEG",
+        type=float,
+        default=5.0,
+        show_default=True,
+        help="M: a smaller transection counts as axial planar.",
+    )(command)
+    return click.option(
+        "--confidence",
+        metavar="SHARE",
+        type=float,
+        default=0.95,
+        show_default=True,
+        help="Of the intervals, over all looks together.",
+    )(command)
+
+
+def fold_options(command: AnyCommand) -> AnyCommand:
+    """Add --fold and --outcrop."""
+    command = click.option("--fold", metavar="NAME", help="Only this fold.")(command)
+    return click.option("--outcrop", metavar="NAME", help="Only this outcrop.")(command)
+
+
+@contextmanager
+def progress(label: str) -> Iterator[Callable[[float], None]]:
+    """Show on a terminal how far a share from 0 to 1 has come; silent elsewhere."""
+    steps = 1000
+    with click.progressbar(length=steps, label=label, file=sys.stderr) as bar:
+        yield lambda share: bar.update(round(share * steps) - bar.pos)
+
+
+def read_files(files: tuple[Path, ...], *, strict: bool) -> ReadingTable:
+    """Read files into a table; rows that are left out are named on standard error."""
+    from analysis.files.csvfile import read_table  # noqa: PLC0415 - pandas is loaded only when files are read
+
+    if sum(path.stat().st_size for path in files if path.is_file()) >= _SHOW_PROGRESS_FROM_BYTES:
+        with progress("reading") as show:
+            table = read_table(*files, strict=strict, progress=show)
+    else:
+        table = read_table(*files, strict=strict)
+    for fault in table.faults[:_FAULTS_SHOWN]:
+        click.echo(f"left out: {fault}", err=True)
+    if table.faulty_rows:
+        rows = "1 row was" if table.faulty_rows == 1 else f"{table.faulty_rows} rows were"
+        click.echo(f"{rows} left out; the others are used", err=True)
+    for conflict in table.conflicts[:_FAULTS_SHOWN]:
+        click.echo(f"conflict: {conflict}", err=True)
+    return table
+
+
+def chosen_folds(
+    table: ReadingTable, fold: str | None, outcrop: str | None
+) -> Iterator[tuple[str, ReadingTable]]:
+    """Give the standing readings fold by fold; SettingError where a name is not there."""
+    folds = table.folds()
+    if fold is not None and fold not in folds:
+        raise SettingError(
+            f"there is no fold {fold!r}",
+            where="--fold",
+            expected=f"one of: {', '.join(map(repr, folds)) or 'none'}",
+        )
+    found = False
+    for name in folds if fold is None else (fold,):
+        part = table.of_fold(name)
+        if outcrop is not None:
+            names = part.outcrop
+            keep = np.array([text == outcrop for text in names.names], dtype=bool)[names.codes]
+            part = part.take(keep)
+        if len(part) or not folds:
+            found = True
+            yield name, part
+    if outcrop is not None and not found:
+        raise SettingError(
+            f"there is no outcrop {outcrop!r}", where="--outcrop", expected="an outcrop of the file"
+        )
+
+
+def sums_of_table(table: ReadingTable) -> RunningSums:
+    """Running sums of all rows of a table, which are taken to be of one fold."""
+    sums = RunningSums()
+    outcrop = table.outcrop
+    used, codes = np.unique(outcrop.codes, return_inverse=True)
+    sums.extend(table.feature, codes, [outcrop.names[code] for code in used], table.vectors)
+    return sums
+
+
+def axes_by_feature(table: ReadingTable) -> dict[Feature, np.ndarray[Any, np.dtype[np.float64]]]:
+    """Axes (n, 3) of a table by feature."""
+    codes = table.feature
+    return {feature: table.vectors[codes == code] for code, feature in enumerate(FEATURES)}
+
+
+def print_json(value: object, *, indent: int | None = 1) -> None:
+    """Print one JSON value."""
+    click.echo(json.dumps(value, indent=indent, ensure_ascii=False, allow_nan=False))

@@ -1,0 +1,43 @@
+"""The demo without a window: verdicts on the invented folds, and pictures of each."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import click
+
+from analysis.cli.check import check_table, text_of
+from analysis.cli.common import axes_by_feature
+from analysis.cli.replay import checks_in_order
+from analysis.demo import demo_readings
+from analysis.files.csvfile import write_readings
+from analysis.files.table import ReadingTable
+from analysis.fold.settings import CheckSettings
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+
+def show_demo(output: Path) -> None:
+    """Print the verdict on each demo fold; write the CSV, and net and funnel of each as PNG and SVG."""
+    from analysis.report.funnel import draw_funnel, history_of  # noqa: PLC0415 - matplotlib is loaded only here
+    from analysis.report.net import draw_net  # noqa: PLC0415
+    from analysis.report.palette import save  # noqa: PLC0415
+
+    output.mkdir(parents=True, exist_ok=True)
+    table = ReadingTable.from_readings(demo_readings())
+    write_readings(output / "mossgarth.csv", table)
+    settings = CheckSettings()
+    for fold in table.folds():
+        part = table.of_fold(fold)
+        check = check_table(part, settings, fold)
+        click.echo(f"\n{text_of(check)}")
+        history = history_of(checks_in_order(part, settings, fold, forecast=False))
+        name = fold.lower().replace(" ", "-")
+        for kind, figure in (
+            ("net", draw_net(check, axes_by_feature(part))),
+            ("funnel", draw_funnel(history, check)),
+        ):
+            for ending in ("png", "svg"):
+                save(figure, output / f"{name}-{kind}.{ending}")
+    click.echo(f"\nPictures and readings are in {output}")

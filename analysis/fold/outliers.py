@@ -1,0 +1,119 @@
+"""Readings far off the fit: named, never dropped.
+
+The fit is repeated without the readings named so far, and scatter is measured by the median, so that a few bad
+readings cannot hide themselves by pulling the fit or by widening the scatter.
+"""
+
+from __future__ import annotations
+
+import math
+from statistics import NormalDist
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+
+from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge
+from analysis.orient.features import Feature
+from analysis.orient.vectors import axis_angle_deg
+from analysis.stats.moments import WIDTH, moments
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    import numpy.typing as npt
+
+    from analysis.orient.vectors import Floats
+
+_FEWEST: Final = 8
+_ROUNDS: Final = 5
+_LEAST_SCATTER_DEG: Final = 1.0  # readings are rounded to whole degrees
+_FALSE_ALARMS: Final = 0.05  # per feature and fold, over all its readings
+_AT_LEAST: Final = 3.5  # scatters of a plane or line off its plane, however few readings there are
+_CHUNK: Final = 65_536
+
+
+class Outlier(NamedTuple):
+    """One reading far off: its feature, its place among that feature's readings, and how far, degrees."""
+
+    feature: Feature
+    place: int
+    off_deg: float
+    allowed_deg: float
+
+
+def find_outliers(readings: Mapping[Feature, Floats]) -> tuple[Outlier, ...]:
+    """Name the readings that lie further off the fit than scatter explains.
+
+    `readings` are the axes (n, 3) by feature. Bedding is measured from the girdle, cleavage poles from their
+    mean, intersection lines from the cleavage plane and hinge lines from the hinge. The limit is the distance
+    that one fold in twenty would pass once by chance, for normal scatter.
+    """
+    kept = {feature: np.ones(len(readings.get(feature, ())), dtype=bool) for feature in Feature}
+    result: list[Outlier] = []
+    for _ in range(_ROUNDS):
+        found = _far_off(readings, kept)
+        after = {feature: np.ones_like(mask) for feature, mask in kept.items()}
+        for outlier in found:
+            after[outlier.feature][outlier.place] = False
+        result = found
+        if all(np.array_equal(after[feature], kept[feature]) for feature in Feature):
+            break
+        kept = after
+    return tuple(sorted(result, key=lambda o: (tuple(Feature).index(o.feature), o.place)))
+
+
+def _far_off(
+    readings: Mapping[Feature, Floats], kept: Mapping[Feature, npt.NDArray[np.bool_]]
+) -> list[Outlier]:
+    rows = {
+        feature: _summed(readings[feature][kept[feature]]) if feature in readings else _none()
+        for feature in Feature
+    }
+    bedding, hinge_lines = rows[Feature.BEDDING], rows[Feature.HINGE]
+    planes, lines = rows[Feature.CLEAVAGE], rows[Feature.INTERSECTION]
+    result: list[Outlier] = []
+    if bedding[0, 0] >= 2.0 or hinge_lines[0, 0] >= 1.0:
+        hinge = fit_hinge(bedding, hinge_lines).vector
+        result += _beyond(readings, kept, Feature.BEDDING, hinge, off_axis=False)
+        result += _beyond(readings, kept, Feature.HINGE, hinge, off_axis=True)
+    if planes[0, 0] >= 1.0 or lines[0, 0] >= 1.0:
+        fit = fit_cleavage(planes, lines) if planes[0, 0] >= 1.0 else fit_cleavage_to_lines(lines)
+        result += _beyond(readings, kept, Feature.CLEAVAGE, fit.vector, off_axis=True)
+        result += _beyond(readings, kept, Feature.INTERSECTION, fit.vector, off_axis=False)
+    return result
+
+
+def _beyond(
+    readings: Mapping[Feature, Floats],
+    kept: Mapping[Feature, npt.NDArray[np.bool_]],
+    feature: Feature,
+    axis: Floats,
+    *,
+    off_axis: bool,
+) -> list[Outlier]:
+    axes = readings.get(feature, np.zeros((0, 3)))
+    n = len(axes)
+    if n < _FEWEST:
+        return []
+    angle = axis_angle_deg(axes, axis)
+    off = angle if off_axis else 90.0 - angle
+    # The median of a normal residual is 0.6745 and that of the length of two of them 1.1774 standard deviations.
+    scatter = max(float(np.median(off[kept[feature]])) / (1.1774 if off_axis else 0.6745), _LEAST_SCATTER_DEG)
+    by_chance = (
+        math.sqrt(2.0 * math.log(n / _FALSE_ALARMS))
+        if off_axis
+        else -NormalDist().inv_cdf(0.5 * _FALSE_ALARMS / n)
+    )
+    allowed = max(by_chance, _AT_LEAST) * scatter
+    return [Outlier(feature, int(k), float(off[k]), allowed) for k in np.flatnonzero(off > allowed)]
+
+
+def _summed(axes: Floats) -> Floats:
+    total = _none()
+    for start in range(0, len(axes), _CHUNK):
+        total += moments(axes[start : start + _CHUNK]).sum(axis=0)
+    return total
+
+
+def _none() -> Floats:
+    return np.zeros((1, WIDTH))
