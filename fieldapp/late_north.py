@@ -5,6 +5,8 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
+from analysis.errors import ReadingError
+from analysis.orient.entrychecks import EntryCheck
 from analysis.orient.north import Reference, correct_once
 
 if TYPE_CHECKING:
@@ -37,11 +39,17 @@ def corrected_late(reading: Reading, correction: NorthCorrection, revised_at: da
             changes[name] = correct_once(
                 azimuth, stored_correction_deg=reading.correction_deg, correction=correction
             )
-    return replace(
-        reading,
-        revision=reading.revision + 1,
-        revised_at=revised_at,
-        correction_deg=correction.correction_deg,
-        correction_model=correction.model,
-        **changes,
-    )
+    changes |= {
+        "revision": reading.revision + 1,
+        "revised_at": revised_at,
+        "correction_deg": correction.correction_deg,
+        "correction_model": correction.model,
+    }
+    try:
+        return replace(reading, **changes)
+    except ReadingError as error:
+        # The side was tapped against the compass's north; from true north it may just miss. It stays as seen.
+        if error.where != "dip_quadrant":
+            raise
+        kept = (*reading.warnings_kept, str(EntryCheck.QUADRANT_MISFIT))
+        return replace(reading, **changes, warnings_kept=kept)

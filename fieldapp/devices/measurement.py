@@ -17,9 +17,9 @@ if TYPE_CHECKING:
     from analysis.orient.attitude import AxisMean, FieldCheck
     from analysis.orient.north import NorthCorrection
 
-FIELD_WARNING = "magnetic_field"
-FIELD_UNCHECKED = "field_not_checked"
-WEAK_FIELD = "weak_field"
+FIELD_WARNING = "magnetic-field"
+FIELD_UNCHECKED = "field-not-checked"
+WEAK_FIELD = "weak-field"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -40,6 +40,17 @@ def test_a_reading_is_corrected_as_a_new_revision(reading, name):
     assert not waits_for_north(later)
 
 
+def test_a_quadrant_that_just_misses_true_north_is_kept_with_a_warning():
+    """A side that fitted the compass by a hair and not true north stays as tapped, and the record says so."""
+    far_west = north_correction("magnetic", Position(60.0, -140.0), DAY)
+    assert far_west.correction_deg > 10.0
+    reading = bed(strike_deg=45.0, dip_quadrant="E")  # dips 135 from magnetic, 45° from east: it just fits
+    later = corrected_late(reading, far_west, LATER)
+    assert later.dip_quadrant == "E"
+    assert later.warnings_kept == ("quadrant-misfit",)
+    assert corrected_late(bed(dip_quadrant="E"), far_west, LATER).warnings_kept == ()
+
+
 def test_a_second_correction_is_refused():
     """A reading corrected already, also by zero, is never corrected again."""
     correction = north_correction("magnetic", PLACE, DAY)
