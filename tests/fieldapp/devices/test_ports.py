@@ -3,6 +3,7 @@
 import ast
 import dataclasses
 import inspect
+import os
 import subprocess
 import sys
 import typing
@@ -97,8 +98,29 @@ print(sorted(found))
     assert done.stdout.splitlines() == ["no sensors", "[]"]
 
 
+@pytest.mark.parametrize("mark", [{"ANDROID_ARGUMENT": "x"}, {"KIVY_BUILD": "ios"}])
+def test_a_field_device_loads_plyer_at_use_only(mark):
+    """On Android and iOS choosing the ports loads plyer's side of them, but not plyer, and not the replay side."""
+    script = """
+import sys
+from fieldapp.devices.choose import choose_devices
+choose_devices(object())
+found = {'plyer', 'kivy', 'jnius', 'fieldapp.devices.replay', 'fieldapp.devices.plyer_side'} & set(sys.modules)
+print(sorted(found))
+"""
+    done = subprocess.run(
+        [sys.executable, "-c", script],
+        capture_output=True,
+        text=True,
+        check=True,
+        cwd=ROOT.parent,
+        env={**os.environ, **mark},
+    )
+    assert done.stdout.strip() == "['fieldapp.devices.plyer_side']"
+
+
 def test_a_field_device_gets_plyers_sides(field_build):
-    """On Android and iOS the sides are the device's own, and making them loads no plyer yet."""
+    """On Android and iOS the sides are the device's own."""
     assert is_field_build()
     assert system_name() == field_build
     window = type("Window", (), {"allow_screensaver": True})()
