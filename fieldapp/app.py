@@ -59,8 +59,8 @@ def now_utc() -> datetime:
 class HingewiseApp(App):
     """The running app. Leaves read `theme`, `form` and `page`."""
 
-    theme = ObjectProperty(LIGHT)
-    form = ObjectProperty(Form(800.0, 1280.0))
+    theme = ObjectProperty(LIGHT, rebind=True)
+    form = ObjectProperty(Form(800.0, 1280.0), rebind=True)
 
     def __init__(
         self,

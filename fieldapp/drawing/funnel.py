@@ -24,9 +24,9 @@ MOST_DOTS = 24  # more readings than this and the line alone is clearer
 
 def limits_deg(scene: FunnelScene) -> tuple[float, float]:
     """The lowest and highest angle shown: the band and zero always, the interval as it is now, early ones cut."""
-    known = np.isfinite(scene.low_deg) & np.isfinite(scene.high_deg)
+    known = scene.known
     low, high = -1.4 * scene.margin_deg, 1.4 * scene.margin_deg
-    drawn = scene.delta_deg[np.isfinite(scene.delta_deg)]
+    drawn = scene.delta_deg[known]
     if len(drawn):
         late = drawn[len(drawn) // 3 :]
         low, high = min(low, float(late.min()) - 2.0), max(high, float(late.max()) + 2.0)
@@ -74,20 +74,22 @@ class NarrowingFunnel(Widget):
         self.words_boxes = {}
         self._measure(scene)
         self._draw_axes(group)
-        if len(scene.counts):
+        if scene.known.any():
             self._draw_history(group)
             self._draw_forecast(group)
         self._draw_words(group)
 
     def _measure(self, scene: FunnelScene) -> None:
         low, high = limits_deg(scene)
-        counts = scene.counts
+        counts = scene.counts[scene.known]
         first = float(counts[0]) if len(counts) else 0.0
         last = float(counts[-1]) if len(counts) else 20.0
+        # What was read keeps a third of the picture, however far ahead the forecast reaches.
+        farthest = first + 3.0 * max(last - first, 6.0)
         if len(scene.forecast_counts):
-            last = max(last, float(scene.forecast_counts[-1]))
+            last = max(last, min(float(scene.forecast_counts[-1]), farthest))
         if scene.settles_at is not None:
-            last = max(last, scene.settles_at)
+            last = max(last, min(scene.settles_at, farthest))
         last = max(last + 0.04 * (last - first), first + 4.0)
         self._span = (first, last, low, high)
         line = sp(self.words_sp) * 1.35
@@ -132,15 +134,14 @@ class NarrowingFunnel(Widget):
 
     def _draw_history(self, group: InstructionGroup) -> None:
         scene, theme = self.scene, self.theme
-        known = np.isfinite(scene.low_deg) & np.isfinite(scene.high_deg)
+        known = scene.known
         if known.any():
             upper = self.to_page(scene.counts[known], scene.high_deg[known])
             lower = self.to_page(scene.counts[known], scene.low_deg[known])
             add_mesh(group, theme.shade, [strokes.between(upper, lower)])
             add_mesh(group, theme.accent, [strokes.line(upper, dp(2)), strokes.line(lower, dp(2))])
-        drawn = np.isfinite(scene.delta_deg)
-        if drawn.any():
-            middle = self.to_page(scene.counts[drawn], scene.delta_deg[drawn])
+            # The angle is never shown without its interval.
+            middle = self.to_page(scene.counts[known], scene.delta_deg[known])
             add_mesh(group, theme.ink, [strokes.line(middle, dp(2))])
             dots = middle if len(middle) <= MOST_DOTS else middle[-1:]
             size = round(dp(8))
@@ -151,13 +152,14 @@ class NarrowingFunnel(Widget):
 
     def _draw_forecast(self, group: InstructionGroup) -> None:
         scene, theme = self.scene, self.theme
+        _, last, low, high = self._span
+        shown = scene.forecast_counts <= last
         parts = [
-            strokes.dashed(self.to_page(scene.forecast_counts, side), dp(2), dp(2.5), dp(5))
+            strokes.dashed(self.to_page(scene.forecast_counts[shown], side[shown]), dp(2), dp(2.5), dp(5))
             for side in (scene.forecast_low_deg, scene.forecast_high_deg)
             if len(side)
         ]
-        if scene.settles_at is not None:
-            _, _, low, high = self._span
+        if scene.settles_at is not None and scene.settles_at <= last:
             upright = self.to_page(np.array([scene.settles_at] * 2), np.array([low, high]))
             parts.append(strokes.dashed(upright, dp(2), dp(7), dp(5)))
         add_mesh(group, theme.accent, parts)
@@ -179,14 +181,15 @@ class NarrowingFunnel(Widget):
         band = PAINTS.words(f"within ±{scene.margin_deg:g}°", size)
         first, last, low, high = self._span
         low_edge = self.to_page(np.array([first]), np.array([-scene.margin_deg]))[0][1]
-        if len(scene.counts):
+        if scene.known.any():
             put("band", f"within ±{scene.margin_deg:g}°", theme.ink, right - band.width - dp(5), low_edge + dp(1))
-        if not len(scene.counts):
+        if not scene.known.any():
             self._put_wrapped(group, scene.why_empty)
-        if scene.settles_at is not None:
-            text = "settles about here"
+        elif scene.settles_at is not None:
+            near = scene.settles_at <= last
+            text = "settles about here" if near else f"settles near {scene.settles_at:.0f} →"
             words = PAINTS.words(text, size, bold=True)
-            x = self.to_page(np.array([scene.settles_at]), np.zeros(1))[0][0] - words.width - dp(6)
+            x = self.to_page(np.array([min(scene.settles_at, last)]), np.zeros(1))[0][0] - words.width - dp(6)
             x = max(x, left + dp(4))
             red, green, blue, _ = theme.card
             y = top - words.height - dp(2)

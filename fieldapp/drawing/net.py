@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from fieldapp.look.theme import Rgba, Theme
 
 REACH_DP = 26.0  # a thumb in a glove need not hit a dot exactly
+WIDE_DEG = 45.0
 MOST_POINTS = 16_000  # one Point instruction holds 2**14
 HINGE, INTERSECTION, CLEAVAGE = "hinge", "mean intersection", "mean cleavage"
 
@@ -185,7 +186,10 @@ class EqualAreaNet(Widget):
             if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
                 red, green, blue, _ = colour
                 add_mesh(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
-            add_mesh(group, colour, [strokes.line(piece, dp(2)) for piece in pieces])
+            # An ellipse that says little more than "somewhere here" stays in the background.
+            red, green, blue, _ = colour
+            strength = 1.0 if e.major_deg < WIDE_DEG else 0.4
+            add_mesh(group, (red, green, blue, strength), [strokes.line(piece, dp(2)) for piece in pieces])
         size = round(dp(self.marker_dp * (1.15 if shape == "disc" else 1.6)))
         ground = PAINTS.marker("disc", size + round(dp(4)))
         half = ground.width / 2.0
@@ -211,8 +215,9 @@ class EqualAreaNet(Widget):
         named = [(HINGE, scene.hinge, theme.ink), (INTERSECTION, scene.intersection, theme.accent)]
         bounds = (self.x, self.y, self.right, self.middle[1] + self.radius)
         marks = np.concatenate([self._places, *(place[np.newaxis, :] for place in self._means.values())])
+        # Words keep off the rim and the great circle too.
+        marks = np.concatenate([marks, strokes.circle(self.middle, self.radius, 180)])
         if scene.cleavage is not None:
-            # Words keep off the great circle too.
             marks = np.concatenate([marks, self._curve(sphere.great_circle(scene.cleavage.vector, 61))])
         for name, mean, colour in named:
             if mean is None or not mean.label:

@@ -134,9 +134,15 @@ class PlanSketch(Widget):
             if plane.dip_deg < FLAT_DEG:
                 continue
             words = PAINTS.words(f"{plane.dip_deg:.0f}", sp(self.words_sp))
-            at = place + azimuth_ray(plane.strike_deg + 90.0) * (half * 0.5 + dp(4) + words.width / 2)
-            name = f"dip {outcrop.name} {plane.feature.value}"
-            self._put(group, name, words, colour, at[0] - words.width / 2, at[1] - words.height / 2)
+            box = placing.place_beside(
+                place + azimuth_ray(plane.strike_deg + 90.0) * half * 0.5,
+                words.size,
+                gap=dp(4),
+                taken=list(self.words_boxes.values()),
+                points=place + np.concatenate([azimuth_ray(p.strike_deg) * np.linspace(-half, half, 9)[:, np.newaxis] for p in outcrop.planes]),
+                bounds=(self.x, self.y, self.right, self.top),
+            )
+            self._put(group, f"dip {outcrop.name} {plane.feature.value}", words, colour, box[0], box[1])
 
     def _name_outcrop(self, group: InstructionGroup, outcrop: PlanOutcrop) -> None:
         words = PAINTS.words(outcrop.name, sp(self.words_sp), bold=outcrop.here)

@@ -91,6 +91,11 @@ class FunnelScene:
     settles_at: float | None = None
     why_empty: str = "The funnel starts when bedding and cleavage have been read."
 
+    @property
+    def known(self) -> npt.NDArray[np.bool_]:
+        """Where there was an angle with its interval, (n,)."""
+        return np.isfinite(self.delta_deg) & np.isfinite(self.low_deg) & np.isfinite(self.high_deg)
+
 
 @dataclass(frozen=True, slots=True)
 class PlanPlane:

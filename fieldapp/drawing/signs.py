@@ -18,17 +18,20 @@ class Sign(Widget):
 
     sign = StringProperty("")
     colour = ColorProperty((0, 0, 0, 1))
+    most_px = NumericProperty(10_000.0)
 
     def __init__(self, **kwargs: object) -> None:
         super().__init__(**kwargs)
         self._redraw = Clock.create_trigger(self.redraw, -1)
-        self.bind(pos=self._redraw, size=self._redraw, sign=self._redraw, colour=self._redraw)
+        self.bind(
+            pos=self._redraw, size=self._redraw, sign=self._redraw, colour=self._redraw, most_px=self._redraw
+        )
         self._redraw()
 
     def redraw(self, *_: object) -> None:
         """Draw the sign anew."""
         self.canvas.clear()
-        half = min(self.width, self.height) / 2.0
+        half = min(self.width, self.height, self.most_px) / 2.0
         if self.sign not in ICONS or half < 2.0:
             return
         middle = np.array([self.center_x, self.center_y])

@@ -110,7 +110,7 @@ class CheckLeaf(FloatLayout):
             chosen = page.named.reading_id if page.named is not None else ""
             self.net.scene = scenes.net_scene(page.check, page.net, page.place.outcrop, chosen)
         if change & (Change.CHECK | Change.FORECAST | Change.SETTINGS):
-            self.funnel.scene = scenes.funnel_scene(page.funnel)
+            self.funnel.scene = scenes.funnel_scene(page.funnel, next(iter(page.check.because), ""))
             self._show_words()
         if change & (Change.PLAN | Change.PLACE):
             self.plan.scene = scenes.plan_scene(page.plan)
@@ -185,6 +185,9 @@ class CheckLeaf(FloatLayout):
         self.pictures.size_hint_y, self.legend.size_hint_y = None, None
         self.pictures.height = dp(max(self.form.line_dp(self.form.small_sp) + 14, 40))
         self.legend.height = dp(self.form.line_dp(self.form.small_sp) + 6)
+        if self.form.low:
+            box.add_widget(self.net if self.picture == "net" else self.plan)
+            return
         box.add_widget(self.pictures)
         box.add_widget(self.net if self.picture == "net" else self.plan)
         if self.picture == "net":
@@ -197,12 +200,13 @@ class CheckLeaf(FloatLayout):
             return
         self.clear_widgets()
         for widget in (
-            self._picture_box, self.funnel, self.hinge, self.cleavage, self.intersection, self.next_reading,
+            self._picture_box, self.funnel, self.pictures, self.legend, self.hinge, self.cleavage, self.intersection, self.next_reading,
             self.limbs, self.because,
         ):  # fmt: skip
             if widget.parent is not None:
                 widget.parent.remove_widget(widget)
             widget.size_hint = (1, 1)
+        self._picture_box.clear_widgets()
         self.net.words_sp = self.funnel.words_sp = self.plan.words_sp = form.small_sp
         self.net.marker_dp = 12.0 if form.large else 10.0
         self._picture_box.spacing = dp(form.gap_dp)
@@ -258,15 +262,14 @@ class CheckLeaf(FloatLayout):
         side = BoxLayout(orientation="vertical", spacing=gap)
         self.funnel.size_hint_y = None
         self.funnel.height = dp(max(form.log_height_dp * 0.42, 150))
+        if form.low:
+            side.add_widget(self.pictures)
         side.add_widget(self.funnel)
         for widget in self._words(form):
             side.add_widget(widget)
         if form.low:
-            means = BoxLayout(orientation="vertical", spacing=gap, size_hint_y=None)
-            figures = self._means(form)
-            means.height = figures.height
-            means.add_widget(figures)
-            side.add_widget(means, index=len(side.children) - 1)
+            side.add_widget(self._means(form), index=len(side.children) - 1)
+            side.add_widget(self.legend)
         scroll = self._scrolled(side)
         scroll.size_hint_x = 0.42
         top.add_widget(scroll)

@@ -286,9 +286,10 @@ class LogLeaf(BoxLayout):
                 )
                 key.bind(on_press=lambda _key, feature=tab.feature: self.page.choose_feature(feature))
                 self.feature_row.add_widget(key)
-            narrow = self.form is not None and self.form.narrow
-            key.text = SHORT_LABELS.get(tab.label, tab.label) if narrow else tab.label
-            key.counts = f"{tab.in_fold}" if narrow or tab.in_fold == tab.here else f"{tab.in_fold}, {tab.here} here"
+            short = self.form is not None and self.form.row_dp < 480.0
+            key.text = SHORT_LABELS.get(tab.label, tab.label) if short else tab.label
+            few = self.form is None or self.form.row_dp < 640.0
+            key.counts = f"{tab.in_fold}" if few or tab.in_fold == tab.here else f"{tab.in_fold}, {tab.here} here"
             key.chosen = tab.chosen
 
     def _show_recent(self) -> None:
@@ -305,7 +306,7 @@ class LogLeaf(BoxLayout):
             _fill_chip(chip, line, mending)
 
     def _recent_columns(self) -> int:
-        return max(int(self.form.log_width_dp / 165.0), 2)
+        return max(int(self.form.log_width_dp / (195.0 if self.form.large else 170.0)), 2)
 
     def _recent_rows(self) -> int:
         spare = self._spare_dp()

@@ -9,7 +9,7 @@ from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
-from kivy.uix.label import Label  # noqa: F401 - named in the .kv file
+from kivy.uix.widget import Widget
 
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.parts import Sheet
@@ -18,9 +18,8 @@ from fieldapp.states import Change, MessageKind
 if TYPE_CHECKING:
     from collections.abc import Callable
 
-    from kivy.uix.widget import Widget
-
     from fieldapp.look.form import Form
+    from fieldapp.states import Message
 
 LEAVES = ("Log", "Check", "Fault", "Hand over")
 
@@ -48,6 +47,10 @@ class Notice(BoxLayout):
     loud = BooleanProperty(False)
 
 
+class Divider(Widget):
+    """A hairline between two leaves."""
+
+
 class DemoMark(BoxLayout):
     """Says that these readings are invented, as long as they are on the screen."""
 
@@ -67,6 +70,7 @@ class Outline(FloatLayout):
         self.demo_mark = DemoMark()
         self.notice = Notice()
         self.trouble = ""
+        self._said: object = None
         for name in LEAVES:
             key = self.leaf_keys[name] = LeafKey(text=name)
             key.bind(on_release=lambda _key, name=name: self.show(name))
@@ -95,6 +99,8 @@ class Outline(FloatLayout):
     def show(self, name: str) -> None:
         """Show a leaf."""
         self.shown = name
+        # What was said before this leaf was shown was said on another one.
+        self._said = self.page.message
         self._lay_out()
 
     def on_form(self, _outline: Outline, form: Form) -> None:
@@ -116,6 +122,8 @@ class Outline(FloatLayout):
             if len(names) > 1 and number == 0:
                 share = form.log_width_dp / form.width_dp
                 leaf.size_hint_x = share / (1.0 - share)
+            if number:
+                body.add_widget(Divider())
             body.add_widget(leaf)
         for name, key in self.leaf_keys.items():
             key.chosen = name in names
@@ -184,7 +192,7 @@ class Outline(FloatLayout):
         notice = self.notice
         if self.trouble:
             notice.text, notice.offer, notice.loud = self.trouble, "", True
-        elif message is not None and "Log" not in self.names_shown:
+        elif message is not None and "Log" not in self.names_shown and self._is_news(message):
             notice.text, notice.offer = message.text, str(message.offer)
             notice.loud = message.kind is not MessageKind.NOTE
         else:
@@ -194,6 +202,9 @@ class Outline(FloatLayout):
             column.add_widget(notice, index=1)
         elif not notice.text and notice.parent is not None:
             column.remove_widget(notice)
+
+    def _is_news(self, message: Message) -> bool:
+        return message.kind is not MessageKind.NOTE or message is not self._said
 
     # Sheets
 

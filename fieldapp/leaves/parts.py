@@ -25,11 +25,11 @@ LEAST_SHARE = 0.5
 class Words(Label):
     """A label whose words always fit: type is made smaller where the widget is too small for it.
 
-    `fit` is "box" (words wrap in the widget), "grow" (words wrap and `texture_size` says how high they are) or
-    "line" (words stand on one line).
+    `fit` is "box" (words wrap in the widget), "grow" (words wrap and `texture_size` says how high they are),
+    "one" (one line, aligned) or "line" (one line, in the middle).
     """
 
-    fit = OptionProperty("box", options=("box", "grow", "line"))
+    fit = OptionProperty("box", options=("box", "grow", "one", "line"))
     shown_share = NumericProperty(1.0)
 
     def on_size(self, *_: object) -> None:
@@ -63,6 +63,8 @@ class Words(Label):
         if self.markup:
             return True
         room = self.text_size[0] - self.padding[0] - self.padding[2]
+        if self.fit == "one":
+            return self._label.get_extents(self.text)[0] <= room + 1
         return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
 
 
@@ -84,7 +86,7 @@ class SignKey(ButtonBehavior, BoxLayout):
     sign_dp = NumericProperty(22.0)
 
 
-class Line(TextInput):
+class TextLine(TextInput):
     """One line of text, typed with the system's keyboard."""
 
 

@@ -75,10 +75,9 @@ def _or_nan(value: float | None) -> float:
     return np.nan if value is None else value
 
 
-def funnel_scene(funnel: FunnelState) -> FunnelScene:
-    """What the funnel draws; it begins with the first reading that gave an angle."""
-    first = next((i for i, point in enumerate(funnel.points) if point.delta_deg is not None), len(funnel.points))
-    points = funnel.points[first:]
+def funnel_scene(funnel: FunnelState, why_empty: str = "") -> FunnelScene:
+    """What the funnel draws; `why_empty` stands there until there is an interval."""
+    points = funnel.points
     ahead = funnel.ahead
     return FunnelScene(
         counts=np.array([point.readings for point in points], dtype=float),
@@ -90,6 +89,7 @@ def funnel_scene(funnel: FunnelState) -> FunnelScene:
         forecast_low_deg=np.array([point.low_deg for point in ahead]),
         forecast_high_deg=np.array([point.high_deg for point in ahead]),
         settles_at=None if funnel.settles_at is None else float(funnel.settles_at),
+        why_empty=why_empty or "The funnel starts when bedding and cleavage have been read.",
     )
 
 

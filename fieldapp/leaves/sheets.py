@@ -101,7 +101,7 @@ class SettingsSheet(Sheet):
                 values = (*values, (now, f"{now:g}"))  # set on the desk, to a value without a key
             choice = Choice(choices=values, chosen=now)
             choice.bind(on_choice=lambda choice, value, attribute=attribute: self._change(choice, attribute, value))
-            setting.ids.keys.add_widget(choice)
+            setting.ids.key_row.add_widget(choice)
             self.choices[attribute] = choice
             self.ids.content.add_widget(setting)
         self.ids.content.add_widget(SheetKeys())

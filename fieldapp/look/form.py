@@ -10,6 +10,7 @@ from dataclasses import dataclass
 
 GOOD_KEY_DP = 88.0  # 14 mm
 FAIR_KEY_DP = 70.0  # below this the direction grid gives its room to the keys and takes turns with them
+LEAST_WITH_RECENT_DP = 46.0  # where keys would be lower than this, the row of past readings gives its room
 LEAST_SPLIT_DP = (960.0, 560.0)  # Log and Check side by side from here on
 LOW_DP = 480.0  # lower than this and wider than high: a phone on its side
 LINE = 1.26  # height of a line of type, as a share of its size
@@ -50,12 +51,20 @@ class Form:
     @property
     def shows_recent(self) -> bool:
         """Whether the last readings have a row of their own; their list is one touch away in any case."""
-        return not self.low and not (self.split and not self.large)
+        if self.low or (self.split and not self.large):
+            return False
+        left = self._column_dp(recent=True) - self.readout_alone_dp - 3.0 * self.gap_dp
+        return left / 4.0 >= LEAST_WITH_RECENT_DP
 
     @property
     def narrow(self) -> bool:
-        """Whether words on keys must be short."""
-        return self.log_width_dp < 480.0
+        """Whether the rows of the Log leaf are too narrow for all their words on one line."""
+        return self.row_dp < 480.0
+
+    @property
+    def row_dp(self) -> float:
+        """Width of the rows of the Log leaf; a phone on its side sets them in half its width."""
+        return self.log_width_dp / 2.0 if self.low else self.log_width_dp
 
     # Type, sp
 
@@ -99,7 +108,13 @@ class Form:
     def strip_dp(self) -> float:
         """The verdict strip: two lines of sentence on a phone, one on a tablet, and the figures."""
         lines = 1.0 if self.large or self.low or self.split else 2.0
-        return self.line_dp(self.headline_sp, lines) + self.line_dp(self.body_sp if self.large else self.small_sp) + 14.0
+        figures_sp = self.body_sp if self.large else self.small_sp
+        return self.line_dp(self.headline_sp, lines) + self.line_dp(figures_sp, self.figure_lines) + 15.0
+
+    @property
+    def figure_lines(self) -> float:
+        """Lines for the figures below the sentence: two on a phone whose type was made larger."""
+        return 2.0 if self.font_scale > 1.15 and self.width_dp < 400.0 else 1.0
 
     @property
     def tabs_dp(self) -> float:
@@ -137,11 +152,10 @@ class Form:
         """Height of the Log leaf."""
         return self.height_dp - self.strip_dp - self.tabs_dp
 
-    @property
-    def _column_dp(self) -> float:
+    def _column_dp(self, *, recent: bool) -> float:
         """Height left for readout, direction grid and keys, one above the other."""
         fixed = self.place_dp + self.feature_dp + self.check_dp
-        if self.shows_recent:
+        if recent:
             fixed += self.recent_dp + self.gap_dp
         return self.log_height_dp - fixed - 6.0 * self.gap_dp
 
@@ -154,7 +168,7 @@ class Form:
     def figure_sp(self) -> float:
         """The digits as typed."""
         if self.large:
-            return 64.0 if not self.split else 42.0
+            return 42.0 if self.split else 86.0 if self.log_width_dp > 700.0 else 60.0
         return 34.0 if self.low else 42.0 if self.height_dp < 700.0 else 48.0
 
     @property
@@ -165,7 +179,7 @@ class Form:
     @property
     def grid_dp(self) -> float:
         """Height of the direction grid where it stands beside the digits."""
-        return (3.0 * 72.0 + 12.0) if self.large else 3.0 * 46.0 + 8.0
+        return (3.0 * 76.0 + 8.0) if self.large else 3.0 * 46.0 + 8.0
 
     @property
     def readout_dp(self) -> float:
@@ -173,14 +187,14 @@ class Form:
         return max(self.readout_alone_dp, self.grid_dp) if self.grid_beside else self.readout_alone_dp
 
     def _key_dp(self, readout_dp: float) -> float:
-        return (self._column_dp - max(readout_dp, self.readout_alone_dp) - 3.0 * self.gap_dp) / 4.0
+        return (self._column_dp(recent=self.shows_recent) - max(readout_dp, self.readout_alone_dp) - 3.0 * self.gap_dp) / 4.0
 
     @property
     def key_dp(self) -> float:
-        """Height of a key; what is left over beyond 110 dp goes to the list of past readings."""
+        """Height of a key; what is left over beyond 116 dp goes to the list of past readings."""
         if self.low:
             return max((self.log_height_dp - 5.0 * self.gap_dp) / 4.0, 36.0)
-        return max(min(self._key_dp(self.readout_dp), 110.0), 36.0)
+        return max(min(self._key_dp(self.readout_dp), 116.0), 36.0)
 
     @property
     def pad_dp(self) -> float:

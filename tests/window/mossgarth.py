@@ -18,7 +18,7 @@ START = datetime(2026, 5, 4, 9, 0, tzinfo=UTC)
 
 
 class TestClock:
-    """A clock that goes on by 20 seconds each time it is asked."""
+    """A clock that goes on by a twentieth of a second each time it is asked."""
 
     __test__ = False
 
@@ -26,7 +26,7 @@ class TestClock:
         self.now = START
 
     def __call__(self) -> datetime:
-        self.now += timedelta(seconds=20)
+        self.now += timedelta(seconds=0.05)
         return self.now
 
 
@@ -76,23 +76,23 @@ def fold(
     return readings
 
 
-def type_into(page, readings) -> None:
-    """Enter readings through the presenter, as the keys do."""
+def type_into(page, readings, clock) -> None:
+    """Enter readings through the presenter, as the keys do, with a fresh position for each."""
     from fieldapp.states import PositionFix
 
-    for number, typed in enumerate(readings):
+    for typed in readings:
         if page.place.outcrop != typed.outcrop:
             page.choose_outcrop(typed.outcrop)
-            place = int(typed.outcrop.split("-")[1])
-            page.position_changed(
-                PositionFix(
-                    latitude_deg=54.20 + 0.0009 * place,
-                    longitude_deg=-2.60 + 0.0011 * (place % 3),
-                    accuracy_m=4.0,
-                    source="test",
-                    at=START + timedelta(seconds=20 * number),
-                )
+        place = int(typed.outcrop.split("-")[1])
+        page.position_changed(
+            PositionFix(
+                latitude_deg=54.20 + 0.0004 * (place - 14) + 0.0003 * (place % 2),
+                longitude_deg=-2.60 + 0.0011 * (place % 3),
+                accuracy_m=4.0,
+                source="test",
+                at=clock.now,
             )
+        )
         page.choose_feature(typed.feature)
         for digit in typed.azimuth + typed.inclination:
             page.digit(int(digit))
