@@ -45,7 +45,7 @@ class Transection(NamedTuple):
     steady_hinge_variance, steady_cleavage_variance
         (...), the larger of those and of the parts if the scatter is even: what a watched interval needs.
     outcrop_variance
-        (...), of the whole from the scatter between outcrops; nan with fewer than two.
+        (...), of the whole from the scatter between outcrops; nan with fewer than two of them.
     outcrops
         (...), outcrops with readings of either axis.
     fixed_freedom, steady_freedom
@@ -70,24 +70,34 @@ class Transection(NamedTuple):
         return self.hinge_variance + self.cleavage_variance
 
     @property
+    def reading_variance(self) -> Floats:
+        """Variance, (...), for watching, if readings are independent of their outcrops."""
+        return self.steady_hinge_variance + self.steady_cleavage_variance
+
+    @property
     def by_outcrop(self) -> npt.NDArray[np.bool_]:
         """Whether, (...), outcrops scatter more than their readings: they then give the variance."""
         with np.errstate(invalid="ignore"):
-            return (self.outcrops >= FEWEST_CLUSTERS) & (
-                self.outcrop_variance > self.steady_hinge_variance + self.steady_cleavage_variance
-            )
+            return (self.outcrops >= FEWEST_CLUSTERS) & (self.outcrop_variance > self.reading_variance)
 
     @property
     def variance(self) -> Floats:
         """Variance, (...), for watching: the larger of reading level and outcrop level."""
-        return np.where(
-            self.by_outcrop, self.outcrop_variance, self.steady_hinge_variance + self.steady_cleavage_variance
-        )
+        return np.where(self.by_outcrop, self.outcrop_variance, self.reading_variance)
 
     @property
     def freedom(self) -> Floats:
-        """Degrees of freedom, (...), of `variance`."""
-        return np.where(self.by_outcrop, self.outcrops - 1.0, self.steady_freedom)
+        """Degrees of freedom, (...), of `variance` (Satterthwaite).
+
+        Where outcrops give the variance, what they add to that of the readings is a second component, known
+        as well as the outcrops are many. Measured: with six outcrops whose hinge varies by 3 degrees intervals
+        miss in 4.5% of folds at a scatter of 3 degrees and in 4.0% at 6; with four outcrops in 7.2 and 4.0%.
+        """
+        extra = np.where(self.by_outcrop, self.outcrop_variance - self.reading_variance, 0.0)
+        mixed = _satterthwaite(
+            self.reading_variance, self.steady_freedom, extra, outcrop_freedom(self.outcrops)
+        )
+        return np.where(self.by_outcrop, mixed, self.steady_freedom)
 
 
 def fit_hinge(bedding: Floats, hinge_lines: Floats) -> AxisFit:
@@ -180,11 +190,7 @@ def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> 
 
 
 def outcrop_freedom(outcrops: Floats) -> Floats:
-    """What the squared pulls of so many outcrops, (...), are divided by, times their number: two less than them.
-
-    Two fitted axes take up one each. Measured: with one less, intervals over six outcrops miss in 6.2% of
-    folds, with two less in 5.0% (3 degrees of hinge variation, scatter 3 degrees).
-    """
+    """Degrees of freedom, (...), of the scatter between so many outcrops: the two fitted axes take up one each."""
     return np.maximum(outcrops - 2.0, 0.5)
 
 

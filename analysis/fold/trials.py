@@ -10,7 +10,6 @@ from typing import TYPE_CHECKING, Literal, NamedTuple
 
 import numpy as np
 
-from analysis.fold.settings import CheckSettings
 from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge, transection
 from analysis.fold.watch import (
     GIRDLE_SCATTER_AT_MOST_DEG,
@@ -26,17 +25,20 @@ from analysis.stats.synthetic import FoldDesign, draw
 if TYPE_CHECKING:
     import numpy.typing as npt
 
+    from analysis.fold.settings import CheckSettings
     from analysis.orient.vectors import Floats
 
 Mode = Literal["planes", "lines", "planes and lines"]
-_NORMAL_975 = 1.959963984540054
+_NORMAL_975, _NORMAL_95 = 1.959963984540054, 1.6448536269514722
 
 
 class Trials(NamedTuple):
     """What each look at each fold showed; shape (folds, looks) unless said otherwise.
 
-    `readings` (looks,) are the readings taken by then, over both streams. `naive_*` are what one ordinary
-    interval, not made for watching, would have said at that look.
+    `readings` (looks,) are the readings taken by then, over all streams. `unclear` and `off_girdle` say why a
+    look was kept back: the hinge not clear, bedding off its girdle. `naive_*` are what ordinary intervals, not
+    made for watching, would have said at that look: transected where the 95% one leaves out 0, else axial
+    planar where the 90% one (two one-sided tests at 5%) lies within the margin.
     """
 
     readings: npt.NDArray[np.int64]
@@ -46,12 +48,16 @@ class Trials(NamedTuple):
     looked: npt.NDArray[np.bool_]
     transected: npt.NDArray[np.bool_]
     axial_planar: npt.NDArray[np.bool_]
+    unclear: npt.NDArray[np.bool_]
+    off_girdle: npt.NDArray[np.bool_]
     naive_low_deg: Floats
     naive_high_deg: Floats
+    naive_transected: npt.NDArray[np.bool_]
+    naive_axial_planar: npt.NDArray[np.bool_]
 
     @property
     def settled_after(self) -> Floats:
-        """Readings over both streams until the first verdict, (folds,); infinite where none came."""
+        """Readings over all streams until the first verdict, (folds,); infinite where none came."""
         settled = self.transected | self.axial_planar
         return np.where(settled.any(axis=1), self.readings[settled.argmax(axis=1)], np.inf)
 
@@ -90,19 +96,28 @@ def run_trials(
     information = information_since_first_look(
         found, stream_progress(at[:, 0], 0), stream_progress(n_planes, n_lines)
     )
-    scattered = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
-    seen = watch(found, information, hinge_is_clear(hinge) & ~scattered, settings)
-    naive = student_multiplier(_NORMAL_975, found.fixed_freedom) * np.sqrt(found.fixed_variance)
+    off_girdle = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
+    clear = hinge_is_clear(hinge)
+    seen = watch(found, information, clear & ~off_girdle, settings)
+    naive, naive_narrow = (
+        student_multiplier(z, found.fixed_freedom) * np.sqrt(found.fixed_variance)
+        for z in (_NORMAL_975, _NORMAL_95)
+    )
+    size = np.abs(found.delta_deg)
     return Trials(
-        readings=at.sum(axis=1),
+        readings=at.sum(axis=1) + (at[:, 1] if mode == "planes and lines" else 0),
         delta_deg=found.delta_deg,
         low_deg=seen.low_deg,
         high_deg=seen.high_deg,
         looked=seen.looked,
         transected=seen.transected,
         axial_planar=seen.axial_planar,
+        unclear=~clear,
+        off_girdle=off_girdle,
         naive_low_deg=found.delta_deg - naive,
         naive_high_deg=found.delta_deg + naive,
+        naive_transected=size > naive,
+        naive_axial_planar=(size <= naive) & (size + naive_narrow < settings.margin_deg),
     )
 
 
