@@ -11,13 +11,10 @@ import json
 import re
 import subprocess
 import sys
-import tomllib
 from pathlib import Path
 from typing import NamedTuple
 
 import pytest
-from packaging.requirements import Requirement
-from packaging.utils import canonicalize_name
 
 ROOT = Path(__file__).resolve().parent.parent
 
@@ -67,7 +64,6 @@ CLOCK_CALLS = {"now", "utcnow", "today", "uuid1", "uuid6", "uuid7", "getctime", 
 # Written in pieces, or this file would find itself.
 MACHINE_PATH = re.compile(r"(?<![\w.~$}-])/(?:work|root|home|tmp|Users)/|[A-Z]:\\\\?Users")
 REGISTRY_HOST = re.compile("|".join(f"{host}\\.org" for host in ("pypi", "pythonhosted", "debian", "npmjs")))
-PIN = re.compile(r"[a-z0-9]+(?:-[a-z0-9]+)*==[A-Za-z0-9.+!]+")
 
 
 class Import(NamedTuple):
@@ -141,7 +137,10 @@ def imports_in(source: str, package: str) -> list[Import]:
             and isinstance(node.args[0], ast.Constant)
         ):
             found.append(Import(str(node.args[0].value), node.lineno, inside))
-        deeper = inside or isinstance(node, ast.FunctionDef | ast.AsyncFunctionDef | ast.Lambda)
+        # What stands under "if TYPE_CHECKING" is loaded no more than what stands in a function not called.
+        type_checking = isinstance(node, ast.If) and getattr(node.test, "id", "") == "TYPE_CHECKING"
+        function = isinstance(node, ast.FunctionDef | ast.AsyncFunctionDef | ast.Lambda)
+        deeper = inside or function or type_checking
         for child in ast.iter_child_nodes(node):
             visit(child, inside=deeper)
 
@@ -197,12 +196,6 @@ def clock_faults(source: str) -> list[str]:
 def address_faults(text: str) -> list[str]:
     """Paths of somebody's machine and hosts of package registries in a text."""
     return [found.group() for pattern in (MACHINE_PATH, REGISTRY_HOST) for found in pattern.finditer(text)]
-
-
-def constraint_faults(text: str) -> list[str]:
-    """Lines of a constraints file that are no plain pin of one release."""
-    lines = [line.strip() for line in text.splitlines()]
-    return [line for line in lines if line and not line.startswith("#") and not PIN.fullmatch(line)]
 
 
 def load_fresh(*names: str) -> tuple[list[str], set[str]]:
@@ -342,6 +335,7 @@ def test_an_import_into_the_wrong_room_is_found(room, line):
         ("fold", "from analysis.stats.sums import RunningSums"),
         ("files", "def f():\n    import geopandas"),
         ("report", "def f():\n    from matplotlib import figure"),
+        ("report", "if TYPE_CHECKING:\n    from matplotlib.figure import Figure"),
         ("cli", "import click\nfrom analysis.report import net"),
     ],
 )
@@ -418,39 +412,3 @@ def test_the_presenter_and_the_notebook_load_no_kivy():
 def test_something_heavy_is_found():
     """The checker of what is loaded sees a library that a module brings along."""
     assert "pandas" in load_fresh("pandas.tseries.offsets")[1] & TOO_HEAVY
-
-
-# Dependencies ----
-
-
-def test_constraints_are_plain_pins():
-    """constraints.txt pins exact releases and carries no address, no option and no hash."""
-    text = (ROOT / "buildspec" / "constraints.txt").read_text(encoding="utf-8")
-    assert len(text.splitlines()) > 20
-    assert constraint_faults(text) == []
-
-
-@pytest.mark.parametrize(
-    "line",
-    ["numpy>=2", "a @ https://example.com/a.whl", "-i https://example.com", "numpy==2.0 --hash=sha256:0"],
-)
-def test_a_line_that_is_no_pin_is_found(line):
-    """The checker of constraints finds what is no exact release."""
-    assert constraint_faults(f"numpy==2.0.1\n{line}\n") == [line]
-
-
-def test_constraints_cover_and_satisfy_every_dependency():
-    """What pyproject.toml asks for, extras and build tools too, is pinned to a release that it accepts."""
-    table = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))
-    project = table["project"]
-    asked = [*table["build-system"]["requires"], *project["dependencies"]]
-    for extra in project["optional-dependencies"].values():
-        asked += extra
-    lines = (ROOT / "buildspec" / "constraints.txt").read_text(encoding="utf-8").splitlines()
-    pins = dict(line.split("==") for line in lines if "==" in line)
-    faults = []
-    for requirement in map(Requirement, asked):
-        version = pins.get(canonicalize_name(requirement.name))
-        if version is None or not requirement.specifier.contains(version, prereleases=True):
-            faults.append(f"{requirement} is pinned to {version}")
-    assert faults == []
