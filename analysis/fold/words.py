@@ -31,6 +31,13 @@ def turned(value: float, *, signed: bool = True) -> str:
     return f"{degrees(value)} {'clockwise' if value > 0 else 'anticlockwise'}"
 
 
+def against_hinge(value: float, *, signed: bool = True) -> str:
+    """Write where the cleavage lies: 'cleavage 7° clockwise of the hinge'."""
+    if degrees(value) == "0°":
+        return "cleavage along the hinge"
+    return f"cleavage {turned(value, signed=signed)} {'of' if signed else 'off'} the hinge"
+
+
 def between(low: float, high: float, *, signed: bool = True) -> str:
     """Write an interval of a transection: 'between 2° and 12° clockwise'."""
     if not signed:
@@ -45,7 +52,7 @@ def headline(check: FoldCheck) -> str:
     """Give the first line of the verdict strip: the state as a sentence."""
     delta = check.transection_deg
     if check.verdict is Verdict.TRANSECTED and delta is not None:
-        return f"Transected: cleavage {turned(delta, signed=check.sense != 'unsigned')} of the hinge"
+        return f"Transected: {against_hinge(delta, signed=check.sense != 'unsigned')}"
     if check.verdict is Verdict.AXIAL_PLANAR:
         return f"Axial planar within {degrees(check.settings.margin_deg)}"
     if check.verdict is Verdict.CANNOT_BE_SETTLED:
@@ -61,7 +68,7 @@ def figure_line(check: FoldCheck) -> str:
         return check.because[0] if check.because else "No readings yet."
     signed = check.sense != "unsigned"
     return (
-        f"cleavage {turned(check.transection_deg, signed=signed)} of the hinge, "
+        f"{against_hinge(check.transection_deg, signed=signed)}, "
         f"{between(*check.interval_deg, signed=signed)}"
     )
 
