@@ -1,0 +1,353 @@
+"""The plan sketch, for print: outcrops in metres, north up, with a scale bar and no base map.
+
+Symbols after the FGDC Digital Cartographic Standard for Geologic Map Symbolization (FGDC-STD-013-2006), sections
+6 (bedding), 7 (cleavage) and 9 (lineation), from memory; the sketch explains each symbol it uses. A bar lies
+along strike and a tick points down dip, with the dip beside it. A vertical plane has its tick on both sides, a
+horizontal one is a ring with a cross, the tick of an overturned bed is bent round like a hook, and cleavage
+carries an open box in place of the tick.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Final
+
+import numpy as np
+
+from analysis.errors import SettingError
+from analysis.orient.features import Feature
+from analysis.orient.forms import Notation
+from analysis.orient.notation import write
+from analysis.report.palette import palette_named
+from analysis.report.placing import Box, Placer
+from analysis.report.sheet import POINTS_PER_INCH, Sheet, house_style
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from matplotlib.figure import Figure
+
+    from analysis.orient.attitudes import Line, Plane
+    from analysis.orient.vectors import Floats
+    from analysis.report.palette import Palette
+
+_SIDE_IN: Final = 7.0
+_KEY_IN: Final = 1.75
+_EDGE_IN: Final = 0.3
+_HEAD_IN: Final = 0.5
+_HALF_IN: Final = 0.17  # half a strike bar
+_MARGIN_IN: Final = 0.7  # kept free round the outermost outcrops
+_LEAST_SPAN_M: Final = 20.0
+_FLAT_DEG, _UPRIGHT_DEG = 0.5, 89.5  # drawn as horizontal, as vertical
+_WORDS_PT: Final = 9.5
+_STROKE_PT: Final = 1.5
+_BAR_STEPS: Final = (1.0, 2.0, 5.0)
+
+
+@dataclass(frozen=True, slots=True)
+class PlanPlane:
+    """A plane drawn on the plan: bedding or cleavage, most often the mean of an outcrop."""
+
+    feature: Feature
+    plane: Plane
+    overturned: bool = False
+
+    def __post_init__(self) -> None:
+        if not self.feature.is_plane:
+            raise SettingError(f"{self.feature} is no plane", where="plan", expected="bedding or cleavage")
+
+    @property
+    def kind(self) -> str:
+        """The words that the key explains its symbol with."""
+        dip = self.plane.dip_deg
+        if dip < _FLAT_DEG:
+            return f"{self.feature}, horizontal"
+        if dip > _UPRIGHT_DEG:
+            return f"{self.feature}, vertical"
+        if self.overturned and self.feature is Feature.BEDDING:
+            return "bedding, overturned"
+        return f"{self.feature}, with dip"
+
+
+@dataclass(frozen=True, slots=True)
+class PlanOutcrop:
+    """An outcrop on the plan: its name, metres east and north of any one point, and its planes."""
+
+    name: str
+    east_m: float
+    north_m: float
+    planes: tuple[PlanPlane, ...] = ()
+
+    def __post_init__(self) -> None:
+        if not (math.isfinite(self.east_m) and math.isfinite(self.north_m)):
+            raise SettingError(
+                f"outcrop {self.name} has no place", where="plan", expected="metres east and north of one point"
+            )
+
+
+def draw_plan(
+    outcrops: Sequence[PlanOutcrop], *, hinge: Line | None = None, fold: str = "", theme: str = "light"
+) -> Figure:
+    """Draw outcrops on a plan, to one scale both ways.
+
+    Parameters
+    ----------
+    outcrops
+        In the order in which their symbols are placed; may be empty.
+    hinge
+        The fold's hinge, drawn as an arrow along its trend.
+    fold
+        Name of the fold, set at the head.
+    theme
+        "light" or "dark"; raises SettingError for any other.
+
+    """
+    with house_style():
+        drawing = _Plan(outcrops, hinge, fold, palette_named(theme))
+        drawing.draw()
+        return drawing.sheet.figure
+
+
+def azimuth_ray(azimuth_deg: float) -> Floats:
+    """Unit vector, shape (2,), x east and y north, of an azimuth."""
+    turn = math.radians(azimuth_deg)
+    return np.array([math.sin(turn), math.cos(turn)])
+
+
+def plane_symbol(item: PlanPlane) -> list[Floats]:
+    """Lines, each (n, 2), x east and y north, of a plane's symbol; half its strike bar has length 1."""
+    plane = item.plane
+    along, down = azimuth_ray(plane.strike_deg), azimuth_ray(plane.dip_direction_deg)
+    frame = np.stack([along, down])
+    bar = np.array([[-1.0, 0.0], [1.0, 0.0]])
+    sides = (1.0, -1.0) if plane.dip_deg > _UPRIGHT_DEG else (1.0,)
+    if plane.dip_deg < _FLAT_DEG:
+        turn = np.linspace(0.0, 2.0 * np.pi, 49)
+        ring = 0.6 * np.stack([np.cos(turn), np.sin(turn)], axis=-1)
+        return [ring, bar, bar[:, ::-1]] if item.feature is Feature.BEDDING else [_square(), bar, bar[:, ::-1]]
+    if item.feature is Feature.CLEAVAGE:
+        marks = [np.array([[-0.34, 0.0], [-0.34, 0.5 * k], [0.34, 0.5 * k], [0.34, 0.0]]) for k in sides]
+    elif item.kind == "bedding, overturned":
+        # The tick comes from behind the bar, bent round: what was the top of the bed now faces down.
+        turn = np.linspace(np.pi, 0.0, 25)
+        bend = np.stack([0.26 * np.cos(turn), -0.36 * np.sin(turn)], axis=-1)
+        marks = [np.concatenate([bend, [[0.26, 0.55]]])]
+    else:
+        marks = [np.array([[0.0, -0.5 if len(sides) == 2 else 0.0], [0.0, 0.5]])]
+    return [line @ frame for line in (bar, *marks)]
+
+
+def _square() -> Floats:
+    return 0.5 * np.array([[-1.0, -1.0], [1.0, -1.0], [1.0, 1.0], [-1.0, 1.0], [-1.0, -1.0]])
+
+
+def bar_length_m(most_m: float) -> float:
+    """The longest of 1, 2, 5, 10, 20, … metres that is no longer than this."""
+    power = 10.0 ** math.floor(math.log10(most_m))
+    return max((step * power for step in _BAR_STEPS if step * power <= most_m * (1.0 + 1e-9)), default=power)
+
+
+class _Plan:
+    """One drawing under way; all lengths are inches, the placer's pixels."""
+
+    def __init__(self, outcrops: Sequence[PlanOutcrop], hinge: Line | None, fold: str, palette: Palette) -> None:
+        self.outcrops, self.hinge, self.fold, self.palette = outcrops, hinge, fold, palette
+        self.sheet = Sheet(_SIDE_IN + _KEY_IN, _SIDE_IN, palette)
+        self.dpi = float(self.sheet.figure.dpi)
+        self.right, self.top = _SIDE_IN, _SIDE_IN - _HEAD_IN
+
+    def draw(self) -> None:
+        from matplotlib.patches import Rectangle
+
+        if self.fold:
+            self.sheet.words(_EDGE_IN, self.top + 0.17, self.fold, 13.0, bold=True, gid="fold")
+        wide, high = self.right - _EDGE_IN, self.top - _EDGE_IN
+        self.sheet.axes.add_patch(
+            Rectangle(
+                (_EDGE_IN, _EDGE_IN), wide, high, facecolor=self.palette.card, edgecolor=self.palette.rule, zorder=0.5
+            )
+        )
+        edges = (_EDGE_IN + 0.06, _EDGE_IN + 0.06, self.right - 0.06, self.top - 0.06)
+        self.placer = Placer(Box(*(edge * self.dpi for edge in edges)))
+        self._draw_north()
+        self._draw_key()
+        if not self.outcrops:
+            middle = (_EDGE_IN + self.right) / 2.0
+            self.sheet.words(middle, _SIDE_IN / 2.0, "No outcrop has a position yet.", 11.0, align="center", gid="empty")
+            return
+        self._set_scale()
+        self._draw_scale()
+        for place in self.places.values():
+            self.placer.block(place * self.dpi, 4.0, 30.0)
+        symbols = [(outcrop, item) for outcrop in self.outcrops for item in outcrop.planes]
+        for outcrop, item in sorted(symbols, key=lambda pair: pair[1].feature is Feature.CLEAVAGE):
+            self._draw_symbol(outcrop, item)
+        for outcrop in self.outcrops:
+            self._name(outcrop)
+
+    def _set_scale(self) -> None:
+        metres = np.array([(outcrop.east_m, outcrop.north_m) for outcrop in self.outcrops])
+        low, high = metres.min(axis=0), metres.max(axis=0)
+        frame = np.array([self.right - _EDGE_IN, self.top - _EDGE_IN])
+        # The foot of the frame holds the scale bar.
+        room = frame - 2.0 * _MARGIN_IN - [0.0, 0.35]
+        self.inches_per_m = float(np.min(room / np.maximum(high - low, _LEAST_SPAN_M)))
+        middle = np.array([_EDGE_IN, _EDGE_IN + 0.35]) + (frame - [0.0, 0.35]) / 2.0
+        self.places = {
+            number: middle + (metres[number] - (low + high) / 2.0) * self.inches_per_m
+            for number in range(len(self.outcrops))
+        }
+        self.place_of = {id(outcrop): self.places[number] for number, outcrop in enumerate(self.outcrops)}
+
+    def _take(self, left: float, bottom: float, right: float, top: float) -> None:
+        self.placer.take(Box(left * self.dpi, bottom * self.dpi, right * self.dpi, top * self.dpi))
+
+    # -- symbols -------------------------------------------------------------------------------------------
+
+    def _draw_symbol(self, outcrop: PlanOutcrop, item: PlanPlane) -> None:
+        """Draw a symbol on its outcrop, or beside it with a line to it where that place is taken."""
+        place = self.place_of[id(outcrop)]
+        lines = [line * _HALF_IN for line in plane_symbol(item)]
+        number, offset = self._dip_words(item)
+        box = self._extent(lines, number, offset)
+        size = (box[2] - box[0], box[3] - box[1])
+        shift = np.array([box[0] + box[2], box[1] + box[3]]) / 2.0
+        # The symbol's own middle, not that of its box, belongs on the outcrop.
+        found = self.placer.place(
+            (place + shift) * self.dpi, (size[0] * self.dpi, size[1] * self.dpi), gap=5.0, on_anchor=True
+        )
+        middle = np.array(found.box.centre) / self.dpi - shift
+        gid = f"symbol-{outcrop.name}-{item.feature}"
+        away = float(np.linalg.norm(middle - place))
+        if away > 0.02:
+            self.sheet.strokes([np.array([place, middle])], 0.7, self.palette.muted, f"{gid}-leader")
+            self._draw_dot(place)
+        self._draw_lines(item, middle, lines, gid)
+        if number:
+            self._draw_number(number, middle + offset, f"dip-{outcrop.name}-{item.feature}")
+
+    def _draw_lines(self, item: PlanPlane, middle: Floats, lines: list[Floats], gid: str) -> None:
+        colour = self.palette.colour_of(item.feature)
+        self.sheet.strokes([middle + line for line in lines], _STROKE_PT, colour, gid)
+
+    def _draw_number(self, text: str, middle: Floats, gid: str) -> None:
+        made = self.sheet.words(0.0, 0.0, text, 9.0, align="center", gid=gid)
+        made.set_verticalalignment("center_baseline")
+        made.set_position((float(middle[0]), float(middle[1])))
+
+    def _dip_words(self, item: PlanPlane) -> tuple[str, Floats]:
+        """The dip as written, and where its middle stands from the symbol's."""
+        if not _FLAT_DEG <= item.plane.dip_deg <= _UPRIGHT_DEG:
+            return "", np.zeros(2)
+        text = f"{item.plane.dip_deg:.0f}"
+        size = np.array(self.sheet.size_in(text, 9.0))
+        down = azimuth_ray(item.plane.dip_direction_deg)
+        along = azimuth_ray(item.plane.strike_deg)
+        if item.kind == "bedding, overturned":
+            down = (down * 0.55 + along * 0.26) / math.hypot(0.55, 0.26)
+        reach = 0.6 * _HALF_IN + 0.04 + float(np.abs(down) @ size) / 2.0
+        return text, down * reach
+
+    def _extent(self, lines: list[Floats], number: str, offset: Floats) -> tuple[float, float, float, float]:
+        points = np.concatenate(lines)
+        if number:
+            half = np.array(self.sheet.size_in(number, 9.0)) / 2.0
+            points = np.concatenate([points, [offset - half, offset + half]])
+        low, high = points.min(axis=0) - 0.02, points.max(axis=0) + 0.02
+        return float(low[0]), float(low[1]), float(high[0]), float(high[1])
+
+    def _draw_dot(self, place: Floats) -> None:
+        self.sheet.axes.plot(
+            *place, "o", color=self.palette.ink, markersize=4.0, markeredgecolor=self.palette.card, gid="place", zorder=3.0
+        )
+
+    def _name(self, outcrop: PlanOutcrop) -> None:
+        place = self.place_of[id(outcrop)]
+        if not outcrop.planes:
+            self._draw_dot(place)
+        made = self.sheet.words(0.0, 0.0, outcrop.name, _WORDS_PT, bold=True, align="center", gid=f"name-{outcrop.name}")
+        made.set_verticalalignment("center_baseline")
+        drawn = self.sheet.box_of(made)
+        size = (drawn.right - drawn.left, drawn.top - drawn.bottom)
+        gap = (_HALF_IN if outcrop.planes else 0.06) * self.dpi
+        found = self.placer.place(place * self.dpi, size, gap=gap)
+        x, y = (np.array(found.box.centre) - np.array(drawn.centre)) / self.dpi
+        made.set_position((float(x), float(y)))
+        if found.leader:
+            ends = np.array([found.box.nearest(*found.anchor), found.anchor]) / self.dpi
+            self.sheet.strokes([ends], 0.7, self.palette.muted, f"name-{outcrop.name}-leader")
+
+    # -- furniture -----------------------------------------------------------------------------------------
+
+    def _arrow(self, start: Floats, stop: Floats, gid: str, *, both: bool = False) -> None:
+        ray = (stop - start) / np.linalg.norm(stop - start)
+        side = np.array([ray[1], -ray[0]])
+        for tip, way in ((stop, ray), *(((start, -ray),) if both else ())):
+            head = np.array([tip, tip - 0.13 * way + 0.05 * side, tip - 0.13 * way - 0.05 * side])
+            self.sheet.axes.fill(head[:, 0], head[:, 1], color=self.palette.ink, linewidth=0.0, gid=f"{gid}-head", zorder=3.0)
+        shaft = np.array([start + 0.1 * ray if both else start, stop - 0.1 * ray])
+        self.sheet.strokes([shaft], 1.8, self.palette.ink, gid)
+
+    def _draw_north(self) -> None:
+        x = _EDGE_IN + 0.28
+        self._arrow(np.array([x, self.top - 0.72]), np.array([x, self.top - 0.15]), "north-arrow")
+        self.sheet.words(x + 0.11, self.top - 0.3, "N", 12.0, bold=True, gid="north")
+        self._take(_EDGE_IN, self.top - 0.8, x + 0.3, self.top)
+
+    def _draw_scale(self) -> None:
+        metres = bar_length_m(1.9 / self.inches_per_m)
+        length = metres * self.inches_per_m
+        left, low = _EDGE_IN + 0.2, _EDGE_IN + 0.2
+        for k, colour in enumerate((self.palette.ink, self.palette.card)):
+            part = np.array([[left + 0.5 * k * length, low], [left + 0.5 * (k + 1) * length, low]])
+            self.sheet.strokes([part], 5.0, self.palette.ink, "scale-half")
+            inner = part + [[0.015, 0.0], [-0.015, 0.0]]
+            self.sheet.strokes([inner], 5.0 - 0.03 * POINTS_PER_INCH, colour, "scale-fill")
+        self.scale_m, self.scale_in = metres, length
+        text = f"{metres:g} m" if metres < 1000.0 else f"{metres / 1000.0:g} km"
+        words = self.sheet.words(left, low + 0.1, text, _WORDS_PT, gid="scale")
+        box = self.sheet.box_of(words)
+        self._take(left, low - 0.06, max(left + length, box.right / self.dpi), low + 0.3)
+
+    def _draw_key(self) -> None:
+        """Explain every symbol used, and give the hinge, in the column beside the frame."""
+        left, y = self.right + 0.25, self.top - 0.1
+        if self.hinge is not None:
+            self.sheet.words(left, y, "Hinge, trend/plunge", 9.0, quiet=True)
+            self.sheet.words(left, y - 0.3, write(self.hinge, Notation.TREND_PLUNGE), 16.0, bold=True, gid="hinge-words")
+            self._draw_hinge(np.array([left + 0.45, y - 0.95]))
+            y -= 1.85
+        kinds = {item.kind: item for outcrop in self.outcrops for item in outcrop.planes}
+        if not kinds:
+            return
+        self.sheet.words(left, y, "Planes", 9.0, quiet=True)
+        for kind in sorted(kinds):
+            y -= 0.5
+            sample = _upright_sample(kinds[kind])
+            self._draw_lines(
+                sample,
+                np.array([left + 0.2, y + 0.05]),
+                [line * _HALF_IN for line in plane_symbol(sample)],
+                f"key {kind}",
+            )
+            feature, _, manner = kind.partition(", ")
+            self.sheet.words(left + 0.5, y + 0.06, feature, _WORDS_PT)
+            self.sheet.words(left + 0.5, y - 0.1, manner, 8.5, quiet=True)
+
+    def _draw_hinge(self, middle: Floats) -> None:
+        """An arrow along the trend; a level hinge has two heads, an upright one is a dot in a ring."""
+        assert self.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
+        if self.hinge.plunge_deg > _UPRIGHT_DEG:
+            turn = np.linspace(0.0, 2.0 * np.pi, 49)
+            ring = middle + 0.14 * np.stack([np.cos(turn), np.sin(turn)], axis=-1)
+            self.sheet.strokes([ring], 1.8, self.palette.ink, "hinge-arrow")
+            self.sheet.axes.plot(*middle, "o", color=self.palette.ink, markersize=4.5, gid="hinge-arrow-head")
+            return
+        ray = 0.4 * azimuth_ray(self.hinge.trend_deg)
+        self._arrow(middle - ray, middle + ray, "hinge-arrow", both=self.hinge.plunge_deg < _FLAT_DEG)
+
+
+def _upright_sample(item: PlanPlane) -> PlanPlane:
+    """The same kind of plane, turned so that its bar lies across the page in the key."""
+    return PlanPlane(item.feature, type(item.plane)(90.0, item.plane.dip_deg), item.overturned)
