@@ -32,7 +32,7 @@ class Room(NamedTuple):
 
     rooms: set[str]
     libraries: set[str]
-    when_used: set[str] | frozenset[str] = frozenset()  # inside functions only: importing the room loads none
+    when_used: set[str] | frozenset[str] = frozenset()  # only where importing the room does not load it
 
 
 FIELD_ROOMS = {"orient", "stats", "fold", "strain"}
@@ -49,7 +49,8 @@ ROOMS = {
         {"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio", "pyproj", "shapely", "dask", "pyarrow"}
     ),
     "report": Room(EVERY_ROOM, {"numpy", "pandas"}, {"matplotlib", "jinja2"}),
-    "cli": Room(EVERY_ROOM, {"numpy", "pandas", "click"}),
+    "demo": Room({"orient", "stats", "files"}, {"numpy"}),
+    "cli": Room(EVERY_ROOM | {"demo"}, {"numpy", "pandas", "click"}),
 }
 
 TOO_HEAVY = {"kivy", "plyer", "fieldapp", "pandas", "matplotlib", "scipy"}
@@ -71,7 +72,8 @@ class Import(NamedTuple):
 
     module: str
     line: int
-    inside_function: bool
+    deferred: bool
+    """Stands inside a function or for type checking only, so that importing the file does not load it."""
 
     @property
     def library(self) -> str:
@@ -158,14 +160,14 @@ def room_faults(room: str, imports: list[Import]) -> list[str]:
     for found in imports:
         if found.library == "analysis":
             target = [*found.module.split("."), ""][1]
-            allowed = target in {room, "errors"} | rules.rooms
+            allowed = target in {room, "errors", "__version__"} | rules.rooms
         elif found.module in NETWORK or found.library in NETWORK:
             allowed = False
         else:
             allowed = (
                 found.library in sys.stdlib_module_names
                 or found.library in rules.libraries
-                or (found.inside_function and found.library in rules.when_used)
+                or (found.deferred and found.library in rules.when_used)
             )
         if not allowed:
             faults.append(f"line {found.line}: {room or 'analysis'} may not import {found.module} here")
