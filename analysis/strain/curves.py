@@ -125,10 +125,10 @@ def _late(onset: float) -> Floats:
 def _ranges(
     sign: int, angle: float, datum: Floats | None, ellipse: Floats | None
 ) -> tuple[tuple[float, float], tuple[float, float]]:
-    """Give at least 0 to 50, and 20 to the predicted side; wider where the data need it, in fives."""
-    low, high = np.array([0.0, -6.0]), np.array([50.0, 20.0])
+    """Give at least 0 to 50, and 25 to the predicted side; wider where the data need it, in fives."""
+    low, high = np.array([0.0, -5.0]), np.array([50.0, 25.0])
     if sign < 0:
-        low[1], high[1] = -20.0, 6.0
+        low[1], high[1] = -25.0, 5.0
     places = [np.array([[angle, 0.0]])] + [each for each in (ellipse, datum) if each is not None]
     for place in places:
         points = np.clip(place.reshape(-1, 2), [-90.0, -60.0], [120.0, 60.0])

@@ -40,15 +40,18 @@ class Metric(NamedTuple):
     @classmethod
     def of(cls, covariance: Floats) -> Metric:
         """Make the metric of a covariance, (2, 2) degrees squared; raises SettingError if it is none."""
-        try:
-            root = np.linalg.cholesky(covariance + SMALLEST_SE_DEG**2 * np.eye(2))
-        except np.linalg.LinAlgError:
+        first, shared = float(covariance[0, 0]) + SMALLEST_SE_DEG**2, float(covariance[0, 1])
+        # What is left of the second variance once the first is known: Cholesky's root of two by two, by hand.
+        left = float(covariance[1, 1]) + SMALLEST_SE_DEG**2 - shared * shared / first if first > 0.0 else -1.0
+        if not left > 0.0:
             raise SettingError(
                 "the covariance of fold-fault angle and transection is none",
                 where="covariance",
                 expected="a symmetric matrix with no negative variance in any direction",
-            ) from None
-        return cls(np.linalg.inv(root), 2.0 * float(np.sum(np.log(np.diag(root)))))
+            )
+        one, two = math.sqrt(first), math.sqrt(left)
+        whitener = np.array([[1.0 / one, 0.0], [-shared / (first * two), 1.0 / two]])
+        return cls(whitener, math.log(first) + math.log(left))
 
     def misfit(self, places: Floats, datum: Floats) -> Floats:
         """Misfit, shape (...), of places (..., 2) against the datum (2,)."""

@@ -27,7 +27,7 @@ if TYPE_CHECKING:
     from analysis.strain.observed import Fault, FoldPair
 
 _SLOPE_STEP_DEG = 0.05
-_MOST_TRIES = 10
+_HALVINGS = 8  # to within one reading in a hundred
 
 
 class Separation(NamedTuple):
@@ -105,25 +105,32 @@ def readings_to_separate(
     if now.standard_errors >= needed_se(settings.confidence, pair.df):
         return None
     directions = _directions(angle_deg)
-    growth, slack = 1.0, 1.0
-    for _ in range(_MOST_TRIES):
-        needed = needed_se(settings.confidence, pair.df * growth)
-        found = _fewest((slack * now.difference_deg / needed) ** 2, directions, pair, fault, settings)
+    # The variance to come down to, were the curve straight and the degrees of freedom those of the limit; what
+    # it is in truth lies near, and is found by halving.
+    grown = max(2.0 * settings.forecast_limit / have, 1.0)
+    straight = (now.difference_deg / needed_se(settings.confidence, pair.df * grown)) ** 2
+    low, high = 0.25 * straight, 1.5 * straight
+    best = None
+    for _ in range(_HALVINGS):
+        variance = math.sqrt(low * high)
+        found = _fewest(variance, directions, pair, fault, settings)
         if found is None:
-            return None
-        after = separation(
-            angle_deg,
-            _covariance_after(
-                pair, fault, pair.hinge_readings + found.hinge, pair.cleavage_readings + found.cleavage
-            ),
-        )
-        growth = 1.0 + found.total / have
-        short = after.standard_errors / needed_se(settings.confidence, pair.df * growth)
-        # One more where rounding finds nothing to add; the curve's bend may ask for a little more than that.
-        if short >= 1.0 - 1e-3 and found.total > 0:
-            return found
-        slack *= min(short, 0.995)
-    return None
+            low = variance
+        elif _separates(found, angle_deg, pair, fault, settings):
+            best, low = found, variance
+        else:
+            high = variance
+    return best
+
+
+def _separates(
+    more: ReadingsToSeparate, angle_deg: float, pair: FoldPair, fault: Fault, settings: ExplainSettings
+) -> bool:
+    """Whether so many more readings, at the scatter seen so far, bring the separation to what is needed."""
+    hinge, cleavage = pair.hinge_readings + more.hinge, pair.cleavage_readings + more.cleavage
+    grown = (hinge + cleavage) / (pair.hinge_readings + pair.cleavage_readings)
+    after = separation(angle_deg, _covariance_after(pair, fault, hinge, cleavage))
+    return after.standard_errors >= needed_se(settings.confidence, pair.df * grown)
 
 
 def _directions(angle_deg: float) -> Floats:
