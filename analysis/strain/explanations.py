@@ -125,10 +125,10 @@ class Explanation:
         """Give the five keys of the command's output."""
         return {
             "name": self.name,
-            "gamma": self.gamma,
-            "displacement_km": self.displacement_km,
-            "predicted_transection_deg": self.predicted_transection_deg,
-            "loglik": self.loglik,
+            "gamma": _rounded(self.gamma),
+            "displacement_km": _rounded(self.displacement_km),
+            "predicted_transection_deg": _rounded(self.predicted_transection_deg),
+            "loglik": _rounded(self.loglik),
         }
 
 
@@ -207,13 +207,15 @@ class FaultCheck:
         """Give the keys of `hingewise explain --json`; every number is finite or null."""
         return {
             "fold": self.fold,
-            "fold_fault_angle_deg": self.fold_fault_angle_deg,
-            "fold_fault_se_deg": self.fold_fault_se_deg,
-            "transection_deg": self.transection_deg,
-            "se_deg": self.se_deg,
+            "fold_fault_angle_deg": _rounded(self.fold_fault_angle_deg),
+            "fold_fault_se_deg": _rounded(self.fold_fault_se_deg),
+            "transection_deg": _rounded(self.transection_deg),
+            "se_deg": _rounded(self.se_deg),
             "explanations": [each.to_json() for each in self.explanations],
-            "likelihood_ratio": self.likelihood_ratio,
-            "separation_se": self.separation_se,
+            "likelihood_ratio": None
+            if self.likelihood_ratio is None
+            else float(f"{self.likelihood_ratio:.6g}"),
+            "separation_se": _rounded(self.separation_se),
             "readings_to_separate": self.readings_to_separate,
             "can_be_told_apart": self.can_be_told_apart,
             "because": list(self.because),
@@ -380,6 +382,11 @@ def _sense_hint(pair: FoldPair, settings: ExplainSettings) -> Sense:
     if pair.transection_deg is None or abs(pair.transection_deg) <= reach:
         return Sense.UNKNOWN
     return Sense.SINISTRAL if pair.transection_deg > 0.0 else Sense.DEXTRAL
+
+
+def _rounded(value: float | None) -> float | None:
+    # A millionth is below what any reading tells and above what two machines differ by.
+    return None if value is None else round(value, 6) + 0.0
 
 
 def _finite(value: float) -> float | None:
