@@ -8,6 +8,7 @@ import numpy as np
 from kivy.core.text import Label as CoreLabel
 from kivy.graphics import Color, InstructionGroup, Mesh, Rectangle
 from kivy.graphics.texture import Texture
+from kivy.metrics import dp
 
 from fieldapp.drawing import strokes
 from fieldapp.look.fonts import FONT_NAME
@@ -17,6 +18,7 @@ if TYPE_CHECKING:
 
     from fieldapp.look.theme import Rgba
 
+MOST_CARDS = 60
 MOST_WORDS = 400  # textures of words kept before the store is emptied
 
 
@@ -25,8 +27,13 @@ def _texture(pixels: np.ndarray) -> Texture:
     height, width = pixels.shape
     rgba = np.full((height, width, 4), 255, np.uint8)
     rgba[:, :, 3] = pixels
+    return _texture_of(rgba)
+
+
+def _texture_of(rgba: np.ndarray) -> Texture:
+    """A texture with these colours, (height, width, 4) of 0 to 255, filled again after a lost GL context."""
     data = rgba.tobytes()
-    texture = Texture.create(size=(width, height), colorfmt="rgba")
+    texture = Texture.create(size=(rgba.shape[1], rgba.shape[0]), colorfmt="rgba")
 
     def fill(target: Texture) -> None:
         target.blit_buffer(data, colorfmt="rgba", bufferfmt="ubyte")
@@ -36,6 +43,19 @@ def _texture(pixels: np.ndarray) -> Texture:
     return texture
 
 
+def card(radius_dp: float, line_dp: float, outline: Rgba, ground: Rgba) -> Texture:
+    """The texture of a card with round corners and an outline, for a BorderImage.
+
+    One instruction of sixteen vertices draws a key however large; the colours are in the texture.
+    """
+    return PAINTS.card(max(round(dp(radius_dp)), 1), dp(line_dp), tuple(outline), tuple(ground))
+
+
+def edge(radius_dp: float) -> list[int]:
+    """The border of that BorderImage: the corner's size in texels on each side."""
+    return [max(round(dp(radius_dp)), 1)] * 4
+
+
 class Paints:
     """Textures made once: the soft edge of lines, the markers and the words."""
 
@@ -43,6 +63,27 @@ class Paints:
         self._edge: Texture | None = None
         self._markers: dict[tuple[str, int], Texture] = {}
         self._words: dict[tuple[str, float, bool], Texture] = {}
+        self._cards: dict[tuple[object, ...], Texture] = {}
+
+    def card(self, radius: int, line: float, outline: Rgba, ground: Rgba) -> Texture:
+        """A card with corners of this radius and an outline of this width, pixels; two texels lie between corners."""
+        key = (radius, line, outline, ground)
+        if key not in self._cards:
+            if len(self._cards) > MOST_CARDS:
+                self._cards.clear()
+            size = 2 * radius + 2
+            y, x = np.mgrid[0:size, 0:size] + 0.5 - size / 2.0
+            inside = radius - np.hypot(np.maximum(np.abs(x) - 1.0, 0.0), np.maximum(np.abs(y) - 1.0, 0.0))
+            straight = np.minimum(radius + 1.0 - np.abs(x), radius + 1.0 - np.abs(y))
+            inside = np.minimum(inside, straight)
+            in_card = np.clip(inside + 0.5, 0.0, 1.0)[:, :, np.newaxis]
+            in_ground = np.clip(inside - line + 0.5, 0.0, 1.0)[:, :, np.newaxis]
+            colour = np.array(outline) * (1.0 - in_ground) + np.array(ground) * in_ground
+            if outline[3] == 0.0:
+                colour[:, :, :3] = ground[:3]
+            colour[:, :, 3:] *= in_card
+            self._cards[key] = _texture_of(np.asarray(colour * 255.0 + 0.5, np.uint8))
+        return self._cards[key]
 
     def edge(self) -> Texture:
         """The two texels, clear and solid, that lines take their soft edge from."""

@@ -5,7 +5,6 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from kivy.core.window import Keyboard as KivyKeyboard
-from kivy.uix.textinput import TextInput
 
 if TYPE_CHECKING:
     from fieldapp.app import HingewiseApp
@@ -32,8 +31,6 @@ class Keyboard:
             return False
         if outline.sheet is not None:
             return self._key_on_sheet(code)
-        if any(isinstance(child, TextInput) and child.focus for child in outline.walk()):
-            return False
         if "Log" not in outline.names_shown:
             return False
         log = outline.leaf("Log")

@@ -9,7 +9,6 @@ from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
 from kivy.uix.label import Label
-from kivy.uix.textinput import TextInput
 
 from fieldapp.drawing.signs import Marker, Sign  # noqa: F401 - the .kv files use them
 from fieldapp.leaves import load_kv
@@ -64,7 +63,7 @@ class Words(Label):
             return True
         room = self.text_size[0] - self.padding[0] - self.padding[2]
         if self.fit == "one":
-            return self._label.get_extents(self.text)[0] <= room + 1
+            return self._label.get_extents(self.text)[0] <= room - 1 and len(self._label._cached_lines) <= 1
         return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
 
 
@@ -84,10 +83,6 @@ class SignKey(ButtonBehavior, BoxLayout):
     text = StringProperty("")
     look = StringProperty("plain")
     sign_dp = NumericProperty(22.0)
-
-
-class TextLine(TextInput):
-    """One line of text, typed with the system's keyboard."""
 
 
 class Sheet(FloatLayout):

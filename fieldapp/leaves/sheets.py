@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 from kivy.app import App
 from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
+from kivy.uix.textinput import TextInput
 
 from fieldapp.drawing.scene import MARKERS
 from fieldapp.leaves import load_kv
@@ -28,6 +29,10 @@ SAFETY = (
     "Orientation data are no slope or excavation design: that is for licensed practice under local codes.",
     "A verdict is about geometry. It names no cause by itself.",
 )
+
+
+class TextLine(TextInput):
+    """One line of text, typed with the system's keyboard."""
 
 
 class Setting(BoxLayout):

@@ -41,12 +41,15 @@ class Driver:
 
         self._loop, self.window, self._finger = EventLoop, Window, Finger
         self._count = 0
+        self.expects_mishap = False
+        self.app = None
         self.resize(*size)
         self.provider = Fingers("fingers", None)
         EventLoop.add_input_provider(self.provider)
         self.app = HingewiseApp(path, demo=demo, **app_values)
         self.app._run_prepare()
-        runTouchApp(embedded=True)
+        if EventLoop.status != "started":
+            runTouchApp(embedded=True)
         self.frames(4)
 
     def resize(self, width: int, height: int) -> None:
@@ -63,9 +66,17 @@ class Driver:
 
     def frames(self, count: int = 2) -> None:
         """Run so many frames, with whatever the window system sends."""
+        from kivy.base import ExceptionManager
+
         for _ in range(count):
-            self._loop.idle()
-            self.window.mainloop()
+            try:
+                self._loop.idle()
+                self.window.mainloop()
+            except Exception as error:  # as Kivy's own loop does
+                if ExceptionManager.handle_exception(error) == ExceptionManager.RAISE:
+                    raise
+            if self.app is not None and not self.expects_mishap:
+                assert self.app.mishaps.text() == "", self.app.mishaps.text()
 
     def wait(self, condition: Callable[[], object], seconds: float = 5.0) -> None:
         """Run frames until a condition holds; fails after so many seconds."""
@@ -88,7 +99,31 @@ class Driver:
         self.provider.waiting.append(("begin", finger))
         self.frames(1)
         self.provider.waiting.append(("end", finger))
-        self.frames(3)
+        self.frames(2)
+
+    def tap(self, text: str, inside: object = None) -> None:
+        """Touch the key with these words."""
+        self.press(self.key(text, inside))
+
+    def key(self, text: str, inside: object = None) -> object:
+        """Find the one key on the screen with these words."""
+        from kivy.uix.behaviors import ButtonBehavior
+
+        top = inside or self.app.outline.sheet or self.app.outline
+        found = [
+            widget
+            for widget in top.walk()
+            if isinstance(widget, ButtonBehavior) and getattr(widget, "text", None) == text and widget.opacity > 0
+        ]
+        assert len(found) == 1, f"{len(found)} keys say {text!r}"
+        return found[0]
+
+    def type_key(self, name: str) -> None:
+        """Press a key of a keyboard, as the window reports it."""
+        from kivy.core.window import Keyboard
+
+        self.window.dispatch("on_key_down", Keyboard.keycodes[name], 0, None, [])
+        self.frames(2)
 
     def press(self, widget: object) -> None:
         """Touch the middle of a widget."""
