@@ -22,7 +22,7 @@ def show_demo(output: Path) -> None:
     """Print the verdict on each demo fold; write the CSV, and net and funnel of each as PNG and SVG."""
     from analysis.report.funnel import draw_funnel, history_of  # noqa: PLC0415 - matplotlib is loaded only here
     from analysis.report.net import draw_net  # noqa: PLC0415
-    from analysis.report.palette import save  # noqa: PLC0415
+    from analysis.report.sheet import save  # noqa: PLC0415
 
     output.mkdir(parents=True, exist_ok=True)
     table = ReadingTable.from_readings(demo_readings())

@@ -18,7 +18,7 @@ from analysis.report.placing import Box, Placer
 from analysis.report.sheet import Sheet, house_style
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Iterable, Sequence
 
     from matplotlib.figure import Figure
 
@@ -46,11 +46,15 @@ class HistoryPoint:
     verdict: Verdict
 
     @classmethod
-    def of(cls, check: FoldCheck) -> HistoryPoint:
-        """The point that a check adds to its fold's history."""
-        after = sum(check.readings.of(feature) for feature in Feature)
+    def of(cls, check: FoldCheck, after: int) -> HistoryPoint:
+        """The point that the check after so many readings adds to its fold's history."""
         low, high = check.interval_deg or (None, None)
         return cls(after, check.transection_deg, low, high, check.verdict)
+
+
+def history_of(checks: Iterable[tuple[int, FoldCheck]]) -> tuple[HistoryPoint, ...]:
+    """Make the history of a fold from its checks, each with the number of readings it was made after."""
+    return tuple(HistoryPoint.of(check, after) for after, check in checks)
 
 
 def draw_funnel(history: Sequence[HistoryPoint], check: FoldCheck, *, theme: str = "light") -> Figure:
@@ -178,7 +182,15 @@ class _Funnel:
         return np.asarray(self.axes.transData.transform(xy), dtype=float)
 
     def _line(
-        self, x: Floats, y: Floats, gid: str, colour: str, width: float, *, dots: str = "solid", cost: float = 2.0
+        self,
+        x: Floats,
+        y: Floats,
+        gid: str,
+        colour: str,
+        width: float,
+        *,
+        dots: str = "solid",
+        cost: float = 2.0,
     ) -> None:
         self.axes.plot(x, y, color=colour, linewidth=width, linestyle=_DASHES[dots], gid=gid, zorder=3.0)
         places = self._pixels(x, np.clip(y, self.bottom, self.top))
@@ -191,7 +203,7 @@ class _Funnel:
     # -- what is drawn -------------------------------------------------------------------------------------
 
     def _draw_frame(self) -> None:
-        from matplotlib.ticker import FuncFormatter, MaxNLocator
+        from matplotlib.ticker import FuncFormatter, MaxNLocator  # noqa: PLC0415 - loaded when a figure is drawn
 
         axes, palette = self.axes, self.palette
         axes.set_facecolor(palette.card)
@@ -200,11 +212,18 @@ class _Funnel:
         for side in ("left", "bottom"):
             axes.spines[side].set_color(palette.muted)
         axes.tick_params(colors=palette.muted, labelcolor=palette.ink, labelsize=_WORDS_PT)
-        axes.yaxis.set_major_locator(MaxNLocator(7, steps=[1, 2, 3, 5, 10]))
-        axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: _signed(value)))
+        axes.yaxis.set_major_locator(
+            MaxNLocator(7, steps=[1, 2, 5, 10] if self.top - self.bottom < 90.0 else [1, 3, 10])
+        )
+        axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: _tick(value, signed=self.signed)))
         axes.xaxis.set_major_locator(MaxNLocator(9, steps=[1, 2, 5, 10], integer=True))
         axes.axhspan(
-            -self.margin if self.signed else 0.0, self.margin, color=palette.band, linewidth=0.0, zorder=1.0, gid="band"
+            -self.margin if self.signed else 0.0,
+            self.margin,
+            color=palette.band,
+            linewidth=0.0,
+            zorder=1.0,
+            gid="band",
         )
         ends = np.array([self.first, self.last])
         self._line(ends, np.zeros(2), "zero", palette.ink, 1.2)
@@ -223,7 +242,14 @@ class _Funnel:
             self._line(x, y, "estimate", palette.ink, 1.6, cost=4.0)
             dots = (y > self.bottom) & (y < self.top) & ((len(x) <= _MOST_DOTS) | (x == x[-1]))
             self.axes.plot(
-                x[dots], y[dots], "o", color=palette.ink, markersize=4.5, linestyle="none", gid="estimates", zorder=4.0
+                x[dots],
+                y[dots],
+                "o",
+                color=palette.ink,
+                markersize=4.5,
+                linestyle="none",
+                gid="estimates",
+                zorder=4.0,
             )
 
     def _draw_ahead(self) -> None:
@@ -250,20 +276,42 @@ class _Funnel:
         sheet = self.sheet
         sense = "transection, clockwise +" if self.signed else "transection, without a sense on the map"
         sheet.words(0.3, top + 0.14, sense, _WORDS_PT, quiet=True, gid="up")
-        sheet.words(_WIDE_IN - _RIGHT_IN, 0.2, "readings of the fold →", _WORDS_PT, quiet=True, align="right", gid="across")
+        sheet.words(
+            _WIDE_IN - _RIGHT_IN,
+            0.2,
+            "readings of the fold →",
+            _WORDS_PT,
+            quiet=True,
+            align="right",
+            gid="across",
+        )
         if not np.isfinite(self.delta).any():
             middle = self._pixels([(self.first + self.last) / 2.0], [0.5 * self.margin])
-            self._put("The funnel starts when the hinge and the cleavage have been read.", middle, "empty", inside=True)
+            self._put(
+                "The funnel starts when the hinge and the cleavage have been read.",
+                middle,
+                "empty",
+                inside=True,
+            )
         since = settled_from(self.history)
         if since is not None:
-            self._label(f"{self.history[-1].verdict} from {since} readings on", "label-settled", at=float(since))
+            self._label(
+                f"{self.history[-1].verdict} from {since} readings on", "label-settled", at=float(since)
+            )
         if self.settles is not None:
             low, likely, high = self.settles
-            self._label(f"should settle at about {likely} ({low} to {high})", "label-settles", at=float(likely))
+            self._label(
+                f"should settle at about {likely} ({low} to {high})", "label-settles", at=float(likely)
+            )
         known = np.isfinite(self.low) & np.isfinite(self.high)
         if known.any():
             share = f"{100.0 * self.check.settings.confidence:g}%"
-            self._name_curve(f"{share} interval, valid at every look", self.after[known], self.high[known], "label-interval")
+            self._name_curve(
+                f"{share} interval, valid at every look",
+                self.after[known],
+                self.high[known],
+                "label-interval",
+            )
         if np.isfinite(self.delta).any():
             self._name_curve("estimate", self.after, self.delta, "label-estimate")
         self._label_band()
@@ -276,7 +324,9 @@ class _Funnel:
         # On the floor of the band where there is room in it, else on top of it.
         floor = low_px if high_px - low_px > 2.0 * high else high_px
         x = self._pixels(np.linspace(self.first, self.last, 33), [0.0])[:, 0]
-        self._put(text, np.stack([x, np.full(33, floor + high / 2.0 + 4.0)], axis=-1), "label-band", inside=True)
+        self._put(
+            text, np.stack([x, np.full(33, floor + high / 2.0 + 4.0)], axis=-1), "label-band", inside=True
+        )
 
     def _name_curve(self, text: str, x: Floats, y: Floats, gid: str) -> None:
         shown = np.isfinite(y) & (y > self.bottom) & (y < self.top)
@@ -286,8 +336,8 @@ class _Funnel:
             self._put(text, self._pixels(x[late], y[late]), gid)
 
     def _label(self, text: str, gid: str, *, at: float) -> None:
-        """Put words beside an upright line at so many readings, near its top."""
-        y = self.top - np.array([0.05, 0.08, 0.11]) * (self.top - self.bottom)
+        """Put words beside an upright line at so many readings, near its top if there is room."""
+        y = self.top - np.linspace(0.05, 0.6, 12) * (self.top - self.bottom)
         self._put(text, self._pixels([at], y), gid)
 
     def _put(self, text: str, anchors: Floats, gid: str, *, inside: bool = False) -> None:
@@ -310,8 +360,17 @@ class _Funnel:
         x, y = self.axes.transData.inverted().transform(origin)
         made.set_position((float(x), float(y)))
         if place.leader and not inside:
-            ends = np.asarray(self.axes.transData.inverted().transform([place.box.nearest(*place.anchor), place.anchor]))
-            self.axes.plot(ends[:, 0], ends[:, 1], color=self.palette.muted, linewidth=0.7, gid=f"{gid}-leader", zorder=4.5)
+            ends = np.asarray(
+                self.axes.transData.inverted().transform([place.box.nearest(*place.anchor), place.anchor])
+            )
+            self.axes.plot(
+                ends[:, 0],
+                ends[:, 1],
+                color=self.palette.muted,
+                linewidth=0.7,
+                gid=f"{gid}-leader",
+                zorder=4.5,
+            )
 
 
 _DASHES: Final = {"solid": "solid", "dotted": (0, (1.0, 1.8)), "dashed": (0, (5.0, 3.0))}
@@ -321,7 +380,9 @@ def _column(values: list[float | None]) -> Floats:
     return np.array([math.nan if value is None else value for value in values], dtype=float)
 
 
-def _signed(value: float) -> str:
+def _tick(value: float, *, signed: bool) -> str:
     if abs(value) < 1e-9:
         return "0°"
-    return f"{'+' if value > 0 else '−'}{abs(value):g}°"
+    if not signed:
+        return f"{value:g}°" if value > 0.0 else ""
+    return f"{'+' if value > 0 else chr(0x2212)}{abs(value):g}°"  # a true minus sign is as wide as the plus

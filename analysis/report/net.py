@@ -123,7 +123,7 @@ class _Net:
     # -- what is drawn -------------------------------------------------------------------------------------
 
     def _draw_frame(self) -> None:
-        from matplotlib.patches import Circle
+        from matplotlib.patches import Circle  # noqa: PLC0415 - loaded when a figure is drawn
 
         ink = self.palette.ink
         self.axes.add_patch(

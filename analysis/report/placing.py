@@ -78,25 +78,36 @@ class Placer:
         self.boxes.append(box)
 
     def place(
-        self, anchors: npt.ArrayLike, size: tuple[float, float], *, gap: float, on_anchor: bool = False
+        self,
+        anchors: npt.ArrayLike,
+        size: tuple[float, float],
+        *,
+        gap: float,
+        on_anchor: bool = False,
+        own_mark: float = 0.0,
+        take: bool = True,
     ) -> Place:
         """Find the place of a label of this size, (wide, high), beside one of the anchors, (n, 2), and take it.
 
+        Without `take` the place is only found: what stands there is not words but marks, to be blocked.
+
         `gap` is the room between an anchor and its label; with `on_anchor` the middle of the anchor itself is
-        tried too.
+        tried too, and `own_mark` is what covering its own mark there would else cost.
         """
         spots = np.asarray(anchors, dtype=float).reshape(-1, 2)
         spots = spots[:: -(-len(spots) // _MOST_ANCHORS)]
         boxes, owner, ring = self._candidates(spots, size, gap, on_anchor=on_anchor)
         cost = 0.35 * (ring - 1.0) + 1e-3 * np.arange(len(boxes)) / len(boxes)
         cost += self._outside(boxes) + self._over_words(boxes) + self._over_points(boxes)
+        cost -= np.where(ring == 0.0, own_mark, 0.0)
         cost += self._leader_costs(boxes, spots[owner], gap)
         best = int(np.argmin(cost))
         box = Box(*(float(edge) for edge in boxes[best]))
         anchor = (float(spots[owner[best], 0]), float(spots[owner[best], 1]))
         near = box.nearest(*anchor)
         leader = float(np.hypot(near[0] - anchor[0], near[1] - anchor[1])) > _LEADER_FROM * gap
-        self.take(box)
+        if take:
+            self.take(box)
         if leader:
             share = np.linspace(0.0, 1.0, 20)[:, np.newaxis]
             self.block(np.array(anchor) * (1.0 - share) + np.array(near) * share, 1.0, 3.0)

@@ -23,7 +23,6 @@ if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
 
     from matplotlib.axes import Axes
-    from matplotlib.backends.backend_agg import RendererAgg
     from matplotlib.figure import Figure
     from matplotlib.text import Text
 
@@ -43,7 +42,7 @@ SUFFIXES: Final = (".png", ".svg")
 @contextlib.contextmanager
 def house_style() -> Iterator[None]:
     """Draw with matplotlib's own defaults and our few changes, whatever the user has configured."""
-    import matplotlib as mpl
+    import matplotlib as mpl  # noqa: PLC0415 - loaded when a figure is drawn
 
     with mpl.rc_context():
         mpl.rcdefaults()
@@ -55,13 +54,12 @@ class Sheet:
     """A figure with one coordinate system in inches over all of it, the origin at the lower left."""
 
     def __init__(self, wide_in: float, high_in: float, palette: Palette) -> None:
-        from matplotlib.backends.backend_agg import FigureCanvasAgg
-        from matplotlib.figure import Figure
+        from matplotlib.backends.backend_agg import FigureCanvasAgg  # noqa: PLC0415 - loaded when a figure is drawn
+        from matplotlib.figure import Figure  # noqa: PLC0415 - as above
 
         self.wide_in, self.high_in, self.palette = wide_in, high_in, palette
         self.figure: Figure = Figure(figsize=(wide_in, high_in), dpi=100, facecolor=palette.paper)
-        canvas = FigureCanvasAgg(self.figure)
-        self._renderer: RendererAgg = canvas.get_renderer()
+        FigureCanvasAgg(self.figure)  # what the figure measures its words with
         self.axes: Axes = self.figure.add_axes((0.0, 0.0, 1.0, 1.0), zorder=0)
         self.axes.set_axis_off()
         self.axes.set_xlim(0.0, wide_in)
@@ -110,16 +108,15 @@ class Sheet:
 
     def box_of(self, text: Text) -> Box:
         """The box, in pixels, that a text takes up."""
-        extent = text.get_window_extent(self._renderer)
+        extent = text.get_window_extent()
         return Box(float(extent.x0), float(extent.y0), float(extent.x1), float(extent.y1))
 
     def size_in(self, text: str, size: float, *, bold: bool = False) -> tuple[float, float]:
         """Width and height, inches, of one line."""
-        from matplotlib.font_manager import FontProperties
-
-        font = FontProperties(family=FONT, size=size, weight="bold" if bold else "normal")
-        wide, high, _ = self._renderer.get_text_width_height_descent(text, font, False)  # noqa: FBT003 - ismath
-        return wide / self.figure.dpi, high / self.figure.dpi
+        made = self.words(0.0, 0.0, text, size, bold=bold)
+        box = self.box_of(made)
+        made.remove()
+        return (box.right - box.left) / self.figure.dpi, (box.top - box.bottom) / self.figure.dpi
 
     def broken(self, text: str, size: float, wide_in: float, *, bold: bool = False) -> list[str]:
         """Break a text into lines of at most this width and of about one length; a long word stays whole."""
@@ -178,7 +175,7 @@ class Sheet:
 def _bar(lean_deg: float, half: float, x: float = 0.0) -> Floats:
     turn = np.radians(lean_deg)
     end = half * np.array([np.sin(turn), np.cos(turn)])
-    return np.array([-end, end]) + [x, 0.0]
+    return np.asarray(np.stack([-end, end]) + np.array([x, 0.0]), dtype=float)
 
 
 def _arc(start_deg: float, stop_deg: float) -> Floats:
