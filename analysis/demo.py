@@ -47,7 +47,7 @@ _FOLDS: Final = (
         "Mossgarth fold",
         "MG",
         FoldDesign(
-            hinge_trend_deg=28.0,
+            hinge_trend_deg=76.0,
             hinge_plunge_deg=14.0,
             limb_dips_deg=(48.0, 64.0),
             transection_deg=9.0,
@@ -66,7 +66,7 @@ _FOLDS: Final = (
         "Low Mossgarth fold",
         "LM",
         FoldDesign(
-            hinge_trend_deg=46.0,
+            hinge_trend_deg=57.0,
             hinge_plunge_deg=8.0,
             limb_dips_deg=(55.0, 60.0),
             transection_deg=0.5,
@@ -85,7 +85,7 @@ _FOLDS: Final = (
         "Mossgarth Edge fold",
         "ME",
         FoldDesign(
-            hinge_trend_deg=41.0,
+            hinge_trend_deg=68.0,
             hinge_plunge_deg=20.0,
             limb_dips_deg=(40.0, 70.0),
             transection_deg=5.0,

@@ -10,6 +10,8 @@ import click
 from analysis import __version__
 from analysis.cli.check import check
 from analysis.cli.common import OneLineErrors
+from analysis.cli.explain import explain_command
+from analysis.cli.join import join_command
 from analysis.cli.replay import replay
 from analysis.cli.simulate import simulate
 
@@ -27,5 +29,5 @@ def hingewise() -> None:
     """
 
 
-for _command in (check, replay, simulate):
+for _command in (check, explain_command, join_command, replay, simulate):
     hingewise.add_command(_command)

@@ -88,7 +88,7 @@ def progress(label: str) -> Iterator[Callable[[float], None]]:
         yield lambda share: bar.update(round(share * steps) - bar.pos)
 
 
-def read_files(files: tuple[Path, ...], *, strict: bool) -> ReadingTable:
+def read_files(files: tuple[Path, ...], *, strict: bool, say_conflicts: bool = True) -> ReadingTable:
     """Read files into a table; rows that are left out are named on standard error."""
     from analysis.files.csvfile import read_table  # noqa: PLC0415 - pandas is loaded only when files are read
 
@@ -102,7 +102,7 @@ def read_files(files: tuple[Path, ...], *, strict: bool) -> ReadingTable:
     if table.faulty_rows:
         rows = "1 row was" if table.faulty_rows == 1 else f"{table.faulty_rows} rows were"
         click.echo(f"{rows} left out; the others are used", err=True)
-    for conflict in table.conflicts[:_FAULTS_SHOWN]:
+    for conflict in table.conflicts[:_FAULTS_SHOWN] if say_conflicts else ():
         click.echo(f"conflict: {conflict}", err=True)
     return table
 
