@@ -20,6 +20,7 @@ from analysis.fold.check import check_fold
 from analysis.fold.settings import CheckSettings
 from analysis.fold.words import figure_line
 from analysis.strain.explanations import ExplainSettings, FaultCheck, explain
+from analysis.strain.frame import Sense
 from analysis.strain.observed import Fault
 from analysis.strain.ofcheck import pair_of_check
 from analysis.strain.wording import headline
