@@ -10,7 +10,7 @@ from __future__ import annotations
 import shutil
 import sqlite3
 import tempfile
-from contextlib import closing, suppress
+from contextlib import closing, contextmanager, suppress
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -20,23 +20,24 @@ from fieldapp.notebook.carving import carve
 from fieldapp.notebook.errors import (
     DamagedError,
     NotANotebookError,
+    NotebookError,
     plain_errors,
     plain_os_errors,
     primary_code,
 )
 from fieldapp.notebook.rows import INSERT, digest_of, row_values
-from fieldapp.notebook.schema import APPLICATION_ID, MIGRATIONS, check_owner, migrate
+from fieldapp.notebook.schema import MIGRATIONS, check_owner, migrate
 from fieldapp.notebook.store import Notebook
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Iterator
     from datetime import datetime
 
     from fieldapp.notebook.carving import Carved
 
 LOCK_WAIT_S = 0.5  # how long a write waits for another program before the page says so
 _SIDE_FILES = ("-wal", "-shm")
-_HEADER = b"SQLite format 3\0"
+_SUFFIXES = (".notebook", ".db")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,14 +75,12 @@ def open_notebook(path: Path, clock: Callable[[], datetime]) -> Opening:
     try:
         db, read_only = _connected(path)
         try:
-            _check_whole(db, path, read_only=read_only)
-            if not read_only:
-                migrate(db, path, clock)
+            _made_ready(db, path, clock, read_only=read_only)
         except BaseException:
             db.close()
             raise
-    except DamagedError:
-        report = _recover(path, clock)
+    except (DamagedError, NotANotebookError) as error:
+        report = _recover(path, clock, error)
         db, read_only = _connected(path)
         return Opening(Notebook(path, db, clock, read_only=read_only), report)
     report = OpeningReport(new=new, read_only=read_only)
@@ -90,7 +89,7 @@ def open_notebook(path: Path, clock: Callable[[], datetime]) -> Opening:
 
 def _connected(path: Path) -> tuple[sqlite3.Connection, bool]:
     """Give a connection for writing, or for reading where the storage allows no more."""
-    with plain_errors(path):
+    with plain_errors(path), _spoilt_tables(path):
         try:
             return _for_writing(path), False
         except sqlite3.OperationalError as error:
@@ -132,6 +131,28 @@ def _for_reading(path: Path) -> sqlite3.Connection:
     return sqlite3.connect(f"{path.resolve().as_uri()}?mode=ro&immutable=1", uri=True, isolation_level=None)
 
 
+def _made_ready(
+    db: sqlite3.Connection, path: Path, clock: Callable[[], datetime], *, read_only: bool
+) -> None:
+    with _spoilt_tables(path):
+        _check_whole(db, path, read_only=read_only)
+        if not read_only:
+            migrate(db, path, clock)
+
+
+@contextmanager
+def _spoilt_tables(path: Path) -> Iterator[None]:
+    """While opening, an error that is no matter of the storage can only be damage to the header or the tables."""
+    try:
+        yield
+    except sqlite3.Error as error:
+        if primary_code(error) != sqlite3.SQLITE_ERROR:
+            raise
+        raise DamagedError(str(error), where=path.name) from error
+    except UnicodeDecodeError as error:  # SQLite's own message quotes the spoilt table
+        raise DamagedError(str(error), where=path.name) from error
+
+
 def _check_whole(db: sqlite3.Connection, path: Path, *, read_only: bool) -> None:
     with plain_errors(path):
         check_owner(db, path, MIGRATIONS[-1].version)
@@ -145,19 +166,19 @@ def _check_whole(db: sqlite3.Connection, path: Path, *, read_only: bool) -> None
 # -- recovery ----------------------------------------------------------------------------------------------
 
 
-def _recover(path: Path, clock: Callable[[], datetime]) -> OpeningReport:
+def _recover(path: Path, clock: Callable[[], datetime], why: NotebookError) -> OpeningReport:
     with plain_errors(path), plain_os_errors(path):
         main = path.read_bytes()
         wal_path = _beside(path, "-wal")
         wal = wal_path.read_bytes() if wal_path.exists() else b""
         carved = carve(main, wal)
-        if not carved.rows and not _was_notebook(path, main):
+        if not carved.rows and not _was_notebook(path, main, why):
             raise NotANotebookError(
                 "this file is no notebook and was left alone",
                 where=path.name,
                 expected="a notebook of this program",
                 mend="Choose another file.",
-            )
+            ) from why
         building = _beside(path, ".recovering")
         building.unlink(missing_ok=True)
         _build(building, path, carved, clock)
@@ -173,10 +194,17 @@ def _recover(path: Path, clock: Callable[[], datetime]) -> OpeningReport:
     )
 
 
-def _was_notebook(path: Path, main: bytes) -> bool:
-    """Tell a damaged notebook from a file that never was one."""
-    ours = main.startswith(_HEADER) and int.from_bytes(main[68:72]) == APPLICATION_ID
-    return ours or not any(main) or bool(backups_of(path)) or _beside(path, "-wal").exists()
+def _was_notebook(path: Path, main: bytes, why: NotebookError) -> bool:
+    """Tell a damaged notebook without a whole reading from a file that never was one.
+
+    A database of another program that can be read is none of ours. What cannot be read is, if anything of the
+    header or the tables is ours, or if it stands where only a notebook stands.
+    """
+    if isinstance(why, NotANotebookError):
+        return False
+    marks = main.startswith(b"SQLite") or b"CREATE TABLE revisions" in main or not any(main)
+    beside = path.suffix in _SUFFIXES or bool(backups_of(path)) or _beside(path, "-wal").exists()
+    return marks or beside
 
 
 def _finish_recovery(path: Path) -> None:
@@ -239,7 +267,7 @@ def _copy_what_answers(damaged: Path, db: sqlite3.Connection) -> None:
                 columns = [row[1] for row in db.execute(f"PRAGMA table_info({table})")]
                 marks = ", ".join("?" * len(columns))
                 names = ", ".join(columns)
-                with suppress(sqlite3.DatabaseError):
+                with suppress(sqlite3.DatabaseError, UnicodeDecodeError):
                     for row in old.execute(f"SELECT {names} FROM {table} ORDER BY rowid"):  # noqa: S608
                         with suppress(sqlite3.DatabaseError):
                             db.execute(

@@ -10,7 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from fieldapp.notebook.errors import NewerNotebookError, NotANotebookError, plain_errors
+from fieldapp.notebook.errors import DamagedError, NewerNotebookError, NotANotebookError, plain_errors
 
 if TYPE_CHECKING:
     import sqlite3
@@ -143,10 +143,11 @@ def version_of(db: sqlite3.Connection) -> int:
 
 
 def check_owner(db: sqlite3.Connection, path: Path, newest: int) -> None:
-    """Raise NotANotebookError or NewerNotebookError for a file that must be left alone."""
+    """Raise NotANotebookError or NewerNotebookError for a file to be left alone, DamagedError for ours."""
     owner = int(db.execute("PRAGMA application_id").fetchone()[0])
-    tables = int(db.execute("SELECT count(*) FROM sqlite_master").fetchone()[0])
-    if owner != APPLICATION_ID and tables:
+    tables = {str(row[0]) for row in db.execute("SELECT name FROM sqlite_master")}
+    ours = {"migrations", "revisions"} <= tables
+    if owner != APPLICATION_ID and tables and not ours:
         raise NotANotebookError(
             "this file belongs to another program and was left alone",
             where=path.name,
@@ -154,6 +155,10 @@ def check_owner(db: sqlite3.Connection, path: Path, newest: int) -> None:
             mend="Choose another file.",
         )
     version = version_of(db)
+    if ours:
+        noted = int(db.execute("SELECT max(version) FROM migrations").fetchone()[0] or 0)
+        if noted != version or owner != APPLICATION_ID:
+            raise DamagedError(f"the header says format {version}, the tables {noted}", where=path.name)
     if version > newest:
         raise NewerNotebookError(
             f"this notebook has format {version} and was left alone",
