@@ -308,8 +308,8 @@ class _Funnel:
             share = f"{100.0 * self.check.settings.confidence:g}%"
             self._name_curve(
                 f"{share} interval, valid at every look",
-                self.after[known],
-                self.high[known],
+                np.concatenate([self.after[known], self.ahead]),
+                np.concatenate([self.high[known], self.ahead_high]),
                 "label-interval",
             )
         if np.isfinite(self.delta).any():

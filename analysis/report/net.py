@@ -30,7 +30,8 @@ _NET_IN: Final = 5.9
 _REACH: Final = 1.22  # of the net's axes, in radii
 _KEY_IN: Final = 6.15  # where the key begins
 _LABEL_PT: Final = 9.5
-_MEAN_PT: Final = 10.0  # markers of the means, points across
+_DISC_PT: Final = 8.0  # the hinge's marker, points across
+_DIAMOND_PT: Final = 13.0  # the mean intersection's
 _RASTER_FROM: Final = 3000  # readings; more than these are set as an image within an SVG
 _SECOND_CLUSTER_DEG: Final = 40.0
 
@@ -176,53 +177,49 @@ class _Net:
 
     def _draw_means(self) -> None:
         check = self.check
-        if check.intersection is not None:
-            self._draw_mean(check.intersection.axis, "intersection", self.palette.accent, "D")
         if check.hinge is not None:
-            self._draw_mean(check.hinge, "hinge", self.palette.ink, "o")
+            self._draw_ellipse(check.hinge, "hinge", self.palette.ink)
+        if check.intersection is not None:
+            self._draw_ellipse(check.intersection.axis, "intersection", self.palette.accent)
+        # In an axial planar fold the two lie on top of each other: the disc shows inside the diamond.
+        if check.hinge is not None:
+            self._draw_mean(check.hinge, "hinge")
+        if check.intersection is not None:
+            self._draw_mean(check.intersection.axis, "intersection")
 
-    def _draw_mean(self, estimate: AxisEstimate, gid: str, colour: str, marker: str) -> None:
-        if estimate.ellipse is not None:
-            e = estimate.ellipse
-            curve = ellipse(estimate.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg)
-            pieces = [net_xy(piece) for piece in lower_pieces(curve)]
-            for number, piece in enumerate(pieces):
-                ground = piece if len(pieces) == 1 else np.concatenate([piece, rim_arc(piece[-1], piece[0])])
-                self.axes.fill(
-                    ground[:, 0], ground[:, 1], color=colour, alpha=0.14, linewidth=0.0, zorder=1.5
-                )
-                self.axes.plot(piece[:, 0], piece[:, 1], color=self.palette.card, linewidth=3.0, zorder=3.2)
-                self._line(piece, f"{gid}-ellipse-{number}", colour, 1.4, zorder=3.3)
+    def _draw_ellipse(self, estimate: AxisEstimate, gid: str, colour: str) -> None:
+        e = estimate.ellipse
+        if e is None:
+            return
+        curve = ellipse(estimate.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg)
+        pieces = [net_xy(piece) for piece in lower_pieces(curve)]
+        for number, piece in enumerate(pieces):
+            ground = piece if len(pieces) == 1 else np.concatenate([piece, rim_arc(piece[-1], piece[0])])
+            self.axes.fill(ground[:, 0], ground[:, 1], color=colour, alpha=0.14, linewidth=0.0, zorder=1.5)
+            # A line of the ground's colour under it keeps it clear of the readings, but not of the rim.
+            x, y = (piece if len(pieces) == 1 else piece[2:-2]).T
+            self.axes.plot(x, y, color=self.palette.card, linewidth=3.0, solid_capstyle="butt", zorder=3.2)
+            self._line(piece, f"{gid}-ellipse-{number}", colour, 1.4, zorder=3.3)
+
+    def _draw_mean(self, estimate: AxisEstimate, gid: str) -> None:
         place = equal_area_xy(estimate.vector)
-        size = self._mean_size_pt(estimate) * (0.86 if marker == "D" else 1.0)
-        self.axes.plot(
-            *place,
-            marker=marker,
-            markersize=size,
-            markerfacecolor=colour,
-            markeredgecolor=self.palette.card,
-            markeredgewidth=1.6,
-            linestyle="none",
-            gid=gid,
-            zorder=4.0,
-            clip_on=False,
-        )
-        self.placer.block(self._pixels(place), self._points_as_pixels(_MEAN_PT) / 2.0, 40.0)
+        size = mean_mark(self.axes, place, gid, self.palette, small=self._hides(estimate))
+        self.placer.block(self._pixels(place), self._points_as_pixels(size) / 2.0, 40.0)
 
-    def _mean_size_pt(self, estimate: AxisEstimate) -> float:
-        """Size of a mean's marker: small where a large one would hide its ellipse."""
+    def _hides(self, estimate: AxisEstimate) -> bool:
+        """Whether a marker of the usual size would hide the ellipse of a mean."""
         if estimate.ellipse is None:
-            return _MEAN_PT
-        # A degree is about sqrt(2) sin(1/2 degree) radii wide wherever on the net it lies.
+            return False
+        # On the net an angle is about sqrt(2) sin(angle/2) radii long.
         radius_pt = _NET_IN / (2.0 * _REACH) * POINTS_PER_INCH
         across = 2.0 * np.sqrt(2.0) * np.sin(np.radians(estimate.ellipse.minor_deg / 2.0)) * radius_pt
-        return float(np.clip(0.75 * across, 6.5, _MEAN_PT))
+        return bool(across < 1.3 * _DISC_PT)
 
     # -- words ---------------------------------------------------------------------------------------------
 
     def _draw_labels(self) -> None:
         check = self.check
-        gap = self._points_as_pixels(_MEAN_PT) / 2.0 + 5.0
+        gap = self._points_as_pixels(_DIAMOND_PT) / 2.0 + 4.0
         if check.hinge is not None:
             self._label("hinge", equal_area_xy(check.hinge.vector), "label-hinge", gap, bold=True)
         if check.intersection is not None:
@@ -322,6 +319,29 @@ def scatter_marks(
     )
 
 
+def mean_mark(axes: Axes, place: Floats, gid: str, palette: Palette, *, small: bool = False) -> float:
+    """Draw the marker of a mean, a disc for the hinge and an open diamond else, and return its size in points."""
+    disc = gid == "hinge"
+    size = (_DISC_PT if not small else 0.75 * _DISC_PT) if disc else _DIAMOND_PT
+    # Edge colour, edge width and height above the paper of each layer: the disc lies between the diamond's ground
+    # and its line, so that neither hides the other where they coincide.
+    layers = [(palette.card, 1.2, 4.1)] if disc else [(palette.card, 4.0, 4.0), (palette.accent, 1.9, 4.2)]
+    for edge, width, zorder in layers:
+        axes.plot(
+            *place,
+            marker="o" if disc else "D",
+            markersize=size if disc else size / np.sqrt(2.0),
+            markerfacecolor=palette.ink if disc else "none",
+            markeredgecolor=edge,
+            markeredgewidth=width,
+            linestyle="none",
+            gid=f"{gid}-ground" if zorder == 4.0 else gid,
+            zorder=zorder,
+            clip_on=False,
+        )
+    return size
+
+
 class _Key:
     """The column beside the net: what the marks mean, how many there are, and the figures."""
 
@@ -388,6 +408,14 @@ class _Key:
             [np.array([[self.left, y + 0.2], [self.right, y + 0.2]])], 0.7, self.palette.rule, "rule"
         )
         self.sheet.words(self.left, y, name, 9.0, quiet=True)
+        middle = np.array([self.right - 0.12, y - 0.24])
+        if estimate is self.check.cleavage:
+            ends = middle + np.array([[-0.16, -0.07], [0.12, 0.07]])
+            self.sheet.strokes([ends], 1.8, self.palette.second, "key-mean")
+        elif estimate is not None:
+            mean_mark(
+                self.sheet.axes, middle, "hinge" if estimate is self.check.hinge else "other", self.palette
+            )
         if figure is None or estimate is None:
             self.sheet.words(self.left, y - 0.26, "not known yet", 10.0, gid=f"figure {name}")
             return
