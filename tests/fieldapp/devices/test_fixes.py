@@ -108,6 +108,15 @@ def test_three_fixes_that_agree_move_the_position():
     assert book.best().position == quality.position
 
 
+def test_the_best_mean_of_a_place_that_was_left_is_forgotten():
+    """A better fix at the place before the move is not kept as the best of the new place."""
+    book = FixBook()
+    book.add(fix(0, accuracy_m=2.0))
+    for seconds in (1, 2, 3):
+        book.add(fix(seconds, 5000.0, accuracy_m=9.0))
+    assert book.best().position.latitude_deg == pytest.approx(56.0 + 5000.0 * METRE)
+
+
 def test_a_drive_between_fixes_is_no_jump():
     """After ten minutes without a fix, 5 km are what a car does."""
     book = FixBook()

@@ -368,6 +368,15 @@ def test_a_device_that_slept_in_the_middle_starts_anew(session, port, clock, fla
     assert session.live.seconds < 10.1
 
 
+def test_waking_without_a_sample_is_sleep_and_no_silence(session, port, clock, flat):
+    """The first tick after a sleep, before any new sample, does not give the sensors up as silent."""
+    session.start(Laid.ON_PLANE, PLACE)
+    feed(session, port, clock, flat, 0.5)
+    clock.go(60.0)
+    assert session.tick().state is S.ASLEEP
+    assert feed(session, port, clock, flat, 12.0)[-1] is S.DONE
+
+
 def test_a_gap_between_samples_is_sleep_too(session, port, clock, flat):
     """Samples delivered together but minutes apart are not one measurement."""
     session.start(Laid.ON_PLANE, PLACE)
