@@ -1,0 +1,123 @@
+from __future__ import annotations
+
+import sqlite3
+import threading
+from contextlib import closing
+from datetime import date, timedelta
+
+import pytest
+
+from fieldapp.notebook import open_notebook
+from fieldapp.notebook.backups import KEPT, back_up, backups_of, faults_in, folder_of, is_due, readings_in
+from fieldapp.notebook.errors import DamagedError, NotebookError
+
+DAY = date(2026, 5, 1)
+
+
+@pytest.fixture
+def path(tmp_path):
+    return tmp_path / "field.notebook"
+
+
+@pytest.fixture
+def notebook(path, clock):
+    opened = open_notebook(path, clock).notebook
+    yield opened
+    opened.close()
+
+
+def test_a_backup_holds_what_was_kept_even_while_the_notebook_is_open(notebook, path, make_reading):
+    """The online backup carries readings that are only in the write-ahead log yet, as one sound file."""
+    reading = make_reading()
+    notebook.keep(reading)
+    backup = back_up(path, DAY)
+    assert readings_in(backup) == [reading]
+    with closing(sqlite3.connect(backup)) as db:
+        assert faults_in(db) == []
+    assert [p.name for p in folder_of(path).iterdir()] == [backup.name]
+
+
+def test_one_backup_a_day_and_the_newest_week_is_kept(notebook, path, make_reading):
+    """A second backup of a day takes the place of the first; of many days the newest seven stay."""
+    notebook.keep(make_reading())
+    assert is_due(path, DAY)
+    for number in range(10):
+        back_up(path, DAY + timedelta(days=number))
+        back_up(path, DAY + timedelta(days=number))
+    assert [p.stem for p in backups_of(path)] == [
+        (DAY + timedelta(days=9 - n)).isoformat() for n in range(KEPT)
+    ]
+    assert not is_due(path, DAY + timedelta(days=9))
+    assert is_due(path, DAY + timedelta(days=10))
+
+
+def test_a_damaged_notebook_pushes_no_good_backup_out(notebook, path, make_reading):
+    """The copy is checked before it takes its name: a notebook gone wrong leaves the older backups as they are."""
+    for number in range(40):
+        notebook.keep(make_reading(note="x" * 500, strike_deg=float(number)))
+    good = back_up(path, DAY).read_bytes()
+    notebook.close()
+    data = bytearray(path.read_bytes())
+    place = data.index(b"Mossgarth", 30_000)
+    data[place : place + 1] = b"N"
+    path.write_bytes(data)
+    with pytest.raises(DamagedError):
+        back_up(path, DAY)
+    assert [p.read_bytes() for p in backups_of(path)] == [good]
+    assert list(folder_of(path).glob("*.partial")) == []
+
+
+def test_restoring_brings_the_backup_back_and_keeps_what_was(notebook, path, make_reading):
+    """After a restore the readings are those of the backup; how the notebook was is a backup of its own."""
+    early, late = make_reading(), make_reading()
+    notebook.keep(early)
+    backup = back_up(path, DAY)
+    notebook.keep(late)
+    notebook.restore(backup)
+    assert list(notebook.standing().values()) == [early]
+    saved = next(p for p in backups_of(path) if "before restoring" in p.name)
+    assert set(readings_in(saved)) == {early, late}
+    notebook.keep(make_reading())
+    assert notebook.add_backup(saved) == 1
+    assert notebook.count() == 3
+
+
+def test_a_backup_that_cannot_be_read_restores_nothing(notebook, path, make_reading, tmp_path):
+    """A broken backup is refused and the notebook stays as it is."""
+    notebook.keep(make_reading())
+    broken = tmp_path / "broken.backup"
+    broken.write_bytes(b"SQLite format 3\0" + bytes(5000))
+    with pytest.raises(NotebookError):
+        notebook.restore(broken)
+    assert notebook.count() == 1
+
+
+def test_backups_run_beside_keeping(notebook, path, make_reading):
+    """Backups made on another thread while readings are kept are each whole."""
+    stop = threading.Event()
+    made, trouble = [], []
+
+    def work():
+        day = DAY
+        while not stop.is_set():
+            try:
+                made.append(len(readings_in(back_up(path, day))))
+            except NotebookError as error:
+                trouble.append(error)
+            day += timedelta(days=1)
+
+    notebook.keep(make_reading())
+    thread = threading.Thread(target=work)
+    thread.start()
+    for _ in range(60):
+        notebook.keep(make_reading())
+    stop.set()
+    thread.join()
+    assert trouble == []
+    assert made == sorted(made)
+    assert notebook.count() == 61
+
+
+def test_no_folder_no_backups(path):
+    """A notebook that was never backed up has none."""
+    assert backups_of(path) == []
