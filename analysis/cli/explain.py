@@ -73,7 +73,7 @@ def explain_command(
     """
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = Fault(
-        strike_deg=fault_strike, sense=sense, zone_width_km=zone_width_km, strike_se_deg=fault_strike_se
+        strike_deg=fault_strike, sense=Sense(sense), zone_width_km=zone_width_km, strike_se_deg=fault_strike_se
     )
     table = read_files(files, strict=strict)
     done: list[FaultCheck] = []
