@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
+from analysis.errors import AttitudeError
 from analysis.orient.features import Feature
 from analysis.orient.vectors import lower_hemisphere
 from analysis.stats.moments import COUNT, WIDTH, moments
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
 FEATURES: Final = tuple(Feature)
 _CODE: Final = {feature: code for code, feature in enumerate(FEATURES)}
 _BEDDING: Final = _CODE[Feature.BEDDING]
+_NOT_UNIT: Final = 1e-6  # how far the squared length of an axis may be off one
 _CHUNK: Final = 65_536  # axes whose moments are in memory at a time
 
 # Cells of attitude: bands of pole plunge, each cut into sectors of azimuth, about 10 degrees wide.
@@ -62,7 +64,10 @@ class RunningSums:
     # -- changing ------------------------------------------------------------------------------------------
 
     def add(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike) -> None:
-        """Add one axis, shape (3,), or many, shape (N, 3), read at one outcrop."""
+        """Add one axis, shape (3,), or many, shape (N, 3), read at one outcrop.
+
+        Raises AttitudeError, and changes nothing, where one is not finite or not of unit length.
+        """
         self._change(feature, outcrop, vectors, 1.0)
 
     def remove(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike) -> None:
@@ -79,8 +84,10 @@ class RunningSums:
         """Add many axes, shape (N, 3), at once.
 
         `feature_codes` (N,) number the features in the order of `FEATURES`, `outcrop_codes` (N,) index
-        `outcrops`.
+        `outcrops`. Raises AttitudeError, and changes nothing, where an axis is not finite or not of unit length.
         """
+        for start in range(0, len(vectors), _CHUNK):
+            _check_axes(vectors[start : start + _CHUNK])
         slot_of = np.array([self._slot(name) for name in outcrops], dtype=np.int64)
         kinds = len(FEATURES)
         for start in range(0, len(vectors), _CHUNK):
@@ -98,6 +105,7 @@ class RunningSums:
 
     def _change(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike, sign: float) -> None:
         axes = np.atleast_2d(np.asarray(vectors, dtype=float))
+        _check_axes(axes)
         rows = moments(axes) * sign
         code, slot = _CODE[feature], self._slot(outcrop)
         self._rows[slot, code] += rows.sum(axis=0)
@@ -176,6 +184,21 @@ class RunningSums:
         rows = self._cell_rows[:used]
         held = rows[:, COUNT] > 0.5
         return rows[held], owner[held]
+
+
+def _check_axes(axes: Floats) -> None:
+    # One number that is none would spoil the sums for good, with every reading before it.
+    if axes.ndim != 2 or axes.shape[1] != 3:
+        raise AttitudeError(f"an array of shape {axes.shape} holds no axes", expected="shape (3,) or (N, 3)")
+    off = np.abs(np.einsum("ij,ij->i", axes, axes) - 1.0)
+    good = off <= _NOT_UNIT
+    if not good.all():
+        row = int(np.argmin(good))
+        raise AttitudeError(
+            f"({', '.join(f'{part:g}' for part in axes[row])}) is no axis",
+            where=f"reading {row + 1} of those added",
+            expected="a unit vector: north, east, down",
+        )
 
 
 def _clear_if_empty(row: Floats) -> None:
