@@ -21,7 +21,7 @@ from analysis.cli.common import (
 from analysis.fold.check import check_fold
 from analysis.fold.outliers import find_outliers
 from analysis.fold.settings import CheckSettings
-from analysis.fold.words import degrees, figure_line, headline, more, turned
+from analysis.fold.words import degrees, figure_line, headline, line_text, more, plane_text, turned
 from analysis.orient.features import Feature
 from analysis.stats.sums import FEATURES
 
@@ -31,7 +31,6 @@ if TYPE_CHECKING:
     from analysis.files.table import ReadingTable
     from analysis.fold.outliers import Outlier
     from analysis.fold.records import AxisEstimate, FoldCheck
-    from analysis.orient.attitudes import Line
 
 _OUTLIERS_NAMED = 5
 _WIDTH = 14
@@ -116,24 +115,18 @@ def text_of(check: FoldCheck) -> str:
     if check.hinge is not None:
         lines.append(_row("Hinge", f"{_line(check.hinge)}, from {check.hinge.source}"))
     if check.cleavage is not None:
-        plane = check.cleavage.plane
-        lines.append(
-            _row("Cleavage", f"{plane.strike_deg:03.0f}/{plane.dip_deg:02.0f}{_ellipse(check.cleavage)}")
-        )
+        lines.append(_row("Cleavage", f"{plane_text(check.cleavage.plane)}{_ellipse(check.cleavage)}"))
     if check.intersection is not None:
         mean = check.intersection
         lines.append(
             _row("Intersection", f"{_line(mean.axis)}, {mean.measured} measured, {mean.computed} computed")
         )
     if check.limbs is not None:
-        limbs = "; ".join(
-            f"{limb.plane.strike_deg:03.0f}/{limb.plane.dip_deg:02.0f} ({limb.count})"
-            for limb in check.limbs.both
-        )
+        limbs = "; ".join(f"{plane_text(limb.plane)} ({limb.count})" for limb in check.limbs.both)
         lines.append(_row("Limbs", f"{limbs}; interlimb angle {degrees(check.limbs.interlimb_deg)}"))
     lines += [
-        _row("L01 on limb", f"{one.limb.removeprefix('limb ')}: {_limb_line(one.computed)} computed"
-             + (f", {_limb_line(one.measured)} measured ({one.measured_count})" if one.measured else ""))
+        _row("L01 on limb", f"{one.limb.removeprefix('limb ')}: {line_text(one.computed)} computed"
+             + (f", {line_text(one.measured)} measured ({one.measured_count})" if one.measured else ""))
         for one in check.limb_lines
     ]  # fmt: skip
     signed = check.sense != "unsigned"
@@ -157,11 +150,7 @@ def _row(name: str, text: str) -> str:
 
 
 def _line(axis: AxisEstimate) -> str:
-    return f"{axis.line.trend_deg:03.0f}/{axis.line.plunge_deg:02.0f}{_ellipse(axis)}"
-
-
-def _limb_line(line: Line) -> str:
-    return f"{line.trend_deg:03.0f}/{line.plunge_deg:02.0f}"
+    return f"{line_text(axis.line)}{_ellipse(axis)}"
 
 
 def _ellipse(axis: AxisEstimate) -> str:

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from analysis.fold.records import NextReading
+from analysis.fold.words import plane_text
 from analysis.orient.features import Feature
 from analysis.stats.moments import COUNT, tensor
 
@@ -25,6 +26,8 @@ def bedding_where(hinge: AxisFit, bedding: Floats, limbs: Limbs | None, pole: Fl
     The hinge's error along a is lowered by (x.g)^2, x the new pole and g the direction U N^-1 a, where N is
     the bedding's moment (..., 24) across the hinge and a the cleavage pole's part across it.
     """
+    if bedding[COUNT] < 0.5:
+        return "on both limbs"
     if limbs is None:
         return "on the other limb: bedding so far lies on one side of the fold"
     first, second = limbs.both
@@ -42,7 +45,9 @@ def bedding_where(hinge: AxisFit, bedding: Floats, limbs: Limbs | None, pole: Fl
     other = second if best is first else first
     slope = best.plane.dip_deg - other.plane.dip_deg
     word = "steep " if slope > 15.0 else "gentle " if slope < -15.0 else ""
-    return f"on the {word}{best.name}, near {best.plane.strike_deg:03.0f}/{best.plane.dip_deg:02.0f}"
+    if not best.name.startswith("limb"):  # its name says already how it differs
+        word = ""
+    return f"on the {word}{best.name}, near {plane_text(best.plane)}"
 
 
 def cleavage_where(sums: RunningSums, feature: Feature) -> str:
@@ -72,15 +77,15 @@ def next_reading(
     """Give the reading with the larger gain: of bedding for the hinge, or of `other` for the cleavage."""
     if gain_hinge > gain_cleavage:
         if hinge is None:
-            return NextReading(Feature.BEDDING, "on both limbs")
+            held = sums.count(Feature.BEDDING)
+            return NextReading(
+                Feature.BEDDING,
+                "on both limbs" if held < 2 else "on the other limb: bedding so far is all alike",
+            )
         where = bedding_where(hinge, sums.total(Feature.BEDDING), limbs, pole)
         feature = Feature.BEDDING
     else:
         where, feature = cleavage_where(sums, other), other
     if new_outcrop:
-        where = (
-            f"at a new outcrop, {where.removeprefix('at outcrop ')}"
-            if feature is Feature.BEDDING
-            else "at a new outcrop"
-        )
+        where = f"at a new outcrop, {where}" if feature is Feature.BEDDING else "at a new outcrop"
     return NextReading(feature, where)

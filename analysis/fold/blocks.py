@@ -23,7 +23,7 @@ from analysis.stats.watching import watched_multiplier
 
 if TYPE_CHECKING:
     from analysis.fold.limbs import Limbs
-    from analysis.fold.records import Counts
+    from analysis.fold.records import AxisEstimate, Counts
     from analysis.fold.transection import Transection
     from analysis.orient.vectors import Floats
     from analysis.stats.axes import AxisFit
@@ -54,6 +54,21 @@ def missing_for_cleavage(counts: Counts) -> str:
     return (
         f"The cleavage needs {PLANES_AT_FIRST_LOOK:.0f} cleavage readings or {LINES_AT_FIRST_LOOK:.0f} intersection "
         f"lines: {counts.cleavage} and {counts.intersection} so far."
+    )
+
+
+def undetermined(hinge: AxisEstimate | None, cleavage: AxisEstimate | None, counts: Counts) -> str:
+    """Say which axis the readings leave open though there are enough of them."""
+    if hinge is None and counts.bedding:
+        return (
+            "Bedding so far is all of one attitude: any direction in the bed could be the hinge. "
+            "Read the other limb, or hinge lines."
+        )
+    if hinge is None or not np.isfinite(hinge.fit.covariance).all():
+        return "The hinge is not determined: its readings agree on no direction. Read bedding on both limbs."
+    what = "intersection lines" if cleavage is None else "cleavage readings"
+    return (
+        f"The cleavage is not determined: the {what} agree on no plane. Read it again where it is clearest."
     )
 
 

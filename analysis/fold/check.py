@@ -191,17 +191,19 @@ def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit 
         if len(set(read.tolist()) - {-1}) == 1 and (read >= 0).all():
             limb = beds.limbs.both[int(read[0])].name
             warnings.append(
-                f"All intersection lines come from one limb (the {limb}): their mean is drawn along the cleavage. "
-                "Read some on the other limb."
+                f"All intersection lines come from one limb (the {limb}). If the fold is transected, they plunge "
+                "differently on the other limb, and their mean is off the hinge for that alone. Read some there."
             )
     if check.cleavage is None and check.readings.intersection:
         warnings.append(
-            "From intersection lines alone: this takes the cleavage to be steep. Read cleavage planes."
+            "No cleavage plane read: the angle comes from intersection lines, and takes the cleavage to be steep. "
+            "Read some cleavage planes to be free of that."
         )
     if check.hinge is not None and check.readings.bedding >= 6:
         flat = sum(1 for limb in (check.limbs.both if check.limbs else ()) if limb.plane.dip_deg < 10.0)
         if flat:
             warnings.append(
-                "A limb dips less than 10°: the strikes of such beds say little, their poles all the same."
+                f"{'Both limbs dip' if flat == 2 else 'One limb dips'} less than 10°: strikes read there are loose. "
+                "The check works with poles, which are not; but look at the dip, not at the strike, to judge a reading."
             )
     return warnings

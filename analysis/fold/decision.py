@@ -14,6 +14,7 @@ from analysis.fold.transection import FEWEST_CLUSTERS, Transection, fit_cleavage
 from analysis.fold.watch import (
     LINES_AT_FIRST_LOOK,
     PLANES_AT_FIRST_LOOK,
+    hinge_is_clear,
     information_since_first_look,
     stream_progress,
     watch,
@@ -42,8 +43,10 @@ def decide(
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
         if transection is not None and check.hinge is not None:
             check = _with_angle(check, transection)
-        return _advised(check.changed(because=tuple(waiting), warnings=tuple(warnings)), sums)
+        because = tuple(waiting) or (blocks.undetermined(check.hinge, check.cleavage, counts),)
+        return _advised(check.changed(because=because, warnings=tuple(warnings)), sums)
 
+    clear = bool(hinge_is_clear(check.hinge.fit))
     check = _with_angle(_with_fixed_interval(check, transection), transection)
     waits, blocked, notes = _kept_back(check, sums, transection, lines)
     waiting += waits
@@ -52,11 +55,10 @@ def decide(
         stream_progress(counts.cleavage, counts.intersection),
     )
     information = information_since_first_look(transection, *progress)
-    clear = not any("hinge is" in s for s in waiting + blocked)
     seen = watch(transection, information, min(progress) >= 1.0 and clear, settings)
     variance = float(transection.variance)
     check = check.changed(
-        interval_deg=(float(seen.low_deg), float(seen.high_deg)) if seen.looked else None,
+        interval_deg=_within_90(float(seen.low_deg), float(seen.high_deg)) if seen.looked else None,
         numbers=WatchNumbers(
             delta_deg=check.transection_deg or 0.0,
             hinge_variance=float(transection.steady_hinge_variance),
@@ -155,7 +157,12 @@ def _with_fixed_interval(check: FoldCheck, transection: Transection) -> FoldChec
         return check.changed(se_deg=se)
     half = t_quantile(0.5 + 0.5 * check.settings.confidence, df) * se
     delta = float(transection.delta_deg)
-    return check.changed(se_deg=se, df=df, fixed_interval_deg=(delta - half, delta + half))
+    return check.changed(se_deg=se, df=df, fixed_interval_deg=_within_90(delta - half, delta + half))
+
+
+def _within_90(low: float, high: float) -> tuple[float, float]:
+    # A line and a plane are never more than 90 degrees apart, whatever an early, wide interval says.
+    return max(low, -90.0), min(high, 90.0)
 
 
 def _kept_back(

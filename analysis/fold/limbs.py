@@ -20,21 +20,22 @@ if TYPE_CHECKING:
 # Halves of a single cluster lie 2.65 of their standard deviations apart, halves of an even round 3.5 (computed
 # here, for a normal and a uniform distribution): from about there on both sides of the fold have been read.
 _TWO_LIMBS_FROM: Final = 3.2
+_FLAT_BELOW_DEG: Final = 5.0
 _OCTANTS: Final = ("N", "NE", "E", "SE", "S", "SW", "W", "NW")
 
 
 @dataclass(frozen=True, slots=True)
 class Limb:
-    """One limb: its mean bedding plane, the number of readings, and their spread about the hinge, degrees."""
+    """One limb: its mean bedding plane, the number of readings, and their spread about the hinge, degrees.
+
+    `name` tells it from the other limb: 'limb dipping NW', 'flat limb', or, where both dip the same way, 'steeper
+    limb dipping NW'.
+    """
 
     plane: Plane
     count: int
     spread_deg: float
-
-    @property
-    def name(self) -> str:
-        """Name by the direction it dips in, such as 'limb dipping NW'."""
-        return f"limb dipping {_OCTANTS[round(self.plane.dip_direction_deg / 45.0) % 8]}"
+    name: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,11 +100,24 @@ def find_limbs(
     if apart < _TWO_LIMBS_FROM * pooled or apart < 1.0:
         return None
     poles = eigen(moment)[1][..., 0]
+    planes = (Plane.from_pole(poles[0]), Plane.from_pole(poles[1]))
     first, second = (
-        Limb(Plane.from_pole(pole), round(float(count)), float(width))
-        for pole, count, width in zip(poles, counts, spread, strict=True)
+        Limb(plane, round(float(count)), float(width), name)
+        for plane, count, width, name in zip(planes, counts, spread, _names(*planes), strict=True)
     )
     return Limbs(first, second, *_bisected(poles, cleavage))
+
+
+def _names(first: Plane, second: Plane) -> tuple[str, str]:
+    flat = [plane.dip_deg < _FLAT_BELOW_DEG for plane in (first, second)]
+    ways = [_OCTANTS[round(plane.dip_direction_deg / 45.0) % 8] for plane in (first, second)]
+    names = [f"limb dipping {way}" for way in ways]
+    if any(flat) and not all(flat):  # the way in which a flat limb dips means nothing
+        names[flat.index(True)] = "flat limb"
+    elif ways[0] == ways[1]:
+        steeper = int(second.dip_deg > first.dip_deg)
+        names[steeper], names[1 - steeper] = f"steeper {names[0]}", f"gentler {names[0]}"
+    return names[0], names[1]
 
 
 def _bisected(poles: Floats, cleavage: Floats | None) -> tuple[float, Plane]:

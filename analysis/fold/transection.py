@@ -49,7 +49,8 @@ class Transection(NamedTuple):
     outcrops
         (...), outcrops with readings of either axis.
     fixed_freedom, steady_freedom
-        (...), degrees of freedom of the two pairs above (Satterthwaite).
+        (...), degrees of freedom of the two pairs above (Satterthwaite). `fixed_freedom` is 0 where the readings of
+        one axis fit it exactly because there are too few: that their scatter is none says nothing then.
 
     """
 
@@ -161,7 +162,9 @@ def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> 
             _quadratic(cleavage_pull, cleavage.even_covariance) * scale,
         ]
     of_hinge, of_cleavage, even_hinge, even_cleavage = (
-        np.where(np.isnan(part), np.inf, part) for part in parts
+        # Infinite times zero is not known; a tiny negative is rounding where there is no scatter.
+        np.where(np.isnan(part), np.inf, np.maximum(part, 0.0))
+        for part in parts
     )
     steady_hinge, steady_cleavage = np.maximum(of_hinge, even_hinge), np.maximum(of_cleavage, even_cleavage)
 
@@ -172,8 +175,11 @@ def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> 
     with np.errstate(invalid="ignore", divide="ignore"):
         between = np.sum(pull * pull, axis=-1) * scale * outcrops / outcrop_freedom(outcrops)
     girdle = np.any(rows[0][..., COUNT] > 0.5, axis=-1)
-    fixed = _satterthwaite(
-        of_hinge, hinge.readings - np.where(girdle, 2.0, 1.0), of_cleavage, cleavage.readings - 1.0
+    spare_hinge, spare_cleavage = hinge.readings - np.where(girdle, 2.0, 1.0), cleavage.readings - 1.0
+    fixed = np.where(
+        np.minimum(spare_hinge, spare_cleavage) > 0.0,
+        _satterthwaite(of_hinge, spare_hinge, of_cleavage, spare_cleavage),
+        0.0,
     )
     return Transection(
         delta_deg=np.where(has_sense, clockwise, 1.0) * size,

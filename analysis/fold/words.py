@@ -6,9 +6,11 @@ from typing import TYPE_CHECKING
 
 from analysis.fold.records import Verdict
 from analysis.orient.features import Feature
+from analysis.orient.forms import azimuth_text, inclination_text
 
 if TYPE_CHECKING:
     from analysis.fold.records import FoldCheck, MoreReadings
+    from analysis.orient.attitudes import Line, Plane
 
 _PLURAL = {
     Feature.BEDDING: "bedding",
@@ -22,6 +24,16 @@ def degrees(value: float) -> str:
     """Write an angle to whole degrees, or to a tenth below ten, without a minus zero."""
     text = f"{abs(value):.1f}" if abs(value) < 9.95 else f"{abs(value):.0f}"
     return f"{text.removesuffix('.0')}°"
+
+
+def plane_text(plane: Plane) -> str:
+    """Write a plane as strike/dip by the right-hand rule, to whole degrees: '054/83'."""
+    return f"{azimuth_text(plane.strike_deg)}/{inclination_text(plane.dip_deg)}"
+
+
+def line_text(line: Line) -> str:
+    """Write a line as trend/plunge, to whole degrees: '040/20'."""
+    return f"{azimuth_text(line.trend_deg)}/{inclination_text(line.plunge_deg)}"
 
 
 def turned(value: float, *, signed: bool = True) -> str:
@@ -52,6 +64,8 @@ def headline(check: FoldCheck) -> str:
     """Give the first line of the verdict strip: the state as a sentence."""
     delta = check.transection_deg
     if check.verdict is Verdict.TRANSECTED and delta is not None:
+        if degrees(delta) == "0°":
+            return "Transected, by less than 0.1°"
         return f"Transected: {against_hinge(delta, signed=check.sense != 'unsigned')}"
     if check.verdict is Verdict.AXIAL_PLANAR:
         return f"Axial planar within {degrees(check.settings.margin_deg)}"

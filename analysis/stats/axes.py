@@ -13,6 +13,7 @@ Everything broadcasts: a leading shape (...) stands for any number of folds or m
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
@@ -29,6 +30,11 @@ if TYPE_CHECKING:
 # usual one. Common practice, no source: 5 to 6 degrees for a compass on natural surfaces.
 USUAL_SCATTER_DEG: Final = 5.5
 _HELPED_BELOW: Final = 4.0
+# A compass is read to whole degrees. Rounding alone scatters by 1/sqrt(12) degree, so readings that agree to the
+# digit are not known any better than that.
+ROUNDING_DEG: Final = 12.0**-0.5
+_USUAL_VARIANCE: Final = math.radians(USUAL_SCATTER_DEG) ** 2
+_ROUNDING_VARIANCE: Final = math.radians(ROUNDING_DEG) ** 2
 # Eigenvalues closer than this share of the largest are one value: the axis is undetermined.
 _SAME_EIGENVALUE: Final = 1e-12
 
@@ -106,12 +112,14 @@ def eigen(symmetric: Floats) -> tuple[Floats, Floats]:
 
 
 def _variance(squares: Floats, freedom: Floats) -> Floats:
-    """Variance of one residual from their sum of squares, helped out below four degrees of freedom."""
+    """Variance of one residual from their sum of squares, helped out below four degrees of freedom.
+
+    Never below what rounding to whole degrees alone makes.
+    """
     own = np.maximum(freedom, 0.0)
     help_out = np.maximum(_HELPED_BELOW - own, 0.0)
-    return np.asarray(
-        (np.maximum(squares, 0.0) + help_out * np.radians(USUAL_SCATTER_DEG) ** 2) / (own + help_out)
-    )
+    helped = (np.maximum(squares, 0.0) + help_out * _USUAL_VARIANCE) / (own + help_out)
+    return np.asarray(np.maximum(helped, _ROUNDING_VARIANCE))
 
 
 def _weight(stream: Stream, moment: Floats, count: Floats) -> Floats:
