@@ -7,6 +7,7 @@ from pathlib import Path
 
 import click
 import pytest
+from click.testing import CliRunner
 
 from fieldapp.command import main
 
@@ -36,5 +37,8 @@ def test_options_that_the_readme_names_exist():
 
 @pytest.mark.parametrize("name", sorted(documented_commands()))
 def test_help_of_every_command_gives_an_example(name):
-    """Each command's help shows how to call it."""
-    assert f"hingewise {name}" in (main.commands[name].help or "")
+    """Each command's help shows how to call it, on a line of its own that can be copied."""
+    done = CliRunner().invoke(main, [name, "--help"])
+    assert done.exit_code == 0
+    lines = [line.strip() for line in done.output.splitlines()]
+    assert any(line.startswith(f"hingewise {name}") for line in lines[lines.index("Example:") :])
