@@ -175,7 +175,8 @@ class NarrowingFunnel(Widget):
             x = min(max(x, self.x), self.right - words.width)
             taken[name] = add_words(group, words, colour, x, y)
 
-        put("up", "clockwise +", theme.muted, left - dp(2), top + dp(2))
+        if scene.known.any():
+            put("up", "clockwise +", theme.muted, left - dp(2), top + dp(2))
         names = PAINTS.words("readings in the fold →", size)
         put("across", "readings in the fold →", theme.muted, right - names.width, self.y)
         band = PAINTS.words(f"within ±{scene.margin_deg:g}°", size)

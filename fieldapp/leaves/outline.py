@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from kivy.app import App
-from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
+from kivy.properties import BooleanProperty, NumericProperty, ObjectProperty, StringProperty
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
@@ -30,6 +30,7 @@ class VerdictStrip(BoxLayout):
     sign = StringProperty("open ring")
     headline = StringProperty("")
     figures = StringProperty("")
+    figure_lines = NumericProperty(1)
 
 
 class LeafKey(ButtonBehavior, BoxLayout):

@@ -33,6 +33,8 @@ class Words(Label):
 
     def on_size(self, *_: object) -> None:
         """Wrap to the new width."""
+        if self.fit != "grow" and (self.shown_share < 1.0 or self.texture_size[1] > self.height):
+            self._trigger_texture()  # a change of height alone would not render again
         # No height is set: Kivy would cut off, unseen, what does not fit in it.
         self.text_size = (None if self.fit == "line" else self.width, None)
 

@@ -32,7 +32,7 @@ def open_app(tmp_path, clock):
     Config.set("graphics", "maxfps", "0")  # frames follow one another at once
     opened = []
 
-    def opener(size=(800, 1280), *, first_time=False, name="notebook.db", **values):
+    def opener(size=(600, 960), *, first_time=False, name="notebook.db", **values):
         path = tmp_path / name
         if not first_time and not path.exists():
             _make_notebook(path, clock)

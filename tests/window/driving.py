@@ -91,7 +91,7 @@ class Driver:
         """A new finger at a place in pixels."""
         self._count += 1
         width, height = self.window.size
-        return self._finger("fingers", self._count, (x / width, y / height))
+        return self._finger("fingers", self._count, (float(x) / width, float(y) / height))
 
     def touch(self, x: float, y: float) -> None:
         """Touch a place in pixels and lift the finger."""

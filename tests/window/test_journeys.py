@@ -39,7 +39,7 @@ def touch_reading(driver, leaf, key):
     driver.touch(*net.to_window(x, y))
 
 
-@pytest.mark.parametrize("size", [(800, 1280), (360, 640)], ids=["tablet", "small phone"])
+@pytest.mark.parametrize("size", [(600, 960), (360, 640)], ids=["tablet", "small phone"])
 def test_a_fold_is_logged_by_touch_until_the_verdict_changes(open_app, size):
     """From an empty notebook, touches alone bring the strip from keep reading to transected, in few touches."""
     driver = open_app(size, first_time=True)
@@ -47,7 +47,7 @@ def test_a_fold_is_logged_by_touch_until_the_verdict_changes(open_app, size):
     strip = driver.app.outline.ids.strip
     assert strip.sign == "open ring"
     planes, lines, kept = set(), set(), 0
-    for typed in fold(60, transection_deg=12.0, outcrops=1):
+    for typed in fold(60, transection_deg=14.0, scatter_deg=2.0, outcrops=1):
         touches = enter(driver, typed)
         kept += 1
         (planes if typed.feature.is_plane else lines).add(touches)
@@ -137,7 +137,7 @@ def test_turning_the_tablet_keeps_everything_and_shows_both_leaves(driver, clock
     driver.press(log.grid_large.keys["SE"])
     driver.press(log.side.keys["keep"])
     assert len(check.net._keys) == 9
-    driver.resize(800, 1280)
+    driver.resize(600, 960)
     driver.frames(5)
     assert driver.app.outline.names_shown == ("Log",)
     assert page.recent[0].text == "045/30 SE"

@@ -1,0 +1,110 @@
+"""Run in a process of its own: opens the app at one size, density and font scale and prints what is at fault.
+
+Density and font scale come from KIVY_METRICS_DENSITY and KIVY_METRICS_FONTSCALE, which Kivy reads once.
+"""
+
+from __future__ import annotations
+
+import json
+import os
+import sys
+import tempfile
+from dataclasses import replace
+from pathlib import Path
+
+os.environ.setdefault("KIVY_NO_ARGS", "1")
+os.environ.setdefault("KIVY_NO_FILELOG", "1")
+os.environ.setdefault("KIVY_LOG_MODE", "PYTHON")
+
+
+def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:
+    """Visit every leaf and every sheet; give faults by place."""
+    from driving import Driver
+    from geometry import faults
+    from kivy.config import Config
+    from mossgarth import TestClock, fold, type_into
+
+    from analysis.orient.features import Feature
+    from fieldapp.settings import Appearance
+
+    Config.set("graphics", "maxfps", "0")
+    density = float(os.environ.get("KIVY_METRICS_DENSITY", "1"))
+    clock = TestClock()
+    found: dict[str, list[str]] = {}
+    with tempfile.TemporaryDirectory() as folder:
+        size = (round(width_dp * density), round(height_dp * density))
+        driver = Driver(Path(folder) / "notebook.db", size=size, clock=clock)
+        app, outline = driver.app, driver.app.outline
+
+        def look(place: str) -> None:
+            driver.frames(8)
+            found[place] = faults(outline)
+
+        look("safety")
+        app.close_sheets()
+        page = app.page
+        page.choose_fold("Mossgarth upper limb")
+        page.choose_outcrop("MG-14 north face")
+        look("Log, nothing read")
+        outline.show("Check")
+        look("Check, nothing read")
+        outline.show("Log")
+        type_into(page, fold(20, transection_deg=4.0, scatter_deg=5.0), clock)
+        look("Log, just kept")
+        page.choose_feature(Feature.BEDDING)
+        for digit in "04530":
+            page.digit(int(digit))
+        look("Log, digits whole")
+        page.choose_quadrant("NW")
+        look("Log, a check asks")
+        page.choose_quadrant("E")
+        look("Log, the quadrant does not fit")
+        page.clear()
+        for digit in "045":
+            page.digit(int(digit))
+        page.point()
+        page.digit(5)
+        for digit in "30":
+            page.digit(int(digit))
+        page.point()
+        page.digit(5)
+        look("Log, decimals")
+        page.mend(page.standing[0].reading_id)
+        page.set_overturned(overturned=True)
+        look("Log, mending")
+        page.clear()
+        for name in ("settings", "place", "readings", "note"):
+            app.open_sheet(name)
+            look(f"sheet {name}")
+            app.close_sheets()
+        page.strike_out(page.standing[2].reading_id)
+        look("Log, struck out")
+        outline.show("Check")
+        check = outline.leaf("Check")
+        look("Check, net")
+        page.name_reading(page.standing[0].reading_id)
+        look("Check, a reading named")
+        check.close_named()
+        check.show_picture("plan")
+        look("Check, plan")
+        check.show_picture("net")
+        outline.show("Fault")
+        look("Fault")
+        outline.leaf("Fault").ask_strike()
+        look("sheet number")
+        app.close_sheets()
+        page.set_fault(replace(page.fault, strike_deg=12.0, zone_width_m=1500.0, sense="sinistral"))
+        look("Fault, filled in")
+        outline.show("Hand over")
+        look("Hand over")
+        page.change_settings(replace(page.settings, appearance=Appearance.DARK, left_handed=True))
+        outline.show("Log")
+        look("Log, dark, left-handed")
+        driver.stop()
+    return {place: texts for place, texts in found.items() if texts}
+
+
+if __name__ == "__main__":
+    here = Path(__file__).resolve().parent
+    sys.path[:0] = [str(here), str(here.parent.parent)]
+    print(json.dumps(main(float(sys.argv[1]), float(sys.argv[2]))))
