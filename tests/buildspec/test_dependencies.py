@@ -33,7 +33,7 @@ def imported_by(folder):
     """Return the top-level names that a folder's files import from outside the project and the library."""
     names = set()
     # Tests may bring helpers of their own along: modules beside them are no dependencies.
-    own = {path.stem for path in (ROOT / folder).rglob("*.py")} | {"analysis", "fieldapp", "buildspec"}
+    own = {path.stem for path in (ROOT / folder).rglob("*.py")} | {"analysis", "fieldapp", "buildspec", "tests"}
     for path in (ROOT / folder).rglob("*.py"):
         for node in ast.walk(ast.parse(path.read_text(encoding="utf-8"))):
             if isinstance(node, ast.Import):
