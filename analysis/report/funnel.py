@@ -144,7 +144,7 @@ class _Funnel:
             self.delta, self.low, self.high = without_sense(self.delta, self.low, self.high)
 
     def draw(self) -> None:
-        top = self.sheet.draw_strip(self.check) - 0.42
+        top = self.sheet.draw_strip(self.check) - 0.5
         frame = (_LEFT_IN, _BOTTOM_IN, _WIDE_IN - _LEFT_IN - _RIGHT_IN, top - _BOTTOM_IN)
         self.axes = self.sheet.axes_at(*frame)
         self._set_span()
@@ -203,7 +203,7 @@ class _Funnel:
     # -- what is drawn -------------------------------------------------------------------------------------
 
     def _draw_frame(self) -> None:
-        from matplotlib.ticker import FuncFormatter, MaxNLocator  # noqa: PLC0415 - loaded when a figure is drawn
+        from matplotlib.ticker import MaxNLocator  # noqa: PLC0415 - loaded when a figure is drawn
 
         axes, palette = self.axes, self.palette
         axes.set_facecolor(palette.card)
@@ -212,11 +212,13 @@ class _Funnel:
         for side in ("left", "bottom"):
             axes.spines[side].set_color(palette.muted)
         axes.tick_params(colors=palette.muted, labelcolor=palette.ink, labelsize=_WORDS_PT)
-        axes.yaxis.set_major_locator(
-            MaxNLocator(7, steps=[1, 2, 5, 10] if self.top - self.bottom < 90.0 else [1, 3, 10])
-        )
-        axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: _tick(value, signed=self.signed)))
-        axes.xaxis.set_major_locator(MaxNLocator(9, steps=[1, 2, 5, 10], integer=True))
+        # Ticks are set one by one: a locator's own may lie outside the frame.
+        angles = MaxNLocator(7, steps=[1, 2, 5, 10] if self.top - self.bottom < 90.0 else [1, 3, 10])
+        shown = [v for v in angles.tick_values(self.bottom, self.top) if self.bottom <= v <= self.top]
+        axes.set_yticks(shown, [_tick(value, signed=self.signed) for value in shown])
+        counts = MaxNLocator(9, steps=[1, 2, 5, 10], integer=True)
+        shown = [v for v in counts.tick_values(self.first, self.last) if self.first <= v <= self.last]
+        axes.set_xticks(shown, [f"{value:.0f}" for value in shown])
         axes.axhspan(
             -self.margin if self.signed else 0.0,
             self.margin,
@@ -275,7 +277,7 @@ class _Funnel:
     def _draw_words(self, top: float) -> None:
         sheet = self.sheet
         sense = "transection, clockwise +" if self.signed else "transection, without a sense on the map"
-        sheet.words(0.3, top + 0.14, sense, _WORDS_PT, quiet=True, gid="up")
+        sheet.words(0.3, top + 0.2, sense, _WORDS_PT, quiet=True, gid="up")
         sheet.words(
             _WIDE_IN - _RIGHT_IN,
             0.2,

@@ -203,7 +203,9 @@ class _Net:
 
     def _draw_mean(self, estimate: AxisEstimate, gid: str) -> None:
         place = equal_area_xy(estimate.vector)
-        size = mean_mark(self.axes, place, gid, self.palette, small=self._hides(estimate))
+        size = mean_mark(
+            self.axes, place, gid, self.palette, disc=gid == "hinge", small=self._hides(estimate)
+        )
         self.placer.block(self._pixels(place), self._points_as_pixels(size) / 2.0, 40.0)
 
     def _hides(self, estimate: AxisEstimate) -> bool:
@@ -319,9 +321,10 @@ def scatter_marks(
     )
 
 
-def mean_mark(axes: Axes, place: Floats, gid: str, palette: Palette, *, small: bool = False) -> float:
+def mean_mark(
+    axes: Axes, place: Floats, gid: str, palette: Palette, *, disc: bool, small: bool = False
+) -> float:
     """Draw the marker of a mean, a disc for the hinge and an open diamond else, and return its size in points."""
-    disc = gid == "hinge"
     size = (_DISC_PT if not small else 0.75 * _DISC_PT) if disc else _DIAMOND_PT
     # Edge colour, edge width and height above the paper of each layer: the disc lies between the diamond's ground
     # and its line, so that neither hides the other where they coincide.
@@ -413,9 +416,7 @@ class _Key:
             ends = middle + np.array([[-0.16, -0.07], [0.12, 0.07]])
             self.sheet.strokes([ends], 1.8, self.palette.second, "key-mean")
         elif estimate is not None:
-            mean_mark(
-                self.sheet.axes, middle, "hinge" if estimate is self.check.hinge else "other", self.palette
-            )
+            mean_mark(self.sheet.axes, middle, "key", self.palette, disc=estimate is self.check.hinge)
         if figure is None or estimate is None:
             self.sheet.words(self.left, y - 0.26, "not known yet", 10.0, gid=f"figure {name}")
             return
