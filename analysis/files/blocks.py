@@ -31,7 +31,8 @@ if TYPE_CHECKING:
     from analysis.files.records import Records
 
 HOPELESS_ROWS = 10_000  # so many bad rows at the start, and not one good, are enough to know
-MAX_BAD_ROWS = 100_000  # with some good ones among them
+MAX_BAD_ROWS = 20_000  # or so many, and fewer good ones
+MAX_BAD_IN_BLOCK = 100_000
 
 Array = npt.NDArray[Any]
 Bools = npt.NDArray[np.bool_]
@@ -127,10 +128,12 @@ class BlockReader:
         # Which decimal mark the last block had: only where to begin trying.
         self._decimal = "."
         self._columns = [column_named(name) for name in header.names]
-        self._numbers = [
-            place
-            for place, column in enumerate(self._columns)
-            if column is not None and column.kind is Kind.NUMBER
+        self._numbers = self._places(Kind.NUMBER)
+        self._wholes = self._places(Kind.WHOLE)
+
+    def _places(self, kind: Kind) -> list[int]:
+        return [
+            place for place, column in enumerate(self._columns) if column is not None and column.kind is kind
         ]
 
     def read(self, records: Records) -> ReadBlock:
@@ -184,6 +187,7 @@ class BlockReader:
             for place, each in series.items()
             if not (each.dtype == object or isinstance(each.dtype, pd.StringDtype))
             and not (place in self._numbers and each.dtype == np.float64)
+            and not (place in self._wholes and each.dtype == np.int64)
         ]
         if guessed:
             again = self._parsed(text, ".", [], text_only=guessed)
@@ -260,7 +264,7 @@ class BlockReader:
                 good[row] = some_good = True
             elif verdict is not None:
                 faults.append(verdict)
-                if len(faults) >= (MAX_BAD_ROWS if some_good or not begins else HOPELESS_ROWS):
+                if len(faults) >= (MAX_BAD_IN_BLOCK if some_good or not begins else HOPELESS_ROWS):
                     raise hopeless(len(faults), faults[0][0])
         block.keep(good)
         return faults
@@ -375,6 +379,9 @@ def _coded(series: pd.Series[Any], column: Column, refused: Bools) -> Coded:
 
 def _looked_up(series: pd.Series[Any], column: Column, refused: Bools, delimiter: str) -> Array:
     """The values of a column of numbers or flags, each different cell read once."""
+    if series.dtype == np.int64:
+        refused |= ((series < column.low) | (series > column.high)).to_numpy()
+        return series.to_numpy().astype(dtype_of(column))
     codes, texts = _categories(series)
     table = np.zeros(len(texts) + 1, dtype=dtype_of(column))
     unknown = np.zeros(len(texts) + 1, dtype=bool)

@@ -71,7 +71,7 @@ def read_table(*sources: Source, strict: bool = False, progress: Progress | None
                     log.add_rows(read.faults)
                     if strict and log.rows:
                         raise log.refuse()
-                    if log.rows > MAX_BAD_ROWS:
+                    if log.rows > max(MAX_BAD_ROWS, builder.rows):
                         raise hopeless(log.rows, log.kept[0])
                     if progress is not None and whole and length is not None:
                         progress(min(1.0, (done + bytes_read) / whole))

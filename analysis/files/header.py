@@ -66,10 +66,9 @@ def refuse_other_kinds(file: str, start: bytes) -> None:
     for magic, kind in _OTHER_KINDS:
         if start.startswith(magic):
             raise CsvError(f"this is {kind}", where=file, expected="CSV in UTF-8", mend=_SAVE_AS)
-    first_line = start[:4096]
-    if b"\0" in first_line:
+    if b"\0" in start.partition(b"\n")[0]:
         raise CsvError("this is no text", where=file, expected="CSV in UTF-8", mend=_SAVE_AS)
-    if not start.strip():
+    if not start.removeprefix(BOM).strip():
         raise CsvError(
             "the file is empty",
             where=file,

@@ -244,13 +244,18 @@ def _line_end(text: bytes, start: int, end_byte: bytes) -> int:
 def _record_end(text: bytes, start: int, delimiter: bytes, end_byte: bytes) -> tuple[int, int, int]:
     """End of the record that starts here, its number of cells (0: malformed), its number of lines.
 
-    The end is -1 where a quote opens that the text does not close.
+    A malformed record ends with its first line: most likely a quote was left open, and the quote of a later
+    cell taken for its end; the lines between are readings of their own. (So, too, no line is looked at more
+    than a few times.) The end is -1 where a quote opens that the text does not close.
     """
-    end = _line_end(text, start, end_byte)
+    first_end = end = _line_end(text, start, end_byte)
     if text.find(b'"', start, end) < 0:
-        well = b"\r" not in text[start:end].removesuffix(b"\n").removesuffix(b"\r") or end_byte == b"\r"
-        return end, (text.count(delimiter, start, end) + 1) if well else 0, 1
-    place, cells, lines, malformed = start, 1, 1, False
+        return (
+            end,
+            0 if _has_line_end(text[start:end], end_byte) else text.count(delimiter, start, end) + 1,
+            1,
+        )
+    place, cells, lines = start, 1, 1
     while True:
         if text[place : place + 1] == b'"':
             close = _closing_quote(text, place + 1)
@@ -258,13 +263,23 @@ def _record_end(text: bytes, start: int, delimiter: bytes, end_byte: bytes) -> t
                 return -1, 0, 0
             lines += text.count(end_byte, place, close)
             place = close + 1
-            malformed |= text[place : place + 1] not in (delimiter, b"\r", b"\n", b"")
+            if text[place : place + 1] not in (delimiter, b"\r", b"\n", b""):
+                return first_end, 0, 1
         end = _line_end(text, place, end_byte)
         part = text.find(delimiter, place, end)
+        if _has_line_end(text[place : end if part < 0 else part], end_byte):
+            return first_end, 0, 1
         if part < 0:
-            inner = text[place:end].removesuffix(b"\n").removesuffix(b"\r")
-            return end, 0 if malformed or b"\r" in inner or b"\n" in inner else cells, lines
+            return end, cells, lines
         place, cells = part + 1, cells + 1
+
+
+def _has_line_end(part: bytes, end_byte: bytes) -> bool:
+    """Whether a line end stands in a line, other than at its end."""
+    inner = part.removesuffix(end_byte)
+    if end_byte == b"\n":
+        inner = inner.removesuffix(b"\r")
+    return b"\r" in inner or b"\n" in inner
 
 
 def _closing_quote(text: bytes, place: int) -> int:

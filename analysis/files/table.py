@@ -337,12 +337,12 @@ class ReadingTable:
 
 
 class TableBuilder:
-    """Collects blocks of rows, of one or several files, into a table."""
+    """Collects blocks of rows, of one or several files, into a table; `rows` counts them."""
 
     def __init__(self) -> None:
         self._parts: dict[str, list[Array]] = {}
         self._codes: dict[str, Coded] = {}
-        self._rows = 0
+        self.rows = 0
         self._lines: list[Ints] = []
         self._files: list[str] = []
         self._file_rows: list[int] = []
@@ -362,10 +362,10 @@ class TableBuilder:
             self._parts[name].append(self._blank(name, rows))
         for name, column in block.columns.items():
             if name not in self._parts:
-                self._parts[name] = [self._blank(name, self._rows)] if self._rows else []
+                self._parts[name] = [self._blank(name, self.rows)] if self.rows else []
             self._parts[name].append(self._recoded(name, column) if isinstance(column, Coded) else column)
         self._lines.append(block.lines)
-        self._rows += rows
+        self.rows += rows
         self._file_rows[-1] += rows
 
     def _coded(self, name: str) -> Coded:
@@ -403,11 +403,11 @@ class TableBuilder:
             if droppable and not any(arrays.get(name, ())):
                 arrays.pop(name, None)
             else:
-                arrays.setdefault(name, np.full(self._rows, "", dtype=object))
+                arrays.setdefault(name, np.full(self.rows, "", dtype=object))
                 other.append(name)
         lines = np.concatenate(self._lines) if self._lines else np.empty(0, dtype=np.int32)
         file_codes = (
-            np.broadcast_to(np.int32(0), self._rows)
+            np.broadcast_to(np.int32(0), self.rows)
             if len(self._files) == 1
             else np.repeat(np.arange(len(self._files), dtype=np.int32), self._file_rows)
         )

@@ -6,13 +6,16 @@ import io
 from datetime import UTC, datetime, timedelta, timezone
 
 import pytest
+from hypothesis import strategies as st
+
 from analysis.files.columns import QUADRANTS
 from analysis.files.csvfile import read_table
 from analysis.files.reading import Reading, quadrant_fits
-from hypothesis import strategies as st
 
 # Everything a file can hold, with the characters that hurt drawn often.
-NASTY = st.sampled_from(["=1+1", "'", "''=", '"', ",", ";", "\t", "\r", "\n", "\r\n", "+", "-", "@", " ", "é", "ß"])
+NASTY = st.sampled_from(
+    ["=1+1", "'", "''=", '"', ",", ";", "\t", "\r", "\n", "\r\n", "+", "-", "@", " ", "é", "ß"]
+)
 ANY_TEXT = st.text(st.characters(exclude_categories=["Cs"], exclude_characters="\0"), max_size=12)
 TEXT = st.lists(NASTY | ANY_TEXT, max_size=4).map("".join)
 NAME = st.lists(
@@ -48,7 +51,9 @@ def readings(draw, reading_id=None):
         fields |= {"trend_deg": azimuth, "plunge_deg": inclination}
     if draw(YES_NO):
         fields |= {"latitude_deg": draw(st.floats(-90, 90)), "longitude_deg": draw(st.floats(-180, 180))}
-    other_names = NAME.map(str.strip).filter(lambda name: name and "_" not in name and not name.startswith("column"))
+    other_names = NAME.map(str.strip).filter(
+        lambda name: name and "_" not in name and not name.startswith("column")
+    )
     return Reading(
         reading_id=draw(NAME.filter(str.strip)) if reading_id is None else draw(reading_id),
         feature=feature,

@@ -11,6 +11,7 @@ from datetime import UTC, datetime, timedelta, timezone
 
 import numpy as np
 import pytest
+
 from analysis.errors import ReadingError
 from analysis.files.columns import NAMES
 from analysis.files.reading import Other, Reading, content_id, imported_reading
@@ -193,7 +194,8 @@ def test_a_revision_follows(noon):
 
 
 @pytest.mark.parametrize(
-    "changes", [{"reading_id": "b"}, {"revision": 9}, {"revised_at": None}, {"colour": "red"}, {"dip_deg": 91}]
+    "changes",
+    [{"reading_id": "b"}, {"revision": 9}, {"revised_at": None}, {"colour": "red"}, {"dip_deg": 91}],
 )
 def test_a_revision_cannot_change_what_follows_by_itself(noon, changes):
     """Identity, count and time of a revision, unknown fields and impossible values are refused."""
