@@ -10,6 +10,7 @@ from analysis.files.reading import Reading
 from analysis.orient.attitudes import Plane
 from analysis.orient.entrychecks import EntryCheck
 from fieldapp.checking import Around, Checked, checked, expected_quadrant
+from fieldapp.draft import Place
 from fieldapp.entry import EntryDraft, turned
 from fieldapp.settings import PlaneNotation
 from fieldapp.states import EntryState
@@ -43,7 +44,9 @@ def entry_of(
     planes = settings.notation
     found = checked(draft, planes, around)
     by_strike = draft.feature.is_plane and planes is PlaneNotation.STRIKE_DIP
-    asked = by_strike and settings.require_quadrant and draft.sensed is None
+    # A reading mended without touching its digits needs no more than it was kept with.
+    as_it_was = draft.sensed is not None or (bool(draft.mending) and draft.digits.place is Place.LOADED)
+    asked = by_strike and settings.require_quadrant and not as_it_was
     required = asked and _dips(draft, planes, found)
     missing = _missing(draft, settings, found, required=required)
     azimuth_label, inclination_label = labels_of(draft.feature, planes)

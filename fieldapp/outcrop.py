@@ -256,7 +256,7 @@ class OutcropPage(PageExchange):
     # -- place ----------------------------------------------------------------------------------------------
 
     def choose_fold(self, name: str) -> bool:
-        """Go to a fold, made if new, at the outcrop last read on it."""
+        """Go to a fold, made if new, at the outcrop last read on it (the first reading makes a first one)."""
         return self._go(name, None)
 
     def choose_outcrop(self, name: str) -> bool:
@@ -270,16 +270,15 @@ class OutcropPage(PageExchange):
     def _go(self, fold: str, outcrop: str | None) -> bool:
         try:
             fold = checked_name(fold, "fold")
-            if outcrop is None:
-                outcrop = self._last_outcrop(fold)
-            outcrop = checked_name(outcrop, "outcrop")
+            made = None if outcrop is None else checked_name(outcrop, "outcrop")
+            outcrop = self._last_outcrop(fold) if made is None else made
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.WARNING))
         other_fold = fold != self._fold
         self._fold, self._outcrop = fold, outcrop
         self._message = None
         try:
-            self._notebook.make_place(fold, outcrop)
+            self._notebook.make_place(fold, made)
             self._notebook.save_settings({"page.fold": fold, "page.outcrop": outcrop})
         except HingewiseError as error:  # the place is chosen all the same; the next reading makes it
             self._message = Message(str(error), MessageKind.TROUBLE)

@@ -30,10 +30,12 @@ class SetClock:
     now: datetime = field(default=START)
 
     def __call__(self) -> datetime:
+        """Give the time, a second later at each look."""
         self.now += timedelta(seconds=1)
         return self.now
 
     def later(self, **by: float) -> None:
+        """Let time pass."""
         self.now += timedelta(**by)
 
 

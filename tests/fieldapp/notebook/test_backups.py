@@ -82,7 +82,7 @@ def test_restoring_brings_the_backup_back_and_keeps_what_was(notebook, path, mak
     assert notebook.count() == 3
 
 
-def test_a_backup_that_cannot_be_read_restores_nothing(notebook, path, make_reading, tmp_path):
+def test_a_backup_that_cannot_be_read_restores_nothing(notebook, make_reading, tmp_path):
     """A broken backup is refused and the notebook stays as it is."""
     notebook.keep(make_reading())
     broken = tmp_path / "broken.backup"
