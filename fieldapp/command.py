@@ -34,14 +34,14 @@ def has_display() -> bool:
 )
 @click.pass_context
 def main(ctx: click.Context, notebook: Path | None) -> None:
-    r"""Check whether the folds beside a fault are transected by their cleavage.
+    """Check whether the folds beside a fault are transected by their cleavage.
 
     Without a command this opens the app on your notebook.
 
     \b
     Example:
       hingewise check readings.csv
-    """
+    """  # noqa: D301 - click reads the escape
     if ctx.invoked_subcommand is not None:
         return
     if not has_display():
@@ -60,12 +60,12 @@ def main(ctx: click.Context, notebook: Path | None) -> None:
 )  # fmt: skip
 @click.option("--no-window", is_flag=True, help="Do without the app even where there is a display.")
 def demo(output: Path, *, no_window: bool) -> None:
-    r"""Open the app on the invented Mossgarth folds; with no display print their verdicts and write pictures.
+    """Open the app on the invented Mossgarth folds; with no display print their verdicts and write pictures.
 
     \b
     Example:
       hingewise demo --no-window -o out
-    """
+    """  # noqa: D301 - click reads the escape
     if has_display() and not no_window:
         from fieldapp.app import demo_path_beside, open_app  # noqa: PLC0415 - as in main
 

@@ -21,12 +21,12 @@ __all__ = ["hingewise"]
 @click.group(cls=OneLineErrors, context_settings={"help_option_names": ["-h", "--help"]})
 @click.version_option(__version__, prog_name="hingewise")
 def hingewise() -> None:
-    r"""Check whether the folds beside a fault are transected by their cleavage.
+    """Check whether the folds beside a fault are transected by their cleavage.
 
     \b
     Example:
       hingewise check readings.csv
-    """
+    """  # noqa: D301 - click reads the escape
 
 
 for _command in (check, explain_command, join_command, replay, simulate):

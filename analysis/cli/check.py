@@ -23,6 +23,7 @@ from analysis.fold.outliers import find_outliers
 from analysis.fold.settings import CheckSettings
 from analysis.fold.words import degrees, figure_line, headline, line_text, more, plane_text, turned
 from analysis.orient.features import Feature
+from analysis.stats.descriptors import shape, share_near_girdle
 from analysis.stats.sums import FEATURES
 
 if TYPE_CHECKING:
@@ -31,9 +32,11 @@ if TYPE_CHECKING:
     from analysis.files.table import ReadingTable
     from analysis.fold.outliers import Outlier
     from analysis.fold.records import AxisEstimate, FoldCheck
+    from analysis.orient.vectors import Floats
 
 _OUTLIERS_NAMED = 5
-_WIDTH = 14
+_FEWEST_WITH_SHAPE = 3
+_WIDTH = 15
 
 
 @click.command()
@@ -52,21 +55,22 @@ def check(
     as_json: bool,
     strict: bool,
 ) -> None:
-    r"""Give a verdict for every fold in FILE...
+    """Give a verdict for every fold in FILE...
 
     \b
     Example:
       hingewise check monday.csv tuesday.csv --margin 4
-    """
+    """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     table = read_files(files, strict=strict)
-    checks = [check_table(part, settings, name) for name, part in chosen_folds(table, fold, outcrop)]
+    checks = [(check_table(part, settings, name), part) for name, part in chosen_folds(table, fold, outcrop)]
     if as_json:
-        print_json([one.to_json() for one in checks])
-        return
-    if not checks:
+        print_json([one.to_json() for one, _ in checks])
+    elif checks:
+        texts = (text_of(one, axes_by_feature(part)[Feature.BEDDING]) for one, part in checks)
+        click.echo("\n\n".join(texts))
+    else:
         click.echo("No readings stand in these files.")
-    click.echo("\n\n".join(text_of(one) for one in checks))
 
 
 def check_table(table: ReadingTable, settings: CheckSettings, fold: str) -> FoldCheck:
@@ -104,8 +108,8 @@ def _outlier_sentence(
     )
 
 
-def text_of(check: FoldCheck) -> str:
-    """Write a check as readable lines."""
+def text_of(check: FoldCheck, bedding: Floats | None = None) -> str:
+    """Write a check as readable lines; with the bedding poles, shape (n, 3), also the shape of their cloud."""
     lines = [check.fold or "(unnamed fold)", f"  {headline(check)}", f"  {figure_line(check)}", ""]
     counts = check.readings
     read = ", ".join(f"{counts.of(feature)} {feature}" for feature in Feature)
@@ -124,6 +128,8 @@ def text_of(check: FoldCheck) -> str:
     if check.limbs is not None:
         limbs = "; ".join(f"{plane_text(limb.plane)} ({limb.count})" for limb in check.limbs.both)
         lines.append(_row("Limbs", f"{limbs}; interlimb angle {degrees(check.limbs.interlimb_deg)}"))
+    if bedding is not None and len(bedding) >= _FEWEST_WITH_SHAPE and check.hinge is not None:
+        lines.append(_row("Bedding poles", _cloud(bedding, check.hinge.vector)))
     lines += [
         _row("L01 on limb", f"{one.limb.removeprefix('limb ')}: {line_text(one.computed)} computed"
              + (f", {line_text(one.measured)} measured ({one.measured_count})" if one.measured else ""))
@@ -143,6 +149,13 @@ def text_of(check: FoldCheck) -> str:
         lines.append(_row("Read next", f"{check.next_reading.feature}, {check.next_reading.where}"))
     lines += [_row("Mind" if k == 0 else "", warning) for k, warning in enumerate(check.warnings)]
     return "\n".join(lines)
+
+
+def _cloud(poles: Floats, hinge: Floats) -> str:
+    cloud = shape(np.linalg.eigvalsh(poles.T @ poles))
+    named = ", ".join(f"{name} {value:.2f}" for name, value in zip("KCPGR", map(float, cloud), strict=True))
+    near, about = (100.0 * share_near_girdle(poles, hinge, within) for within in (10.0, 20.0))
+    return f"{named}; {near:.0f}% within 10° of the girdle, {about:.0f}% within 20°"
 
 
 def _row(name: str, text: str) -> str:

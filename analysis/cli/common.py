@@ -27,14 +27,43 @@ AnyCommand = TypeVar("AnyCommand", bound="Callable[..., Any]")
 
 
 class OneLineErrors(click.Group):
-    """A group of commands whose errors, ours and the files', are one line and exit code 2."""
+    """A group of commands whose errors, ours, the files' and the command line's, are one line and exit code 2."""
+
+    def make_context(
+        self,
+        info_name: str | None,
+        args: list[str],
+        parent: click.Context | None = None,
+        **extra: Any,  # noqa: ANN401 - as click has it
+    ) -> click.Context:
+        """Read the command line of the group."""
+        with _one_line():
+            return super().make_context(info_name, args, parent, **extra)
 
     def invoke(self, ctx: click.Context) -> Any:  # noqa: ANN401 - as click has it
-        """Run a command; a HingewiseError becomes an error of the command line."""
-        try:
+        """Run a command."""
+        with _one_line():
             return super().invoke(ctx)
-        except HingewiseError as error:
-            raise _OneLine(str(error)) from error
+
+
+@contextmanager
+def _one_line() -> Iterator[None]:
+    try:
+        yield
+    except (click.exceptions.NoArgsIsHelpError, _OneLine):
+        raise
+    except click.UsageError as error:
+        command = error.ctx.command_path if error.ctx else "hingewise"
+        raise _OneLine(f"{error.format_message()} See '{command} --help'.") from error
+    except click.ClickException as error:
+        raise _OneLine(error.format_message()) from error
+    except HingewiseError as error:
+        raise _OneLine(str(error)) from error
+    except BrokenPipeError:  # the reader of our output has gone; click knows what to do
+        raise
+    except OSError as error:
+        where = f"{error.filename}: " if error.filename else ""
+        raise _OneLine(f"{where}{error.strerror or error}") from error
 
 
 class _OneLine(click.ClickException):
@@ -56,6 +85,14 @@ strict_option = click.option(
 def settings_options(command: AnyCommand) -> AnyCommand:
     """Add --margin and --confidence."""
     command = click.option(
+        "--confidence",
+        metavar="SHARE",
+        type=float,
+        default=0.95,
+        show_default=True,
+        help="Of the intervals, over all looks together.",
+    )(command)
+    return click.option(
         "--margin",
         "margin_deg",
         metavar="DEG",
@@ -64,20 +101,12 @@ def settings_options(command: AnyCommand) -> AnyCommand:
         show_default=True,
         help="M: a smaller transection counts as axial planar.",
     )(command)
-    return click.option(
-        "--confidence",
-        metavar="SHARE",
-        type=float,
-        default=0.95,
-        show_default=True,
-        help="Of the intervals, over all looks together.",
-    )(command)
 
 
 def fold_options(command: AnyCommand) -> AnyCommand:
     """Add --fold and --outcrop."""
-    command = click.option("--fold", metavar="NAME", help="Only this fold.")(command)
-    return click.option("--outcrop", metavar="NAME", help="Only this outcrop.")(command)
+    command = click.option("--outcrop", metavar="NAME", help="Only this outcrop.")(command)
+    return click.option("--fold", metavar="NAME", help="Only this fold.")(command)
 
 
 @contextmanager

@@ -65,12 +65,12 @@ def explain_command(
     as_json: bool,
     strict: bool,
 ) -> None:
-    r"""Compare what rotation and transpression predict with the folds in FILE...
+    """Compare what rotation and transpression predict with the folds in FILE...
 
     \b
     Example:
       hingewise explain readings.csv --fault-strike 052 --sense sinistral --zone-width-km 2
-    """
+    """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = Fault(
         strike_deg=fault_strike, sense=Sense(sense), zone_width_km=zone_width_km, strike_se_deg=fault_strike_se

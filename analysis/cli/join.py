@@ -23,7 +23,7 @@ from analysis.cli.common import read_files, strict_option
 def join_command(
     ctx: click.Context, files: tuple[Path, ...], output: Path, conflicts_file: Path | None, *, strict: bool
 ) -> None:
-    r"""Join the readings of FILE FILE... into one file.
+    """Join the readings of FILE FILE... into one file.
 
     Readings are one and the same by reading_id and revision. Two different contents under one of them are a
     conflict: both are kept, both are listed, and the exit code is 1.
@@ -31,7 +31,7 @@ def join_command(
     \b
     Example:
       hingewise join monday.csv tuesday.csv -o all.csv --conflicts clashes.csv
-    """
+    """  # noqa: D301 - click reads the escape
     from analysis.files.csvfile import write_readings  # noqa: PLC0415 - pandas is loaded only when files are read
     from analysis.files.join import join  # noqa: PLC0415
 

@@ -44,12 +44,12 @@ def replay(
     as_json: bool,
     strict: bool,
 ) -> None:
-    r"""Print the check after each reading in FILE..., in recorded order (file order where no time is given).
+    """Print the check after each reading in FILE..., in recorded order (file order where no time is given).
 
     \b
     Example:
       hingewise replay readings.csv --fold "Mossgarth fold" --json
-    """
+    """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     table = read_files(files, strict=strict)
     for name, part in chosen_folds(table, fold, outcrop):

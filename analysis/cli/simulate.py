@@ -108,7 +108,13 @@ def _trend_plunge(_ctx: click.Context, _option: click.Parameter, text: str) -> t
     help="Folds of this design.",
 )
 @click.option("--whole-degrees", is_flag=True, help="Round as a compass is read.")
-@click.option("--seed", type=int, default=1, show_default=True, help="The same seed gives the same readings.")
+@click.option(
+    "--seed",
+    type=click.IntRange(min=0),
+    default=1,
+    show_default=True,
+    help="The same seed gives the same readings.",
+)
 @click.option(
     "-o", "--output", metavar="FILE", type=click.Path(path_type=Path), help="A file instead of the screen."
 )
@@ -128,12 +134,12 @@ def simulate(
     *,
     whole_degrees: bool,
 ) -> None:
-    r"""Write invented folds with a known answer as CSV.
+    """Write invented folds with a known answer as CSV.
 
     \b
     Example:
       hingewise simulate --hinge 028/14 --transection 9 --seed 7 -o invented.csv
-    """
+    """  # noqa: D301 - click reads the escape
     from analysis.files.csvfile import csv_text, write_readings  # noqa: PLC0415 - pandas only when files are written
 
     design = FoldDesign(
