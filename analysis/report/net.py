@@ -259,7 +259,10 @@ class _Net:
         origin = self._pixels(np.zeros((1, 2)))[0] + shift
         made.set_position(tuple(self.axes.transData.inverted().transform(origin)))
         if place.leader:
-            ends = np.array([place.box.nearest(*place.anchor), place.anchor])
+            start, stop = np.array(place.box.nearest(*place.anchor)), np.array(place.anchor)
+            # The line ends at the edge of the marker, not in its middle.
+            way = (stop - start) / np.linalg.norm(stop - start)
+            ends = np.array([start, stop - way * (gap - 3.0)])
             xy = np.asarray(self.axes.transData.inverted().transform(ends))
             self.axes.plot(
                 xy[:, 0], xy[:, 1], color=self.palette.muted, linewidth=0.7, gid=f"{gid}-leader", zorder=3.5
