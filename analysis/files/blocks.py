@@ -139,7 +139,7 @@ class BlockReader:
     def read(self, records: Records) -> ReadBlock:
         """Make columns of the good rows; raises CsvError where a file begins with nothing but bad rows."""
         doubtful = self._not_plain(records)
-        frame = self._frame(_blanked(records, doubtful, self.header.line_end), records)
+        frame = self._frame(_blanked(records, doubtful, self.header.line_end), records, doubtful)
         block, refused = self._columns_of(frame, plain=b"'" not in records.text)
         block.lines = records.lines.astype(np.int32)
         doubtful |= refused | _unsure(block.columns)
@@ -168,8 +168,13 @@ class BlockReader:
             marked[-1] |= records.cells[-1] < len(self.header.names)
         return marked
 
-    def _frame(self, text: bytes, records: Records) -> dict[int, pd.Series[Any]]:
+    def _frame(self, text: bytes, records: Records, blanked: Bools) -> dict[int, pd.Series[Any]]:
         """Parse the text: numbers as floats where all are plain, all else as text, by place."""
+        wanted = len(self.header.names)
+        # The frame reader wants one row at least with all its cells; where none has, it gets one.
+        padded = int(np.max(records.cells, initial=0, where=~blanked)) < wanted
+        if padded:
+            text = self.header.delimiter.encode() * (wanted - 1) + self.header.line_end + text
         for decimal in dict.fromkeys((self._decimal, ".", "," if self.header.delimiter == ";" else ".")):
             try:
                 frame = self._parsed(text, decimal, self._numbers)
@@ -179,7 +184,7 @@ class BlockReader:
             break
         else:
             frame = self._parsed(text, ".", [])
-        series = {place: frame[place] for place in range(len(self._columns))}
+        series = {place: frame[place] for place in range(wanted)}
         # Text is taken as the frame reader infers it, which is fastest; where it took text for numbers (an
         # outcrop named 007) the column is read again.
         guessed = [
@@ -192,9 +197,11 @@ class BlockReader:
         if guessed:
             again = self._parsed(text, ".", [], text_only=guessed)
             series |= {place: again[place] for place in guessed}
-        if len(frame) != len(records):  # pragma: no cover - would be a fault of this package
+        if padded:
+            series = {place: each.iloc[1:] for place, each in series.items()}
+        if len(series[0]) != len(records):  # pragma: no cover - would be a fault of this package
             raise CsvError(
-                f"{len(frame)} rows parsed where {len(records)} were cut",
+                f"{len(series[0])} rows parsed where {len(records)} were cut",
                 where=f"{self.header.file}, line {int(records.lines[0])}",
                 expected="one row a record",
             )

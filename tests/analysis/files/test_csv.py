@@ -323,6 +323,14 @@ def test_the_last_line_may_lack_its_end_but_not_its_cells(read):
     assert "cut off" in str(table.faults[0])
 
 
+def test_rows_may_end_early(read):
+    """Spreadsheets leave out empty cells at the end of a row; all rows of a block may be short."""
+    text = "feature,strike_deg,dip_deg,note,revision\nbedding,45,30\ncleavage,1,2,x\n"
+    assert [(r.note, r.revision) for r in read(text)] == [("", 1), ("x", 1)]
+    assert len(read(text + "bedding,1,2,y,2\n")) == 3
+    assert [fault.line for fault in read("feature,strike_deg,dip_deg\nbedding\n\n7\n").faults] == [2, 4]
+
+
 def test_writing_is_atomic(tmp_path, monkeypatch):
     """A failure while writing leaves the old file and nothing else."""
     path = tmp_path / "readings.csv"

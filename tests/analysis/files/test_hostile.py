@@ -195,7 +195,7 @@ def test_many_faults_are_counted_and_few_kept(read):
 
 
 PIECES = [
-    *(piece.encode() for piece in "\" , ; \t \n \r \0 ' = - é \ufeff".split(" ")),
+    *(piece.encode() for piece in ['"', ",", ";", "\t", "\n", "\r", "\x00", "'", "=", "-", "é", "\ufeff"]),
     *b"bedding hinge 45 1,5 nan 1e9 yes feature strike_deg dip_deg reading_id revision recorded_at".split(),
     *(b" ", b"\xff", b"x" * 50, b"2026-05-01T09:30:00Z", PLANES.encode(), GOOD.encode()),
 ]
