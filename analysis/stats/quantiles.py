@@ -61,7 +61,10 @@ def t_quantile(probability: float, freedom: float) -> float:
 
 
 def student_multiplier(z: npt.ArrayLike, freedom: npt.ArrayLike) -> Floats:
-    """The t with the tail that a standard normal has at z >= 0, to about 0.5% (Wallace 1959, in closed form).
+    """The t with the tail that a standard normal has at z >= 0, nearly (Wallace 1959, in closed form).
+
+    For z of 2.5 to 4 it is never narrower by more than 0.01%, and wider by at most 5% from 5 degrees of freedom
+    on and 1.2% from 8 on.
 
     Wallace (1959) Ann. Math. Statist. 30: z = (8m+1)/(8m+3) sqrt(m ln(1 + t^2/m)), solved for t.
     """
