@@ -13,9 +13,11 @@ import numpy as np
 from analysis.fold.transection import FEWEST_CLUSTERS, outcrop_freedom
 from analysis.fold.watch import (
     GIRDLE_SCATTER_AT_MOST_DEG,
+    HINGE_PART_AT_MOST_DEG,
     HINGE_SE_AT_MOST_DEG,
     LINES_AT_FIRST_LOOK,
     PLANES_AT_FIRST_LOOK,
+    hinge_part_is_small,
     stream_progress,
 )
 from analysis.fold.words import degrees
@@ -87,6 +89,18 @@ def hinge_unclear(hinge: AxisFit, counts: Counts, limbs: Limbs | None) -> tuple[
     )
     blocked = bool(stream_progress(counts.bedding, counts.hinge) >= _HINGE_SHOULD_BE_CLEAR_FROM)
     return f"{known}: {why}", blocked
+
+
+def hinge_part_large(transection: Transection) -> str:
+    """Wait for a hinge whose error makes less of the transection's."""
+    if hinge_part_is_small(transection):
+        return ""
+    part = float(np.sqrt(transection.steady_hinge_variance))
+    known = f"to ±{degrees(2 * part)} only" if part < 45.0 else "hardly at all"
+    return (
+        f"Across the cleavage the hinge is known {known} (at most ±{degrees(2 * HINGE_PART_AT_MOST_DEG)}): "
+        "read more bedding, where the limbs are steeper, or hinge lines."
+    )
 
 
 def not_cylindrical(hinge: AxisFit, counts: Counts) -> str:

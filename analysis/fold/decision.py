@@ -178,6 +178,8 @@ def _kept_back(
         unclear, for_good = blocks.hinge_unclear(check.hinge.fit, counts, check.limbs)
         if unclear:
             (blocked if for_good else waits).append(unclear)
+        elif large := blocks.hinge_part_large(transection):
+            waits.append(large)
         blocked.append(blocks.not_cylindrical(check.hinge.fit, counts))
     blocked.append(blocks.outcrops_disagree(transection))
     if check.cleavage is None and lines is not None:

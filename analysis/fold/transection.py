@@ -29,6 +29,8 @@ _NO_SENSE_BELOW: Final = 0.2
 STEEP_WITHIN_DEG: Final = 15.0
 # Outcrops needed before the scatter between them is taken as an estimate (METHOD: four or more).
 FEWEST_CLUSTERS: Final = 4
+# Share of the readings' variance that outcrops are taken to add at least, when degrees of freedom are counted.
+LEAST_OF_OUTCROPS: Final = 0.4
 
 
 class Transection(NamedTuple):
@@ -90,15 +92,17 @@ class Transection(NamedTuple):
     def freedom(self) -> Floats:
         """Degrees of freedom, (...), of `variance` (Satterthwaite).
 
-        Where outcrops give the variance, what they add to that of the readings is a second component, known
-        as well as the outcrops are many. Measured: with six outcrops whose hinge varies by 3 degrees intervals
-        miss in 4.5% of folds at a scatter of 3 degrees and in 4.0% at 6; with four outcrops in 7.2 and 4.0%.
+        What outcrops add to the variance of the readings is a second component, known as well as the outcrops
+        are many. Where they seem to add little or nothing, that is known no better, so it is counted as if they
+        added LEAST_OF_OUTCROPS. Measured: the hinge varying by 3 degrees, scatter 3 degrees, intervals miss in
+        4.7% of folds with four outcrops and in 5.3% with six; without that least share in 8.4 and 6.8%.
         """
-        extra = np.where(self.by_outcrop, self.outcrop_variance - self.reading_variance, 0.0)
-        mixed = _satterthwaite(
-            self.reading_variance, self.steady_freedom, extra, outcrop_freedom(self.outcrops)
-        )
-        return np.where(self.by_outcrop, mixed, self.steady_freedom)
+        read = self.reading_variance
+        with np.errstate(invalid="ignore"):
+            extra = np.maximum(self.variance - read, LEAST_OF_OUTCROPS * read)
+        mixed = _satterthwaite(read, self.steady_freedom, extra, outcrop_freedom(self.outcrops))
+        clustered = self.outcrops >= FEWEST_CLUSTERS
+        return np.where(clustered, np.minimum(mixed, self.steady_freedom), self.steady_freedom)
 
 
 def fit_hinge(bedding: Floats, hinge_lines: Floats) -> AxisFit:

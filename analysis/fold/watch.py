@@ -25,6 +25,9 @@ LINES_AT_FIRST_LOOK: Final = 5.0
 # The error of the angle is taken as linear in the error of the hinge; beyond this the girdle may even be lost
 # in the scatter and the hinge swing to another axis. Measured: see the calibration.
 HINGE_SE_AT_MOST_DEG: Final = 8.0
+# What the hinge's error may make of the standard error of the transection. Measured: limbs of 15 degrees read
+# with a scatter of 10 degrees, intervals miss in 7.0% of folds without this and in 4.9% with it.
+HINGE_PART_AT_MOST_DEG: Final = 6.0
 # Bedding further off its girdle than this is not one cylindrical fold. Common practice, no source: a fold is
 # called cylindrical to within 10 and subcylindrical to within 20 degrees (Ramsay & Huber 1987, from memory).
 GIRDLE_SCATTER_AT_MOST_DEG: Final = 15.0
@@ -51,6 +54,11 @@ def hinge_is_clear(hinge: AxisFit) -> npt.NDArray[np.bool_]:
     return np.asarray(np.degrees(hinge.less_certain_se_rad) <= HINGE_SE_AT_MOST_DEG)
 
 
+def hinge_part_is_small(transection: Transection) -> npt.NDArray[np.bool_]:
+    """Tell, (...), whether the hinge is known well enough in the direction that makes the transection."""
+    return np.asarray(np.sqrt(transection.steady_hinge_variance) <= HINGE_PART_AT_MOST_DEG)
+
+
 def information_since_first_look(
     transection: Transection, hinge_progress: Floats, cleavage_progress: Floats
 ) -> Floats:
@@ -74,7 +82,7 @@ def watch(
         narrow = se * equivalence_multiplier(
             floor, information, freedom, settings.margin_deg, 1.0 - settings.confidence
         )
-    looked = np.asarray(ready, dtype=bool) & np.isfinite(half)
+    looked = np.asarray(ready, dtype=bool) & np.isfinite(half) & hinge_part_is_small(transection)
     size = np.abs(transection.delta_deg)
     transected = looked & (size > half)
     return Watched(
