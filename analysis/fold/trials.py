@@ -14,19 +14,23 @@ from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_h
 from analysis.fold.watch import (
     GIRDLE_SCATTER_AT_MOST_DEG,
     hinge_is_clear,
+    hinge_part_is_small,
     information_since_first_look,
     stream_progress,
     watch,
 )
 from analysis.stats.moments import COUNT, moments
 from analysis.stats.quantiles import student_multiplier
-from analysis.stats.synthetic import FoldDesign, draw
+from analysis.stats.synthetic import draw
 
 if TYPE_CHECKING:
     import numpy.typing as npt
 
     from analysis.fold.settings import CheckSettings
+    from analysis.fold.transection import Transection
     from analysis.orient.vectors import Floats
+    from analysis.stats.axes import AxisFit
+    from analysis.stats.synthetic import Drawn, FoldDesign
 
 Mode = Literal["planes", "lines", "planes and lines"]
 _NORMAL_975, _NORMAL_95 = 1.959963984540054, 1.6448536269514722
@@ -78,17 +82,28 @@ def run_trials(
     settings: CheckSettings,
     mode: Mode = "planes",
 ) -> Trials:
-    """Watch so many folds of one design, up to so many readings of each stream.
+    """Watch so many folds of one design, up to so many readings of each stream, read in turn.
 
     Streams are bedding and, by mode, cleavage planes, intersection lines, or both of these read together.
     """
-    drawn = draw(design, readings, folds, rng)
     at = looks((6, 6) if mode == "planes" else (6, 5), readings)
-    bedding = _by_look(drawn.bedding, drawn.outcrop, at[:, 0], design.outcrops)
-    none = np.zeros_like(bedding)
-    planes = none if mode == "lines" else _by_look(drawn.cleavage, drawn.outcrop, at[:, 1], design.outcrops)
-    lines = none if mode == "planes" else _by_look(drawn.lines, drawn.outcrop, at[:, 1], design.outcrops)
+    return watch_drawn(draw(design, readings, folds, rng), at, settings, mode)
 
+
+class Estimates(NamedTuple):
+    """What the readings held at each look of each fold say; shape (folds, looks)."""
+
+    hinge: AxisFit
+    transection: Transection
+    information: Floats
+
+
+def estimate_drawn(drawn: Drawn, at: npt.NDArray[np.int64], mode: Mode = "planes") -> Estimates:
+    """Estimate from the first readings of both streams, `at` (looks, 2) of them."""
+    bedding = _by_look(drawn.bedding, drawn.outcrop, at[:, 0])
+    none = np.zeros_like(bedding)
+    planes = none if mode == "lines" else _by_look(drawn.cleavage, drawn.outcrop, at[:, 1])
+    lines = none if mode == "planes" else _by_look(drawn.lines, drawn.outcrop, at[:, 1])
     hinge = fit_hinge(bedding, none)
     cleavage = fit_cleavage_to_lines(lines) if mode == "lines" else fit_cleavage(planes, lines)
     found = transection(hinge, cleavage, (bedding, planes, lines))
@@ -96,8 +111,16 @@ def run_trials(
     information = information_since_first_look(
         found, stream_progress(at[:, 0], 0), stream_progress(n_planes, n_lines)
     )
+    return Estimates(hinge, found, information)
+
+
+def watch_drawn(
+    drawn: Drawn, at: npt.NDArray[np.int64], settings: CheckSettings, mode: Mode = "planes"
+) -> Trials:
+    """Watch folds whose readings are drawn already, with looks at `at` (looks, 2) readings of both streams."""
+    hinge, found, information = estimate_drawn(drawn, at, mode)
     off_girdle = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
-    clear = hinge_is_clear(hinge)
+    clear = hinge_is_clear(hinge) & hinge_part_is_small(found)
     seen = watch(found, information, clear & ~off_girdle, settings)
     naive, naive_narrow = (
         student_multiplier(z, found.fixed_freedom) * np.sqrt(found.fixed_variance)
@@ -121,11 +144,8 @@ def run_trials(
     )
 
 
-def _by_look(
-    axes: Floats, outcrop: npt.NDArray[np.int64], held: npt.NDArray[np.int64], outcrops: int
-) -> Floats:
+def _by_look(axes: Floats, outcrop: npt.NDArray[np.int64], held: npt.NDArray[np.int64]) -> Floats:
     """Moments, (folds, looks, outcrops, 24), of the first `held` (looks,) axes (folds, readings, 3)."""
-    rows = (
-        moments(axes)[:, :, np.newaxis, :] * (outcrop[:, np.newaxis] == np.arange(outcrops))[..., np.newaxis]
-    )
+    outcrops = np.arange(outcrop.max() + 1)
+    rows = moments(axes)[:, :, np.newaxis, :] * (outcrop[:, np.newaxis] == outcrops)[..., np.newaxis]
     return np.asarray(np.cumsum(rows, axis=1)[:, held - 1])
