@@ -45,6 +45,7 @@ class EqualAreaNet(Widget):
         self.register_event_type("on_miss")
         self.words_boxes: dict[str, placing.Box] = {}
         self.redraws = 0
+        self._drawn_frame = False
         self._keys: list[str] = []
         self._places = np.zeros((0, 2))
         self._means: dict[str, np.ndarray] = {}
@@ -54,7 +55,9 @@ class EqualAreaNet(Widget):
         self.canvas.add(self._frame)
         self.canvas.add(self._layer)
         self._redraw = Clock.create_trigger(self.redraw, -1)
-        self.bind(pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self._redraw_scene = Clock.create_trigger(self._draw_scene_alone, -1)
+        self.bind(pos=self._redraw, size=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self.bind(scene=self._redraw_scene, marker_dp=self._redraw_scene)
         self._redraw()
 
     # Geometry
@@ -86,10 +89,13 @@ class EqualAreaNet(Widget):
         """Draw everything anew; the trigger calls it once a frame at most."""
         if self.width < dp(40) or self.height < dp(40):
             return
-        self.redraws += 1
-        self.words_boxes = {}
         self._draw_frame()
         self._draw_scene()
+
+    def _draw_scene_alone(self, *_: object) -> None:
+        # The frame stands as it is; where it has to be drawn as well, the other trigger does both.
+        if self._drawn_frame and not self._redraw.is_triggered:
+            self._draw_scene()
 
     def _draw_frame(self) -> None:
         group, theme, radius = self._frame, self.theme, self.radius
@@ -97,13 +103,14 @@ class EqualAreaNet(Widget):
         rim = strokes.circle(self.middle, radius)
         add_mesh(group, theme.card, [strokes.polygon(rim)])
         centre = np.array(self.middle)
-        ticks = []
-        for azimuth in range(0, 360, 10):
-            turn = np.radians(azimuth)
-            ray = np.array([np.sin(turn), np.cos(turn)])
-            long = dp(13) if azimuth % 90 == 0 else dp(6)
-            width = dp(2) if azimuth % 90 == 0 else dp(1.2)
-            ticks.append(strokes.line([centre + ray * radius, centre + ray * (radius - long)], width))
+        turns = np.radians(np.arange(0, 360, 10))
+        rays = np.stack([np.sin(turns), np.cos(turns)], axis=1)
+        on_rim = centre + rays * radius
+        main = np.arange(36) % 9 == 0  # north, east, south, west
+        ticks = [
+            strokes.segments(on_rim[main], on_rim[main] - rays[main] * dp(13), dp(2)),
+            strokes.segments(on_rim[~main], on_rim[~main] - rays[~main] * dp(6), dp(1.2)),
+        ]
         cross = [
             strokes.line([centre - (dp(5), 0), centre + (dp(5), 0)], dp(1.2)),
             strokes.line([centre - (0, dp(5)), centre + (0, dp(5))], dp(1.2)),
@@ -114,9 +121,12 @@ class EqualAreaNet(Widget):
         self.words_boxes["N"] = add_words(
             group, words, theme.ink, self.middle[0] - words.width / 2, self.middle[1] + radius + dp(2)
         )
+        self._drawn_frame = True
 
     def _draw_scene(self) -> None:
         group, theme, scene = self._layer, self.theme, self.scene
+        self.redraws += 1
+        self.words_boxes = {"N": self.words_boxes["N"]}
         group.clear()
         if scene.girdle_pole is not None:
             girdle = self._curve(sphere.great_circle(scene.girdle_pole))

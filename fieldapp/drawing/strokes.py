@@ -53,14 +53,14 @@ def joined(parts: Iterable[Triangles]) -> Triangles:
 def _normals(points: Floats, *, closed: bool) -> Floats:
     """Offset directions at the points, longer at corners so that the line keeps its width."""
     steps = np.roll(points, -1, axis=0) - points if closed else np.diff(points, axis=0)
-    lengths = np.maximum(np.linalg.norm(steps, axis=1, keepdims=True), 1e-12)
+    lengths = np.maximum(np.hypot(steps[:, 0], steps[:, 1]), 1e-12)[:, np.newaxis]
     across = np.stack([-steps[:, 1], steps[:, 0]], axis=1) / lengths
     if closed:
         before, after = np.roll(across, 1, axis=0), across
     else:
         before, after = np.concatenate([across[:1], across]), np.concatenate([across, across[-1:]])
     middle = before + after
-    length = np.linalg.norm(middle, axis=1, keepdims=True)
+    length = np.hypot(middle[:, 0], middle[:, 1])[:, np.newaxis]
     middle = np.where(length > 1e-6, middle / np.maximum(length, 1e-12), after)
     lean = np.sum(middle * after, axis=1, keepdims=True)
     return np.asarray(middle / np.maximum(lean, 1.0 / MITRE_LIMIT))
@@ -82,31 +82,43 @@ def line(points: npt.ArrayLike, width: float, *, closed: bool = False, soft: flo
     vertices[:, :, 3] = 0.5
     here = np.arange(count if closed else count - 1)
     there = (here + 1) % count
-    quads = [
-        np.stack([here * 4 + k, here * 4 + k + 1, there * 4 + k, there * 4 + k, here * 4 + k + 1, there * 4 + k + 1], 1)
-        for k in range(3)
-    ]
-    return Triangles(vertices.reshape(-1, 4), np.concatenate(quads).astype(np.uint16).ravel())
+    # For each step three strips of two triangles: soft edge, middle, soft edge.
+    ends = np.stack([here, here, there, there, here, there], axis=1) * 4
+    corners = ends[:, np.newaxis, :] + np.array([0, 1, 0, 0, 1, 1]) + np.arange(3)[:, np.newaxis]
+    return Triangles(vertices.reshape(-1, 4), corners.astype(np.uint16).ravel())
 
 
-def dashes(points: npt.ArrayLike, on: float, off: float) -> list[Floats]:
-    """Cut a line through points (n, 2) into dashes of length `on` with gaps `off`, in pixels."""
-    places = np.asarray(points, dtype=float).reshape(-1, 2)
-    if len(places) < FEWEST_POINTS:
-        return []
-    along = np.concatenate([[0.0], np.cumsum(np.linalg.norm(np.diff(places, axis=0), axis=1))])
-    pieces = []
-    for start in np.arange(0.0, along[-1], on + off):
-        stop = min(start + on, along[-1])
-        inside = places[(along > start) & (along < stop)]
-        ends = np.stack([np.interp((start, stop), along, places[:, axis]) for axis in (0, 1)], axis=1)
-        pieces.append(np.concatenate([ends[:1], inside, ends[1:]]))
-    return pieces
+def segments(starts: npt.ArrayLike, ends: npt.ArrayLike, width: float, *, soft: float = 1.0) -> Triangles:
+    """Draw many straight lines of one width at once, from points (n, 2) to points (n, 2)."""
+    first, last = (np.asarray(side, dtype=float).reshape(-1, 2) for side in (starts, ends))
+    steps = last - first
+    lengths = np.maximum(np.hypot(steps[:, 0], steps[:, 1]), 1e-12)[:, np.newaxis]
+    across = np.stack([-steps[:, 1], steps[:, 0]], axis=1) / lengths
+    outer, inner = (width + soft) / 2.0, max((width - soft) / 2.0, 0.0)
+    offsets = np.array([outer, inner, -inner, -outer])[:, np.newaxis]
+    vertices = np.empty((len(first), 2, 4, 4), np.float32)
+    for end, places in enumerate((first, last)):
+        vertices[:, end, :, :2] = places[:, np.newaxis, :] + across[:, np.newaxis, :] * offsets
+    vertices[..., 2] = (SOFT, SOLID, SOLID, SOFT)
+    vertices[..., 3] = 0.5
+    one = np.array([[k, k + 1, k + 4, k + 4, k + 1, k + 5] for k in range(3)]).ravel()
+    indices = np.arange(len(first))[:, np.newaxis] * 8 + one
+    return Triangles(vertices.reshape(-1, 4), indices.astype(np.uint16).ravel())
 
 
 def dashed(points: npt.ArrayLike, width: float, on: float, off: float) -> Triangles:
-    """Draw a dashed line."""
-    return joined(line(piece, width) for piece in dashes(points, on, off))
+    """Draw a dashed line; each dash is straight, as short ones are on any curve."""
+    places = np.asarray(points, dtype=float).reshape(-1, 2)
+    if len(places) < FEWEST_POINTS:
+        return NOTHING
+    steps = np.diff(places, axis=0)
+    along = np.concatenate([[0.0], np.cumsum(np.hypot(steps[:, 0], steps[:, 1]))])
+    starts = np.arange(0.0, along[-1], on + off)
+    ends = np.minimum(starts + on, along[-1])
+    first, last = (
+        np.stack([np.interp(at, along, places[:, axis]) for axis in (0, 1)], axis=1) for at in (starts, ends)
+    )
+    return segments(first, last, width)
 
 
 def polygon(points: npt.ArrayLike) -> Triangles:

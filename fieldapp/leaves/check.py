@@ -82,6 +82,7 @@ class CheckLeaf(FloatLayout):
         self.because = AdviceWords(name="Why", strong=False)
         self.named = Named()
         self._mean_named = ""
+        self._plan_is_behind = True
         self._picture_box = BoxLayout(orientation="vertical")
         self._bind()
 
@@ -113,9 +114,16 @@ class CheckLeaf(FloatLayout):
             self.funnel.scene = scenes.funnel_scene(page.funnel, next(iter(page.check.because), ""))
             self._show_words()
         if change & (Change.PLAN | Change.PLACE):
-            self.plan.scene = scenes.plan_scene(page.plan)
+            self._plan_is_behind = True
+            self._show_plan()
         if change & (Change.NAMED | Change.CHECK):
             self._show_named()
+
+    def _show_plan(self) -> None:
+        """Draw the plan, if it is on the screen; else it waits."""
+        if self.picture == "plan" and self._plan_is_behind:
+            self._plan_is_behind = False
+            self.plan.scene = scenes.plan_scene(self.page.plan)
 
     def _show_words(self) -> None:
         check, notation = self.page.check, self.page.settings.notation
@@ -171,6 +179,7 @@ class CheckLeaf(FloatLayout):
     def show_picture(self, name: str) -> None:
         """Show the net or the plan."""
         self.picture = self.pictures.chosen = name
+        self._show_plan()
         self._fill_picture()
 
     # Arranging

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import islice
 from typing import TYPE_CHECKING
 
 from analysis.orient.features import Feature
@@ -34,7 +35,9 @@ from fieldapp.wording import (
 )
 
 if TYPE_CHECKING:
+    from collections.abc import Iterator
 
+    from analysis.files.reading import Reading
     from analysis.fold.records import FoldCheck
     from fieldapp.making import Entry
     from fieldapp.settings import Settings
@@ -139,12 +142,14 @@ class PageView(PageNorth):
         return self._cached(
             "recent",
             Change.RECENT | Change.SETTINGS | Change.PLACE,
-            lambda: tuple(
-                line
-                for line in self.standing
-                if not line.struck_out or line.reading_id == self._just_struck
-            )[:RECENT],
+            lambda: tuple(line_of(r, self._settings.notation) for r in islice(self._not_struck(), RECENT)),
         )
+
+    def _not_struck(self) -> Iterator[Reading]:
+        """Readings of the fold, newest first, without those struck out before the last touch."""
+        for reading in reversed(self._running.readings.values()):
+            if not reading.struck_out or reading.reading_id == self._just_struck:
+                yield reading
 
     @property
     def standing(self) -> tuple[ReadingLine, ...]:

@@ -61,15 +61,23 @@ def test_two_equal_points_draw_no_nan():
 
 
 def test_dashes_have_their_length_and_gaps():
-    """A line of 10 in dashes of 3 with gaps of 2 gives two dashes of 3."""
-    lengths = [np.linalg.norm(np.diff(piece, axis=0), axis=1).sum() for piece in strokes.dashes([(0, 0), (10, 0)], 3, 2)]
-    assert lengths == pytest.approx([3.0, 3.0])
+    """A line of 10 in dashes of 3 with gaps of 2 covers two dashes of 3 by its width."""
+    mesh = strokes.dashed([(0, 0), (10, 0)], 2.0, 3.0, 2.0)
+    assert area(mesh) == pytest.approx(2 * 3.0 * 3.0)
+    assert sorted(set(np.round(mesh.vertices[:, 0], 6))) == [0.0, 3.0, 5.0, 8.0]
 
 
-def test_dashes_follow_a_bend():
-    """A dash across a corner goes round it."""
-    pieces = strokes.dashes([(0, 0), (4, 0), (4, 4)], 6.0, 2.0)
-    assert np.linalg.norm(np.diff(pieces[0], axis=0), axis=1).sum() == pytest.approx(6.0)
+def test_the_last_dash_ends_with_the_line():
+    """A dash that the line is too short for is cut off."""
+    assert strokes.dashed([(0, 0), (6, 0)], 2.0, 3.0, 2.0).vertices[:, 0].max() == pytest.approx(6.0)
+
+
+def test_many_straight_lines_cover_as_much_as_one_by_one():
+    """Drawing straight lines at once covers what drawing each alone does."""
+    starts = np.array([[0, 0], [5, 5], [9, 1]], dtype=float)
+    ends = np.array([[10, 0], [5, 25], [1, 7]], dtype=float)
+    alone = sum(area(strokes.line(pair, 3.0)) for pair in zip(starts, ends, strict=True))
+    assert area(strokes.segments(starts, ends, 3.0)) == pytest.approx(alone)
 
 
 def test_a_polygon_covers_its_area():
