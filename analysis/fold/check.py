@@ -111,7 +111,7 @@ def check_fold(
 
 def _estimate(fit: AxisFit, source: str, settings: CheckSettings) -> AxisEstimate:
     ellipse = None
-    if fit.readings > 2.0 and np.isfinite(fit.covariance).all():
+    if fit.ellipse_freedom > 0.0 and np.isfinite(fit.covariance).all():
         e = confidence_ellipse(fit, settings.confidence)
         ellipse = EllipseDeg(float(e.major_deg), float(e.minor_deg), e.major_axis, e.minor_axis)
     return AxisEstimate(lower_hemisphere(fit.vector), source, ellipse, fit)

