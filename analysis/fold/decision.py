@@ -183,7 +183,8 @@ def _kept_back(
         blocked.append(blocks.not_cylindrical(check.hinge.fit, counts))
     blocked.append(blocks.outcrops_disagree(transection))
     if check.cleavage is None and lines is not None:
-        blocked.append(blocks.too_steep_for_lines(check.hinge.vector, lines.vector))
+        steep = blocks.too_steep_for_lines(check.hinge.vector, lines.vector)
+        blocked.append(steep or blocks.flat_by_lines(transection))
     if check.cleavage is not None and lines is not None:
         planes = fit_cleavage(sums.by_outcrop(Feature.CLEAVAGE))
         angle, differ = blocks.planes_against_lines(planes, lines)

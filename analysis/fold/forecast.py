@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
+from analysis.fold.watch import HINGE_PART_AT_MOST_DEG
 from analysis.stats.watching import equivalence_multiplier, watched_multiplier
 
 if TYPE_CHECKING:
@@ -79,7 +80,8 @@ def settle(
     parts = (numbers.hinge_variance, numbers.cleavage_variance)
     now = parts[0] + parts[1]
     first, second = split(steps, counts, parts)
-    later = parts[0] * counts[0] / (counts[0] + first) + parts[1] * counts[1] / (counts[1] + second)
+    hinge_later = parts[0] * counts[0] / (counts[0] + first)
+    later = hinge_later + parts[1] * counts[1] / (counts[1] + second)
     # Where outcrops give the variance, further readings are taken to come from further outcrops.
     variance = numbers.variance * later / now
     freedom = numbers.freedom * (1.0 + steps / sum(counts))
@@ -97,7 +99,8 @@ def settle(
         truth * gained + np.sqrt(gained) * moves[:, : len(steps)], axis=1
     )
     size = np.abs(scores / precision[1:])
-    settled = ((size > half) | (size + narrow < settings.margin_deg)) & (steps >= must)
+    may = (steps >= must) & (hinge_later <= HINGE_PART_AT_MOST_DEG**2)
+    settled = ((size > half) | (size + narrow < settings.margin_deg)) & may
     when = np.where(settled.any(axis=1), steps[settled.argmax(axis=1)], np.inf)
     low, median, high = np.quantile(when, [_MIDDLE[0], 0.5, _MIDDLE[1]], method="inverted_cdf")
     return Settling(float(median), float(low), float(high))
