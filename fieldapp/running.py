@@ -28,7 +28,7 @@ if TYPE_CHECKING:
     from analysis.orient.vectors import Floats
     from fieldapp.settings import Settings
 
-LONGEST_HISTORY = 400  # points of the funnel that are computed anew; of more readings every few get one
+LONGEST_HISTORY = 200  # points of the funnel that are computed anew; of more readings every few get one
 TRAIL = 12
 
 Entry = tuple[Feature, str, "Floats"]  # feature, outcrop, vector
@@ -70,9 +70,22 @@ class RunningFold:
         self._rebuilt: tuple[FunnelPoint, ...] = ()
         self._since: list[FunnelPoint] = []
         self._check: FoldCheck | None = None
+        self._in_order: tuple[Neighbour, ...] | None = None
+        self._fill(readings)
+
+    def _fill(self, readings: Iterable[Reading]) -> None:
+        """Count in many readings at once, by outcrop and feature."""
+        together: dict[tuple[str, Feature], list[Neighbour]] = {}
         for reading in readings:
             self.readings[reading.reading_id] = reading
-            self._count_in(reading)
+            if not reading.struck_out:
+                neighbour = _neighbour(reading)
+                self._neighbours[reading.reading_id] = neighbour
+                together.setdefault((reading.outcrop, reading.feature), []).append(neighbour)
+        for (outcrop, feature), some in together.items():
+            vectors = np.stack([n.vector for n in some])
+            self.sums.add(feature, outcrop, vectors)
+            self._by_outcrop.setdefault(outcrop, RunningSums()).add(feature, outcrop, vectors)
 
     # -- changing ------------------------------------------------------------------------------------------
 
@@ -87,7 +100,7 @@ class RunningFold:
         else:
             self.readings.pop(reading.reading_id, None)
         self.version += 1
-        self._check = None
+        self._check = self._in_order = None
         if old is None:
             self._since.append(_point(self.check, self.standing_count))
         else:
@@ -108,13 +121,11 @@ class RunningFold:
     def _count_in(self, reading: Reading) -> None:
         if reading.struck_out:
             return
-        vector = reading.vector
-        self._neighbours[reading.reading_id] = Neighbour(
-            reading.reading_id, reading.feature, reading.outcrop, vector, reading
-        )
-        self.sums.add(reading.feature, reading.outcrop, vector)
+        counted = _neighbour(reading)
+        self._neighbours[reading.reading_id] = counted
+        self.sums.add(reading.feature, reading.outcrop, counted.vector)
         self._by_outcrop.setdefault(reading.outcrop, RunningSums()).add(
-            reading.feature, reading.outcrop, vector
+            reading.feature, reading.outcrop, counted.vector
         )
 
     def _count_out(self, reading: Reading) -> None:
@@ -133,7 +144,10 @@ class RunningFold:
     @property
     def neighbours(self) -> tuple[Neighbour, ...]:
         """Standing readings in the order kept."""
-        return tuple(self._neighbours[key] for key in self.readings if key in self._neighbours)
+        if self._in_order is None:
+            counted = self._neighbours
+            self._in_order = tuple(counted[key] for key in self.readings if key in counted)
+        return self._in_order
 
     @property
     def check(self) -> FoldCheck:
@@ -195,6 +209,10 @@ class RunningFold:
         self._rebuilt = history.points
         self._since = [point for point in self._since if point.readings > last]
         return True
+
+
+def _neighbour(reading: Reading) -> Neighbour:
+    return Neighbour(reading.reading_id, reading.feature, reading.outcrop, reading.vector, reading)
 
 
 def history_of(entries: Sequence[Entry], settings: CheckSettings, epoch: int) -> History:

@@ -1,7 +1,8 @@
 """The open notebook: readings as revisions that are only ever added, places, draft and settings.
 
-Every method that writes is one transaction: it is all there, on the disk, when the method returns, or none
-of it is and a NotebookError says why. Only the thread that opened it may use it.
+Every method that writes is one transaction: but for the draft (see `save_draft`) it is all there, on the
+disk, when the method returns, or none of it is and a NotebookError says why. Only the thread that opened it
+may use it.
 """
 
 from __future__ import annotations
@@ -180,9 +181,19 @@ class Notebook:
         db.execute("INSERT OR REPLACE INTO draft VALUES (1, ?, ?)", (text, self._now()))
 
     def save_draft(self, draft: Mapping[str, object]) -> None:
-        """Keep the draft of the entry, in place of the one before."""
-        with self._writing() as db:
-            self._put_draft(db, draft)
+        """Keep the draft of the entry, in place of the one before.
+
+        This is done at each key, so it does not wait for the disk: it outlives the process, and should the
+        power fail the last keys of an entry may be gone, never a reading. A log written this way stays whole
+        (https://www.sqlite.org/pragma.html#pragma_synchronous).
+        """
+        with plain_errors(self.path):
+            self._db.execute("PRAGMA synchronous = NORMAL")
+        try:
+            with self._writing() as db:
+                self._put_draft(db, draft)
+        finally:
+            self._db.execute("PRAGMA synchronous = FULL")
 
     def draft(self) -> dict[str, object]:
         """Give the draft last saved; empty where there is none, or where it cannot be read."""

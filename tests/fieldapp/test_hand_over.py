@@ -126,7 +126,7 @@ def test_files_passed_round_make_all_tablets_equal(two, kept, tmp_path):
     assert {r.reading_id: r for r in two[0].standing} == {r.reading_id: r for r in two[1].standing}
 
 
-def test_bad_rows_are_listed_and_the_good_ones_offered(page, kept, tmp_path):
+def test_bad_rows_are_listed_and_the_good_ones_offered(page, tmp_path):
     """A row that cannot be read is named with its line; the others can be taken in."""
     path = tmp_path / "b.csv"
     path.write_text("feature,strike_deg,dip_deg\nbedding,45,30\nbedding,45,300\n")

@@ -129,7 +129,8 @@ def test_settings_that_make_no_sense_are_passed_over(notebook):
 
 
 def test_the_journal_is_durable(notebook):
-    """Write-ahead log, full synchronous and foreign keys are on."""
+    """Write-ahead log, full synchronous and foreign keys are on, also after a draft was saved."""
+    notebook.save_draft({})
     pragma = {
         name: notebook._db.execute(f"PRAGMA {name}").fetchone()[0]
         for name in ("journal_mode", "synchronous", "foreign_keys")
