@@ -68,10 +68,12 @@ class Trials(NamedTuple):
 
 def looks(first: tuple[int, int], last: int) -> npt.NDArray[np.int64]:
     """Readings of both streams, (looks, 2), read in turn, from the first look to `last` of each."""
-    n = max(first)
-    start = np.array([[n, n]])
-    steps = [pair for k in range(n, last) for pair in ((k + 1, k), (k + 1, k + 1))]
-    return np.concatenate([start, np.array(steps, dtype=np.int64).reshape(-1, 2)])
+    held = list(first)
+    path = [tuple(held)]
+    while min(held) < last:
+        held[0 if held[0] <= held[1] else 1] += 1
+        path.append(tuple(held))
+    return np.array(path, dtype=np.int64)
 
 
 def run_trials(
@@ -122,7 +124,7 @@ def watch_drawn(
     off_girdle = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
     clear = hinge_is_clear(hinge) & hinge_part_is_small(found)
     if mode == "lines":
-        clear &= found.has_sense  # lines alone that make the cleavage flat deny what was taken for granted
+        clear = clear & found.has_sense.astype(bool)  # lines alone that make the cleavage flat deny what was taken for granted
     seen = watch(found, information, clear & ~off_girdle, settings)
     naive, naive_narrow = (
         student_multiplier(z, found.fixed_freedom) * np.sqrt(found.fixed_variance)
