@@ -22,7 +22,7 @@ from typing import TYPE_CHECKING, BinaryIO, cast
 from analysis.errors import CsvError
 from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless
 from analysis.files.cells import quoted
-from analysis.files.columns import NAMES
+from analysis.files.columns import BY_NAME, NAMES, Kind
 from analysis.files.faults import FaultLog, RowFault
 from analysis.files.records import RecordFile
 from analysis.files.table import ReadingTable, TableBuilder
@@ -166,8 +166,15 @@ def _texts(table: ReadingTable) -> Iterator[tuple[int, str]]:
     yield 0, ",".join(map(quoted, (*NAMES, *table.other_names))) + "\n"
     for start in range(0, len(table), _WRITE_ROWS):
         rows = slice(start, min(start + _WRITE_ROWS, len(table)))
-        cells = [map(quoted, table.cell_texts(name, rows)) for name in (*NAMES, *table.other_names)]
+        cells = [_cells(table, name, rows) for name in (*NAMES, *table.other_names)]
         yield rows.stop, "".join(",".join(row) + "\n" for row in zip(*cells, strict=True))
+
+
+def _cells(table: ReadingTable, name: str, rows: slice) -> Iterable[str]:
+    texts = table.cell_texts(name, rows)
+    column = BY_NAME.get(name)
+    # A negative number is a number to every spreadsheet; an apostrophe would make it text.
+    return texts if column is not None and column.kind in (Kind.NUMBER, Kind.WHOLE) else map(quoted, texts)
 
 
 def _name(source: Source) -> str:

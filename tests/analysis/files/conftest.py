@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 
 from analysis.files.columns import QUADRANTS
 from analysis.files.csvfile import read_table
+from analysis.files.columns import NAMES
 from analysis.files.reading import Reading, quadrant_fits
 
 # Everything a file can hold, with the characters that hurt drawn often.
@@ -52,7 +53,7 @@ def readings(draw, reading_id=None):
     if draw(YES_NO):
         fields |= {"latitude_deg": draw(st.floats(-90, 90)), "longitude_deg": draw(st.floats(-180, 180))}
     other_names = NAME.map(str.strip).filter(
-        lambda name: name and "_" not in name and not name.startswith("column")
+        lambda name: name and "_" not in name and not name.startswith("column") and name not in NAMES
     )
     return Reading(
         reading_id=draw(NAME.filter(str.strip)) if reading_id is None else draw(reading_id),

@@ -431,3 +431,10 @@ def test_records_are_those_of_the_csv_module(text, block):
     found = [(next(csv.reader([record]), []) or [""], line) for record, _, line, _ in records]
     assert found == expected
     assert [count for _, count, *_ in records] == [len(cells) for cells, _ in expected]
+
+
+def test_negative_numbers_are_written_as_numbers():
+    """A negative latitude or longitude carries no apostrophe, so that other programs read a number."""
+    text = text_of([bed(latitude_deg=-47.5, longitude_deg=-31.25, note="-5 m below the fence")])
+    assert ",-47.5000000,-31.2500000," in text
+    assert ",'-5 m below the fence" in text
