@@ -45,12 +45,11 @@ ROOMS = {
     "stats": Room({"orient"}, {"numpy"}),
     "fold": Room({"orient", "stats"}, {"numpy"}),
     "strain": Room({"orient", "stats", "fold"}, {"numpy"}),
-    "files": Room(
-        {"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio", "pyproj", "shapely", "dask", "pyarrow"}
-    ),
+    "files": Room({"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio"}),
+    "survey": Room(FIELD_ROOMS | {"files"}, {"numpy", "pandas"}, {"dask", "distributed", "pyarrow"}),
     "report": Room(EVERY_ROOM, {"numpy", "pandas"}, {"matplotlib", "jinja2"}),
     "demo": Room({"orient", "stats", "files"}, {"numpy"}),
-    "cli": Room(EVERY_ROOM | {"demo"}, {"numpy", "pandas", "click"}),
+    "cli": Room(EVERY_ROOM | {"survey", "demo"}, {"numpy", "pandas", "click"}),
 }
 
 TOO_HEAVY = {"kivy", "plyer", "fieldapp", "pandas", "matplotlib", "scipy"}

@@ -11,9 +11,11 @@ from analysis import __version__
 from analysis.cli.check import check
 from analysis.cli.common import OneLineErrors
 from analysis.cli.explain import explain_command
+from analysis.cli.export import export
 from analysis.cli.join import join_command
 from analysis.cli.replay import replay
 from analysis.cli.simulate import simulate
+from analysis.cli.survey import survey_command
 
 __all__ = ["hingewise"]
 
@@ -29,5 +31,5 @@ def hingewise() -> None:
     """  # noqa: D301 - click reads the escape
 
 
-for _command in (check, explain_command, join_command, replay, simulate):
+for _command in (check, explain_command, export, join_command, replay, simulate, survey_command):
     hingewise.add_command(_command)

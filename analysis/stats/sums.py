@@ -61,6 +61,33 @@ class RunningSums:
         self._cell_at: dict[tuple[int, int], int] = {}
         self._cell_rows: Floats = np.zeros((0, WIDTH))
 
+    @classmethod
+    def from_rows(
+        cls,
+        outcrops: Sequence[str],
+        rows: Floats,
+        cell_owners: npt.NDArray[np.int64],
+        cells: npt.NDArray[np.int64],
+        cell_rows: Floats,
+    ) -> RunningSums:
+        """Take over rows summed elsewhere.
+
+        Parameters
+        ----------
+        outcrops, rows
+            Names, each once, and moments (outcrops, features, 24) in the order of `FEATURES`.
+        cell_owners, cells, cell_rows
+            (C,), the outcrop's index and the cell of attitude, and moments (C, 24) of bedding.
+
+        """
+        sums = cls()
+        sums._outcrop_at = {name: slot for slot, name in enumerate(outcrops)}
+        sums._rows = rows
+        pairs = zip(cell_owners.tolist(), cells.tolist(), strict=True)
+        sums._cell_at = {pair: place for place, pair in enumerate(pairs)}
+        sums._cell_rows = cell_rows
+        return sums
+
     # -- changing ------------------------------------------------------------------------------------------
 
     def add(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike) -> None:
@@ -96,10 +123,10 @@ class RunningSums:
             codes = np.asarray(feature_codes[part], dtype=np.int64)
             slots = slot_of[np.asarray(outcrop_codes[part], dtype=np.int64)]
             size = len(self._rows) * kinds
-            self._rows += _grouped(rows, slots * kinds + codes, size).reshape(self._rows.shape)
+            self._rows += grouped(rows, slots * kinds + codes, size).reshape(self._rows.shape)
             beds = codes == _BEDDING
             keys, inverse = np.unique(slots[beds] * CELLS + cell_of(vectors[part][beds]), return_inverse=True)
-            sums = _grouped(rows[beds], inverse, len(keys))
+            sums = grouped(rows[beds], inverse, len(keys))
             places = [self._cell_slot(int(key) // CELLS, int(key) % CELLS) for key in keys]
             self._cell_rows[places] += sums
 
@@ -207,10 +234,10 @@ def _clear_if_empty(row: Floats) -> None:
         row[:] = 0.0
 
 
-def _grouped(rows: Floats, keys: npt.NDArray[np.integer], size: int) -> Floats:
-    """Sums, shape (size, 24), of rows by key."""
-    result = np.empty((size, WIDTH))
-    for column in range(WIDTH):
+def grouped(rows: Floats, keys: npt.NDArray[np.integer], size: int) -> Floats:
+    """Sums, shape (size, W), of rows, shape (N, W), by key, 0 <= key < size."""
+    result = np.empty((size, rows.shape[1]))
+    for column in range(rows.shape[1]):
         result[:, column] = np.bincount(keys, weights=rows[:, column], minlength=size)
     return result
 

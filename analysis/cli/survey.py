@@ -1,0 +1,114 @@
+"""hingewise survey: the map of verdicts of a large archive."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from analysis.cli.common import settings_options
+from analysis.errors import SettingError
+from analysis.fold.settings import CheckSettings
+
+if TYPE_CHECKING:
+    from analysis.survey.run import Survey
+
+_SHOWN = 20
+
+
+@click.command("survey")
+@click.argument(
+    "paths", metavar="DIR|FILE...", nargs=-1, required=True, type=click.Path(path_type=Path, exists=True)
+)
+@click.option(
+    "-o", "--output", metavar="FILE", required=True, type=click.Path(path_type=Path),
+    help="The map to write: .gpkg or .geojson.",
+)  # fmt: skip
+@click.option("--cell", "cell_km", metavar="KM", type=float, help="Check squares of this width, not folds.")
+@click.option(
+    "--moving", is_flag=True, help="With --cell: each square together with the eight or so around it."
+)
+@click.option(
+    "--workers", metavar="N", type=click.IntRange(min=1), help="Threads; one a processor unless given."
+)
+@click.option(
+    "--scheduler", metavar="ADDRESS",
+    help="Work on the Dask cluster at this address. Its workers must see the files under the same paths.",
+)  # fmt: skip
+@settings_options
+def survey_command(
+    paths: tuple[Path, ...],
+    output: Path,
+    cell_km: float | None,
+    workers: int | None,
+    scheduler: str | None,
+    margin_deg: float,
+    confidence: float,
+    *,
+    moving: bool,
+) -> None:
+    r"""Map hinge, cleavage, intersection, transection and verdict over an archive of CSV and Parquet files.
+
+    Folders are searched for files. The archive is read piece by piece and never held whole; the figures are those
+    that `check` gives fold by fold. By fold, each is placed at the mean position of its readings; by square, at the
+    middle of the square.
+
+    \b
+    Example:
+      hingewise survey archive/ -o map.gpkg --cell 2
+    """
+    from analysis.survey.run import survey  # noqa: PLC0415 - pandas is loaded only when files are read
+    from analysis.survey.squares import Grid  # noqa: PLC0415 - as above
+
+    if output.suffix.lower() not in (".gpkg", ".geojson"):
+        raise SettingError(
+            f"{output.name} ends in no format", where="--output", expected="a name ending in .gpkg, .geojson"
+        )
+    if moving and cell_km is None:
+        raise SettingError("a window needs a width", where="--moving", expected="--cell KM beside it")
+    found = survey(
+        paths,
+        CheckSettings(margin_deg=margin_deg, confidence=confidence),
+        grid=None if cell_km is None else Grid(cell_km, moving=moving),
+        workers=workers,
+        scheduler=scheduler,
+        progress=sys.stderr if sys.stderr.isatty() else None,
+    )
+    _say_left_out(found)
+    if not found.verdicts:
+        raise SettingError("no reading stands in these files", where=str(output))
+    _write(found, output)
+    unit = "fold" if cell_km is None else "window" if moving else "square"
+    many = len(found.verdicts)
+    click.echo(f"{many} {unit}{'' if many == 1 else 's'}, {found.readings} readings, in {output}")
+
+
+def _say_left_out(found: Survey) -> None:
+    for fault in found.faults[:_SHOWN]:
+        click.echo(f"left out: {fault}", err=True)
+    if found.faulty_rows:
+        rows = "1 row was" if found.faulty_rows == 1 else f"{found.faulty_rows} rows were"
+        click.echo(f"{rows} left out; the others are used", err=True)
+    for conflict in found.conflicts[:_SHOWN]:
+        click.echo(f"conflict: {conflict}", err=True)
+    if len(found.conflicts) > _SHOWN:
+        click.echo(f"and {len(found.conflicts) - _SHOWN} more conflicts", err=True)
+    if found.unplaced:
+        click.echo(f"{found.unplaced} readings without position lie in no square", err=True)
+
+
+def _write(found: Survey, output: Path) -> None:
+    from analysis.files.maplayers import layer_of_rows, verdict_layer  # noqa: PLC0415 - as above
+
+    layers = [layer_of_rows(name, rows) for name, rows in found.means.items()]
+    layers.append(verdict_layer(found.verdicts))
+    if output.suffix.lower() == ".gpkg":
+        from analysis.files.geopackage import write_geopackage  # noqa: PLC0415 - as above
+
+        write_geopackage(output, layers)
+        return
+    from analysis.files.geojson import write_geojson  # noqa: PLC0415 - as above
+
+    write_geojson(output, layers)
