@@ -124,7 +124,8 @@ def watch_drawn(
     off_girdle = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
     clear = hinge_is_clear(hinge) & hinge_part_is_small(found)
     if mode == "lines":
-        clear = clear & found.has_sense.astype(bool)  # lines alone that make the cleavage flat deny what was taken for granted
+        # Lines alone that make the cleavage flat deny what was taken for granted.
+        clear = clear & found.has_sense.astype(bool)
     seen = watch(found, information, clear & ~off_girdle, settings)
     naive, naive_narrow = (
         student_multiplier(z, found.fixed_freedom) * np.sqrt(found.fixed_variance)
