@@ -175,27 +175,27 @@ class BlockReader:
         padded = int(np.max(records.cells, initial=0, where=~blanked)) < wanted
         if padded:
             text = self.header.delimiter.encode() * (wanted - 1) + self.header.line_end + text
-        for decimal in dict.fromkeys((self._decimal, ".", "," if self.header.delimiter == ";" else ".")):
-            try:
-                frame = self._parsed(text, decimal, self._numbers)
-            except (ValueError, OverflowError):  # some cell is no plain number
-                continue
-            self._decimal = decimal
-            break
-        else:
-            frame = self._parsed(text, ".", [])
+        frame = self._parsed(text, self._decimal)
+        if self.header.delimiter == ";" and any(_is_text(frame[place]) for place in self._numbers):
+            # Some column of numbers is none with this decimal mark; the other may do for it.
+            other = "," if self._decimal == "." else "."
+            again = self._parsed(text, other)
+            if sum(_is_text(again[place]) for place in self._numbers) < sum(
+                _is_text(frame[place]) for place in self._numbers
+            ):
+                frame, self._decimal = again, other
         series = {place: frame[place] for place in range(wanted)}
         # Text is taken as the frame reader infers it, which is fastest; where it took text for numbers (an
-        # outcrop named 007) the column is read again.
+        # outcrop named 007), or TRUE for a number, the column is read again.
         guessed = [
             place
             for place, each in series.items()
-            if not (each.dtype == object or isinstance(each.dtype, pd.StringDtype))
-            and not (place in self._numbers and each.dtype == np.float64)
+            if not _is_text(each)
+            and not (place in self._numbers and each.dtype in (np.float64, np.int64))
             and not (place in self._wholes and each.dtype == np.int64)
         ]
         if guessed:
-            again = self._parsed(text, ".", [], text_only=guessed)
+            again = self._parsed(text, ".", text_only=guessed)
             series |= {place: again[place] for place in guessed}
         if padded:
             series = {place: each.iloc[1:] for place, each in series.items()}
@@ -207,11 +207,8 @@ class BlockReader:
             )
         return series
 
-    def _parsed(
-        self, text: bytes, decimal: str, numbers: list[int], text_only: list[int] | None = None
-    ) -> pd.DataFrame:
-        dtypes: dict[int, Any] = dict.fromkeys(numbers, "float64") | dict.fromkeys(text_only or [], object)
-        return pd.read_csv(  # type: ignore[call-overload, no-any-return]  # dtypes by place are not typed
+    def _parsed(self, text: bytes, decimal: str, text_only: list[int] | None = None) -> pd.DataFrame:
+        return pd.read_csv(  # type: ignore[call-overload, no-any-return]  # columns by place are not typed
             io.BytesIO(text),
             sep=self.header.delimiter,
             decimal=decimal,
@@ -219,8 +216,8 @@ class BlockReader:
             names=range(len(self._columns)),
             usecols=text_only,
             index_col=False,
-            dtype=dtypes,
-            na_values={place: [""] for place in numbers},
+            dtype=None if text_only is None else dict.fromkeys(text_only, object),
+            na_values={} if text_only is not None else {place: [""] for place in self._numbers},
             keep_default_na=False,
             skip_blank_lines=False,
             engine="c",
@@ -343,18 +340,21 @@ def _times(series: pd.Series[Any], column: Column, refused: Bools) -> Array:
     return values
 
 
+def _is_text(series: pd.Series[Any]) -> bool:
+    return series.dtype == object or isinstance(series.dtype, pd.StringDtype)
+
+
 def _numbers(series: pd.Series[Any], column: Column, refused: Bools, delimiter: str) -> Array:
-    if series.dtype != np.float64:
+    if _is_text(series):
         return _looked_up(series, column, refused, delimiter)
     values: Array = series.to_numpy()
     refused |= (values < column.low) | (values > column.high)
-    missing = np.isnan(values)
-    if np.all(missing | (values == 0.0) | (values == 1.0)) and not missing.all():
-        # The frame reader takes true and false for 1 and 0; the judge does not.
-        refused |= ~missing
-    with np.errstate(invalid="ignore", over="ignore"):
-        scale = 10.0**column.decimals
-        values = np.rint(values * scale) / scale + 0.0
+    if values.dtype == np.int64:
+        values = values.astype(np.float64)
+    else:
+        with np.errstate(invalid="ignore", over="ignore"):
+            scale = 10.0**column.decimals
+            values = np.rint(values * scale) / scale + 0.0
     if column.high == 360.0:
         values[values == 360.0] = 0.0
     return values

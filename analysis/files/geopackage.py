@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from analysis.files.maplayers import MapLayer
 
 WGS84 = "EPSG:4326"
+_VERSION = "1.2"  # of GeoPackage: what a GIS of some years ago opens without complaint
 _GEOMETRY = "geom"  # the name that GDAL gives the column of points
 
 
@@ -47,9 +48,14 @@ def write_geopackage(
         ) from error
     with whole_file(path) as draft:
         try:
-            for layer in layers:
+            for number, layer in enumerate(layers):
                 points_of(layer).to_file(
-                    draft, layer=layer.name, driver="GPKG", engine="pyogrio", geometry_type="Point"
+                    draft,
+                    layer=layer.name,
+                    driver="GPKG",
+                    engine="pyogrio",
+                    geometry_type="Point",
+                    dataset_options={"VERSION": _VERSION} if number == 0 else None,
                 )
             for name, table in (tables or {}).items():
                 pyogrio.write_dataframe(table, draft, layer=name, driver="GPKG")
@@ -87,6 +93,8 @@ def _write_styles(layers: Sequence[MapLayer], draft: Path) -> None:
             "description": layer.style.name,
             "owner": "",
             "ui": "",
+            # Must be there for a GIS to find the style; what the time is does not matter, so there is none.
+            "update_time": np.datetime64("NaT", "ms"),
         }
         for layer in layers
         if layer.style is not None
