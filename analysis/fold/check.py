@@ -30,7 +30,7 @@ from analysis.fold.transection import (
 from analysis.orient.features import Feature
 from analysis.orient.vectors import lower_hemisphere
 from analysis.stats.axes import USUAL_SCATTER_DEG, AxisFit, confidence_ellipse
-from analysis.stats.moments import COUNT, WIDTH
+from analysis.stats.moments import COUNT
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -86,23 +86,21 @@ def check_fold(
         pole = _estimate(fit_cleavage(rows.cleavage, rows.intersection), "planes", settings)
     beds = None if hinge is None or not counts.bedding else _beds(sums, hinge.fit, pole)
     lines = fit_lines(rows.intersection) if counts.intersection else None
+    by_planes, by_lines = _transections(rows, hinge, pole)
     check = FoldCheck(
         fold=fold,
         settings=settings,
         readings=counts,
         hinge=hinge,
         cleavage=pole,
-        intersection=_mean_intersection(rows, counts, hinge, pole, beds, settings),
+        intersection=_mean_intersection(rows, lines, hinge, pole, beds, settings),
         limbs=None if beds is None else beds.limbs,
         limb_lines=_limb_lines(rows, beds, pole),
-    )
-    by_planes, by_lines = _transections(rows, hinge, pole)
-    check = check.changed(
         estimates=tuple(
             SideEstimate(source, float(t.delta_deg), float(t.fixed_variance) ** 0.5)
             for source, t in (("planes", by_planes), ("lines", by_lines))
             if t is not None and np.isfinite(t.fixed_variance)
-        )
+        ),
     )
     return decide(
         check, sums, by_planes or by_lines, _warnings(rows, check, beds, lines), lines, forecast=forecast
@@ -138,7 +136,7 @@ def _beds(sums: RunningSums, hinge: AxisFit, pole: AxisEstimate | None) -> _Beds
 
 def _mean_intersection(
     rows: _Rows,
-    counts: Counts,
+    measured: AxisFit | None,
     hinge: AxisEstimate | None,
     pole: AxisEstimate | None,
     beds: _Beds | None,
@@ -149,18 +147,18 @@ def _mean_intersection(
     A line measured on the very beds whose S0 and S1 were read is no independent evidence, so an outcrop gives
     either its measured lines or its computed ones.
     """
-    merged, computed = rows.intersection, 0
+    fit, computed = measured, 0
     if hinge is not None and pole is not None and beds is not None:
         bare = np.where(rows.intersection[:, COUNT, np.newaxis] > 0.5, 0.0, rows.cleavage)
         scatter = np.array([hinge.fit.scatter_rad[0], pole.fit.scatter_rad[0], np.radians(USUAL_SCATTER_DEG)])
-        extra, places = computed_lines(beds.cells, beds.owner, beds.side, bare, scatter)
+        extra = computed_lines(beds.cells, beds.owner, beds.side, bare, scatter)
         computed = len(extra)
-        added = np.zeros((len(merged), WIDTH))
-        np.add.at(added, places, extra)
-        merged = merged + added
-    if not counts.intersection + computed:
+        if computed:
+            fit = fit_lines(np.concatenate([rows.intersection, extra]))
+    if fit is None:
         return None
-    return MeanIntersection(_estimate(fit_lines(merged), "lines", settings), counts.intersection, computed)
+    count = 0 if measured is None else round(float(measured.readings))
+    return MeanIntersection(_estimate(fit, "lines", settings), count, computed)
 
 
 def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> tuple[LimbLine, ...]:

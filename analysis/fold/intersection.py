@@ -29,8 +29,8 @@ def computed_lines(
     side: npt.NDArray[np.int64],
     cleavage: Floats,
     scatter_rad: Floats,
-) -> tuple[Floats, npt.NDArray[np.int64]]:
-    """Moments of the lines in which bedding and cleavage meet, outcrop by outcrop and limb by limb.
+) -> Floats:
+    """Moments, (lines, 24), of the lines in which bedding and cleavage meet, outcrop by outcrop and limb by limb.
 
     One line is computed from the mean bedding pole of a limb and the mean cleavage pole at an outcrop where
     both were read. Its variance, summed over both directions across it, is (vb/nb + vc/nc)/sin^2 of the angle
@@ -46,20 +46,12 @@ def computed_lines(
     scatter_rad
         (3,), standard deviations of one bedding pole, one cleavage pole and one measured line.
 
-    Returns
-    -------
-    rows, places
-        Moments (lines, 24), and the index (lines,) of their outcrop.
-
     """
-    outcrops = len(cleavage)
-    grouped = np.zeros((outcrops * 2, WIDTH))
-    np.add.at(grouped, owner * 2 + side, cells)
-    both = (grouped[:, COUNT] > 0.5) & np.repeat(cleavage[:, COUNT] > 0.5, 2)
-    places = np.flatnonzero(both)
-    if not places.size:
-        return np.zeros((0, WIDTH)), places
-    beds, cleaved = grouped[places], cleavage[places // 2]
+    cleaved_here = cleavage[owner, COUNT] > 0.5
+    if not cleaved_here.any():
+        return np.zeros((0, WIDTH))
+    beds, places = _summed(cells[cleaved_here], (owner * 2 + side)[cleaved_here])
+    cleaved = cleavage[places // 2]
     poles = eigen(tensor(np.stack([beds, cleaved])))[1][..., 0]
     lines = cross(poles[0], poles[1])
     sine = np.linalg.norm(lines, axis=-1)
@@ -67,8 +59,15 @@ def computed_lines(
     bed_variance = scatter_rad[0] ** 2 / beds[clear, COUNT]
     cleavage_variance = scatter_rad[1] ** 2 / cleaved[clear, COUNT]
     weight = 2.0 * scatter_rad[2] ** 2 * sine[clear] ** 2 / (bed_variance + cleavage_variance)
-    rows = moments(lines[clear] / sine[clear, np.newaxis], weight)
-    return rows, places[clear] // 2
+    return moments(lines[clear] / sine[clear, np.newaxis], weight)
+
+
+def _summed(rows: Floats, keys: npt.NDArray[np.int64]) -> tuple[Floats, npt.NDArray[np.int64]]:
+    """Sums, shape (keys held, W), of rows (N, W) by key (N,), and those keys, ascending; N is at least 1."""
+    order = np.argsort(keys, kind="stable")
+    ordered = keys[order]
+    starts = np.flatnonzero(np.concatenate([[True], ordered[1:] != ordered[:-1]]))
+    return np.add.reduceat(rows[order], starts), ordered[starts]
 
 
 def limb_lines(
@@ -106,8 +105,7 @@ def side_of_outcrops(
     cells: Floats, owner: npt.NDArray[np.int64], side: npt.NDArray[np.int64], outcrops: int
 ) -> npt.NDArray[np.int64]:
     """Tell the side of the fold, 0 or 1, that nearly all bedding of an outcrop lies on, else -1: (outcrops,)."""
-    counts = np.zeros((outcrops, 2))
-    np.add.at(counts, (owner, side), cells[:, COUNT])
+    counts = np.bincount(owner * 2 + side, weights=cells[:, COUNT], minlength=2 * outcrops).reshape(-1, 2)
     total = counts.sum(axis=1)
     share = counts.max(axis=1) / np.maximum(total, 1.0)
     return np.where((total > 0.5) & (share >= 0.8), counts.argmax(axis=1), -1)

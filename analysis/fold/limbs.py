@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
@@ -90,13 +91,13 @@ def find_limbs(
     moment = tensor(sums)
     doubled = _doubled_angles(moment, across)
     radius = np.linalg.norm(doubled, axis=-1)
-    about_hinge = np.trace(across.T @ moment @ across, axis1=-2, axis2=-1)
+    about_hinge = np.einsum("...ij,ik,jk->...", moment, across, across)
     gathered = np.clip(radius / np.maximum(about_hinge, 1e-300), 1e-9, 1.0)
     spread = 0.5 * np.degrees(np.sqrt(-2.0 * np.log(gathered)))
     angles = np.arctan2(doubled[:, 1], doubled[:, 0])
-    apart = 0.5 * np.degrees(abs((angles[1] - angles[0] + np.pi) % (2.0 * np.pi) - np.pi))
+    apart = 0.5 * math.degrees(abs((float(angles[1] - angles[0]) + math.pi) % (2.0 * math.pi) - math.pi))
     counts = sums[:, COUNT]
-    pooled = float(np.sqrt(np.average(spread**2, weights=counts)))
+    pooled = math.sqrt(float(counts @ spread**2) / float(counts.sum()))
     if apart < _TWO_LIMBS_FROM * pooled or apart < 1.0:
         return None
     poles = eigen(moment)[1][..., 0]

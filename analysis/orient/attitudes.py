@@ -59,13 +59,12 @@ class Line:
     @classmethod
     def from_vector(cls, vector: Floats) -> Line:
         """Make the line along an axis, shape (3,), of any length but zero."""
-        trend, plunge = vectors.trend_plunge_deg(vectors.unit(vector))
-        return cls(float(trend), float(plunge))
+        return cls(*_trend_plunge_deg(vector))
 
     @property
     def vector(self) -> Floats:
         """Downward unit vector, shape (3,): north, east, down."""
-        return vectors.line_vector(self.trend_deg, self.plunge_deg)
+        return _line_vector(self.trend_deg, self.plunge_deg)
 
     def angle_deg(self, other: Line) -> float:
         """Acute angle to another line, 0 to 90 degrees."""
@@ -96,18 +95,18 @@ class Plane:
     @classmethod
     def from_pole(cls, pole: Floats) -> Plane:
         """Make the plane at right angles to an axis, shape (3,), of any length but zero."""
-        strike, dip = vectors.strike_dip_deg(vectors.unit(pole))
-        return cls(float(strike), float(dip))
+        trend, plunge = _trend_plunge_deg(pole)
+        return cls(_wrapped_deg(trend + 90.0), 90.0 - plunge)
 
     @property
     def dip_direction_deg(self) -> float:
         """Azimuth the plane dips towards: strike + 90, 0 to 360 degrees."""
-        return float(vectors.wrap_azimuth_deg(self.strike_deg + 90.0))
+        return _wrapped_deg(self.strike_deg + 90.0)
 
     @property
     def pole(self) -> Floats:
         """Downward unit normal, shape (3,): north, east, down."""
-        return vectors.pole_vector(self.strike_deg, self.dip_deg)
+        return _line_vector(self.strike_deg - 90.0, 90.0 - self.dip_deg)
 
     @property
     def reversed(self) -> Plane:
@@ -178,6 +177,33 @@ class Plane:
                 math.cos(math.radians(self.dip_deg)),
             )
         )
+
+
+# The check makes a dozen records after every reading, so these do for one axis in the standard library's numbers
+# what `analysis.orient.vectors` does for arrays; a test holds them to it.
+
+
+def _line_vector(trend_deg: float, plunge_deg: float) -> Floats:
+    trend, plunge = math.radians(trend_deg), math.radians(plunge_deg)
+    horizontal = math.cos(plunge)
+    return np.array([horizontal * math.cos(trend), horizontal * math.sin(trend), math.sin(plunge)])
+
+
+def _trend_plunge_deg(vector: Floats) -> tuple[float, float]:
+    north, east, down = (float(part) for part in vector)
+    length = math.hypot(north, east, down)
+    if not (math.isfinite(length) and length > 0.0):
+        vectors.unit(vector)  # raises, in the words that arrays get
+    if down < 0.0 or (down == 0.0 and (east < 0.0 or (east == 0.0 and north < 0.0))):
+        north, east, down = -north, -east, -down
+    # Adding zero turns -0.0 into 0.0, which atan2 would read as the opposite direction.
+    plunge = math.degrees(math.atan2(down + 0.0, math.hypot(north, east)))
+    return _wrapped_deg(math.degrees(math.atan2(east + 0.0, north + 0.0))), plunge
+
+
+def _wrapped_deg(azimuth_deg: float) -> float:
+    wrapped = azimuth_deg % 360.0
+    return wrapped if wrapped < 360.0 else 0.0
 
 
 def _crossed(first: Floats, second: Floats, fault: str) -> Floats:

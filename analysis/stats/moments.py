@@ -36,6 +36,9 @@ _QUAD_AT: Final = np.array([[_QUADS.index(tuple(sorted(p + q))) for q in _PAIRS]
 _PAIR_I, _PAIR_J = (np.array([pair[k] for pair in _PAIRS]) for k in (0, 1))
 # For each quadruple one pair of pairs that makes it.
 _QUAD_FROM: Final = np.array([np.argwhere(k == _QUAD_AT)[0] for k in range(15)])
+# The same from the first column of a row on.
+_TENSOR_AT: Final = _PAIR_AT + 3
+_FOURTH_AT: Final = _QUAD_AT + 9
 # A symmetric product u v, written in the order of _PAIRS, counts its off-diagonal terms twice.
 _TWICE: Final = np.array([1.0, 1.0, 1.0, 2.0, 2.0, 2.0])
 
@@ -57,12 +60,12 @@ def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = 1.0) -> Floats:
 
 def tensor(rows: Floats) -> Floats:
     """Orientation tensor, shape (..., 3, 3), of rows of moments: sum of w x x^T, not divided by anything."""
-    return rows[..., _TENSOR][..., _PAIR_AT]
+    return rows[..., _TENSOR_AT]
 
 
 def fourth(rows: Floats) -> Floats:
     """Fourth moments, shape (..., 6, 6), between the six products of two components."""
-    return rows[..., _FOURTH][..., _QUAD_AT]
+    return rows[..., _FOURTH_AT]
 
 
 def product_pairs(u: Floats, v: Floats) -> Floats:
