@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -24,6 +24,7 @@ from analysis.orient.features import Feature
 from analysis.stats.quantiles import t_quantile
 
 if TYPE_CHECKING:
+    from analysis.fold.settings import CheckSettings
     from analysis.stats.axes import AxisFit
     from analysis.stats.sums import RunningSums
 
@@ -41,13 +42,11 @@ def decide(
     counts, settings = check.readings, check.settings
     waiting = [s for s in (blocks.missing_for_hinge(counts), blocks.missing_for_cleavage(counts)) if s]
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
-        if transection is not None and check.hinge is not None:
-            check = _with_angle(check, transection)
+        angle = {} if transection is None or check.hinge is None else _angle(transection)
         because = tuple(waiting) or (blocks.undetermined(check.hinge, check.cleavage, counts),)
-        return _advised(check.changed(because=because, warnings=tuple(warnings)), sums)
+        return _advised(check.changed(**angle, because=because, warnings=tuple(warnings)), sums)
 
     clear = bool(hinge_is_clear(check.hinge.fit))
-    check = _with_angle(_with_fixed_interval(check, transection), transection)
     waits, blocked, notes = _kept_back(check, sums, transection, lines)
     waiting += waits
     progress = (
@@ -56,15 +55,17 @@ def decide(
     )
     information = information_since_first_look(transection, *progress)
     seen = watch(transection, information, min(progress) >= 1.0 and clear, settings)
-    variance = float(transection.variance)
+    variance = float(seen.variance)
     check = check.changed(
+        **_angle(transection),
+        **_fixed_interval(transection, settings),
         interval_deg=_within_90(float(seen.low_deg), float(seen.high_deg)) if seen.looked else None,
         numbers=WatchNumbers(
-            delta_deg=check.transection_deg or 0.0,
+            delta_deg=float(transection.delta_deg),
             hinge_variance=float(transection.steady_hinge_variance),
             cleavage_variance=float(transection.steady_cleavage_variance),
             variance=variance,
-            freedom=float(transection.freedom),
+            freedom=float(seen.freedom),
             information=float(information),
             by_outcrop=bool(transection.by_outcrop),
         )
@@ -137,7 +138,8 @@ def _missing(planes: int, lines: int, wanted: float) -> float:
     return float(np.ceil(max(left, 0.0) * wanted - 1e-9))
 
 
-def _with_angle(check: FoldCheck, transection: Transection) -> FoldCheck:
+def _angle(transection: Transection) -> dict[str, Any]:
+    """Fields of the check for the angle and its sense."""
     delta = float(transection.delta_deg)
     sense = (
         "unsigned"
@@ -148,16 +150,17 @@ def _with_angle(check: FoldCheck, transection: Transection) -> FoldCheck:
         if delta < 0.0
         else "none"
     )
-    return check.changed(transection_deg=delta, sense=sense)
+    return {"transection_deg": delta, "sense": sense}
 
 
-def _with_fixed_interval(check: FoldCheck, transection: Transection) -> FoldCheck:
+def _fixed_interval(transection: Transection, settings: CheckSettings) -> dict[str, Any]:
+    """Fields of the check for the ordinary interval of one look."""
     se, df = float(transection.fixed_variance) ** 0.5, float(transection.fixed_freedom)
     if df <= 0.0:
-        return check.changed(se_deg=se)
-    half = t_quantile(0.5 + 0.5 * check.settings.confidence, df) * se
+        return {"se_deg": se}
+    half = t_quantile(0.5 + 0.5 * settings.confidence, df) * se
     delta = float(transection.delta_deg)
-    return check.changed(se_deg=se, df=df, fixed_interval_deg=_within_90(delta - half, delta + half))
+    return {"se_deg": se, "df": df, "fixed_interval_deg": _within_90(delta - half, delta + half)}
 
 
 def _within_90(low: float, high: float) -> tuple[float, float]:

@@ -27,6 +27,7 @@ _NO_SENSE_BELOW: Final = 0.2
 # Cleavage read by lines alone is taken to dip 90 degrees within this, one standard deviation. Common practice,
 # no source: cleavage beside strike-slip faults is steep.
 STEEP_WITHIN_DEG: Final = 15.0
+_VERTICAL: Final = moments(DOWN)
 # Outcrops needed before the scatter between them is taken as an estimate (METHOD: four or more).
 FEWEST_CLUSTERS: Final = 4
 # Share of the readings' variance that outcrops are taken to add at least, when degrees of freedom are counted.
@@ -135,7 +136,7 @@ def fit_cleavage_to_lines(intersections: Floats) -> AxisFit:
     outweigh that; where they do not spread, the result is the vertical plane through their mean, and for a
     horizontal hinge the transection is the angle between mean line and hinge in plan.
     """
-    vertical = np.broadcast_to(moments(DOWN), (*intersections.shape[:-2], 1, WIDTH))
+    vertical = np.broadcast_to(_VERTICAL, (*intersections.shape[:-2], 1, WIDTH))
     return fit_axis(
         [
             Stream(intersections, along=False),

@@ -34,13 +34,15 @@ GIRDLE_SCATTER_AT_MOST_DEG: Final = 15.0
 
 
 class Watched(NamedTuple):
-    """A watched interval and what follows from it, each of shape (...)."""
+    """A watched interval and what follows from it, each of shape (...); variance in degrees squared."""
 
     low_deg: Floats
     high_deg: Floats
     looked: npt.NDArray[np.bool_]  # both streams have reached their first look, and the hinge is clear
     transected: npt.NDArray[np.bool_]
     axial_planar: npt.NDArray[np.bool_]
+    variance: Floats  # what it was reckoned from, with its degrees of freedom
+    freedom: Floats
 
 
 def stream_progress(planes: npt.ArrayLike, lines: npt.ArrayLike) -> Floats:
@@ -91,4 +93,6 @@ def watch(
         looked=looked,
         transected=transected,
         axial_planar=looked & ~transected & (size + narrow < settings.margin_deg),
+        variance=variance,
+        freedom=freedom,
     )
