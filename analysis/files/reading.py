@@ -30,6 +30,7 @@ from analysis.files.columns import (
 )
 from analysis.orient import vectors
 from analysis.orient.features import Feature
+from analysis.orient.righthand import ALONG_STRIKE_DEG
 
 if TYPE_CHECKING:
     from analysis.orient.vectors import Floats
@@ -38,8 +39,9 @@ MAX_OTHER_TEXT = 200_000  # characters in all the unknown columns of one reading
 MAX_OTHER = 1000  # unknown columns of one reading
 # The name space of the ids made from content: a constant, or the same row would get another id.
 CONTENT_SPACE = uuid.uuid5(uuid.NAMESPACE_OID, "hingewise/reading/content/1")
-# A quadrant word stands for a range of directions; 45 degrees either side are taken as fitting.
-QUADRANT_FITS_DEG = 45.0
+# A quadrant word fits as far from the dip direction as the right-hand-rule check at entry lets it: what passes
+# there without a word must not be refused here (see ALONG_STRIKE_DEG for why it is more than 45 degrees).
+QUADRANT_FITS_DEG = 90.0 - ALONG_STRIKE_DEG
 
 _NAME_FIELDS = tuple(c for c in BY_NAME.values() if c.kind is Kind.NAME)
 _TEXT_FIELDS = tuple(c for c in BY_NAME.values() if c.kind is Kind.TEXT)
@@ -177,7 +179,7 @@ class Reading:
 
     def _check_quadrant(self, strike_deg: float, dip_deg: float) -> None:
         """A strike and a quadrant that contradict each other pass only where a warning was kept."""
-        if dip_deg == 0.0 or quadrant_fits(strike_deg, self.dip_quadrant):
+        if dip_deg in (0.0, 90.0) or quadrant_fits(strike_deg, self.dip_quadrant):
             return
         back = (strike_deg + 180.0) % 360.0
         mend = (
@@ -247,7 +249,7 @@ class Reading:
 
 
 def quadrant_fits(strike_deg: float, quadrant: str) -> bool:
-    """Whether a right-hand-rule strike, in degrees, dips to within 45 degrees of a quadrant word."""
+    """Whether a right-hand-rule strike, in degrees, dips to within 80 degrees of a quadrant word."""
     apart = abs((strike_deg + 90.0 - QUADRANTS[quadrant] + 180.0) % 360.0 - 180.0)
     return apart <= QUADRANT_FITS_DEG + 1e-9
 

@@ -317,6 +317,7 @@ def _off_girdle(pole: Floats, poles: Floats) -> tuple[float, bool]:
         kept = poles[squares <= OUTLIER_SIGMAS**2 * variance]
     # No girdle, no distance from it: the two smaller eigenvalues of a round cluster differ by chance alone.
     # For two normal directions the sphericity W to the power (n-2)/2 is uniform (Mauchly 1940, from memory).
+    values = np.maximum(values, 0.0)  # equal readings leave a rounding error below zero
     sphericity = 4.0 * values[0] * values[1] / max((values[0] + values[1]) ** 2, 1e-300)
     if sphericity ** ((len(kept) - 2) / 2.0) > NO_GIRDLE_CHANCE:
         return 0.0, False

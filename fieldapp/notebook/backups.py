@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import sqlite3
+import threading
 from contextlib import closing, suppress
 from typing import TYPE_CHECKING
 
@@ -38,6 +39,9 @@ def is_due(notebook: Path, day: date) -> bool:
     return not (folder_of(notebook) / f"{day.isoformat()}{_SUFFIX}").exists()
 
 
+_one_at_a_time = threading.Lock()  # a worker and a closing page may both be at the backup of the day
+
+
 def back_up(notebook: Path, day: date, *, kept: int = KEPT, name: str = "") -> Path:
     """Write the backup of a day and drop the oldest beyond `kept`; may run on any thread.
 
@@ -48,7 +52,7 @@ def back_up(notebook: Path, day: date, *, kept: int = KEPT, name: str = "") -> P
     folder = folder_of(notebook)
     target = folder / f"{name or day.isoformat()}{_SUFFIX}"
     partial = target.with_suffix(".partial")
-    with plain_errors(target), plain_os_errors(target):
+    with _one_at_a_time, plain_errors(target), plain_os_errors(target):
         folder.mkdir(parents=True, exist_ok=True)
         partial.unlink(missing_ok=True)
         try:

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+import pytest
+
 from analysis.orient.features import Feature
-from fieldapp.settings import PlaneNotation, Settings
+from fieldapp.settings import NorthMode, PlaneNotation, Settings
 from fieldapp.states import Measured, MessageKind
 
 BEDDING, CLEAVAGE, LINE, HINGE = Feature
@@ -229,3 +231,22 @@ def test_a_mend_under_way_outlives_the_process(page_at, tmp_path, kept):
     again.digit(5)
     assert again.keep()
     assert again._all[reading_id].dip_deg == 35.0
+
+
+@pytest.mark.parametrize(("text", "side"), [("045/30", "E"), ("045/30", "S"), ("060/30", "E"), ("030/30", "S")])
+def test_a_neighbouring_side_is_kept_without_a_question(page, typed, side, text):
+    """A side tapped next to the right one fits still: nothing is asked and nothing noted."""
+    page.change_settings(replace(page.settings, north=NorthMode.TRUE))
+    typed(page, text, side)
+    assert page.entry.checks[0].passed
+    assert page.keep()
+    assert page.recent[0].warnings_kept == ()
+
+
+def test_equal_readings_one_after_the_other_are_no_trouble(page, typed):
+    """The same bed read ten times alike is kept ten times, without a question."""
+    page.change_settings(replace(page.settings, north=NorthMode.TRUE))
+    for _ in range(10):
+        typed(page, "045/30")
+        assert page.keep()
+    assert {r.warnings_kept for r in page.recent} == {()}
