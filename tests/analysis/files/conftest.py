@@ -8,9 +8,8 @@ from datetime import UTC, datetime, timedelta, timezone
 import pytest
 from hypothesis import strategies as st
 
-from analysis.files.columns import QUADRANTS
+from analysis.files.columns import NAMES, QUADRANTS
 from analysis.files.csvfile import read_table
-from analysis.files.columns import NAMES
 from analysis.files.reading import Reading, quadrant_fits
 
 # Everything a file can hold, with the characters that hurt drawn often.
