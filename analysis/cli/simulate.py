@@ -9,44 +9,23 @@ from typing import TYPE_CHECKING, Any
 import click
 import numpy as np
 
+from analysis.cli.design import design_of, design_options
 from analysis.errors import SettingError
 from analysis.orient.features import Feature
 from analysis.orient.vectors import strike_dip_deg, trend_plunge_deg
-from analysis.stats.synthetic import FoldDesign, draw
+from analysis.stats.synthetic import draw
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
     from analysis.files.reading import Reading
+    from analysis.stats.synthetic import FoldDesign
 
 _FIRST = datetime(2026, 1, 1, tzinfo=UTC)
 
 
-def _trend_plunge(_ctx: click.Context, _option: click.Parameter, text: str) -> tuple[float, float]:
-    from analysis.orient.notation import Notation, read_line  # noqa: PLC0415 - as the other parts of this command
-
-    line = read_line(text, Notation.TREND_PLUNGE).line
-    return line.trend_deg, line.plunge_deg
-
-
 @click.command()
-@click.option(
-    "--hinge",
-    metavar="TREND/PLUNGE",
-    default="040/10",
-    show_default=True,
-    callback=_trend_plunge,
-    help="The hinge.",
-)
-@click.option(
-    "--limbs",
-    metavar="DIP DIP",
-    nargs=2,
-    type=float,
-    default=(55.0, 55.0),
-    show_default=True,
-    help="Dips of both limbs in the profile, away from the axial surface.",
-)
+@design_options
 @click.option(
     "--transection",
     metavar="DEG",
@@ -78,26 +57,6 @@ def _trend_plunge(_ctx: click.Context, _option: click.Parameter, text: str) -> t
     default=0,
     show_default=True,
     help="Intersection lines.",
-)
-@click.option(
-    "--scatter",
-    metavar="BEDDING CLEAVAGE LINES",
-    nargs=3,
-    type=float,
-    default=(6.0, 5.0, 5.0),
-    show_default=True,
-    help="Standard deviations of a reading in one direction, degrees.",
-)
-@click.option(
-    "--outcrops", metavar="N", type=int, default=1, show_default=True, help="Outcrops, read in turn."
-)
-@click.option(
-    "--hinge-variation",
-    metavar="DEG",
-    type=float,
-    default=0.0,
-    show_default=True,
-    help="Standard deviation of the real hinge between outcrops.",
 )
 @click.option(
     "--folds",
@@ -142,17 +101,7 @@ def simulate(
     """  # noqa: D301 - click reads the escape
     from analysis.files.csvfile import csv_text, write_readings  # noqa: PLC0415 - pandas only when files are written
 
-    design = FoldDesign(
-        hinge_trend_deg=hinge[0],
-        hinge_plunge_deg=hinge[1],
-        limb_dips_deg=limbs,
-        transection_deg=transection,
-        bedding_scatter_deg=scatter[0],
-        cleavage_scatter_deg=scatter[1],
-        line_scatter_deg=scatter[2],
-        outcrops=outcrops,
-        hinge_variation_deg=hinge_variation,
-    )
+    design = design_of(hinge, limbs, scatter, outcrops, hinge_variation, transection_deg=transection)
     if not bedding + cleavage + intersection:
         raise SettingError("no readings were asked for", where="simulate", expected="at least one reading")
     counts = {Feature.BEDDING: bedding, Feature.CLEAVAGE: cleavage, Feature.INTERSECTION: intersection}
