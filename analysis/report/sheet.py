@@ -8,16 +8,16 @@ from __future__ import annotations
 
 import contextlib
 import os
-import secrets
 from pathlib import Path
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from analysis.errors import HingewiseError, SettingError
+from analysis.errors import SettingError
 from analysis.fold.records import Verdict
 from analysis.fold.words import figure_line, headline
 from analysis.report.placing import Box
+from analysis.report.whole import written_whole
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -204,34 +204,18 @@ def verdict_sign(check: FoldCheck) -> list[tuple[Floats, float]]:
 def save(figure: Figure, path: str | os.PathLike[str]) -> None:
     """Write a figure as PNG or SVG, by the file's ending, wholly or not at all.
 
-    The file is written under another name beside its place, flushed to disk and renamed. Raises SettingError
-    for another ending and HingewiseError where the folder cannot be written to; nothing is left behind then.
+    Raises SettingError for another ending and HingewiseError where the folder cannot be written to; nothing is
+    left behind then.
     """
-    target = Path(os.path.realpath(path))
-    suffix = target.suffix.lower()
+    suffix = Path(os.path.realpath(path)).suffix.lower()
     if suffix not in SUFFIXES:
         raise SettingError(
             f"{suffix or 'no ending'} is no kind of picture written here",
             where=os.fspath(path),
             expected="a name that ends in .png or .svg",
         )
-    draft = target.with_name(f".{target.name[:100]}.{secrets.token_hex(6)}.part")
-    try:
-        with house_style(), draft.open("xb") as stream:
-            if suffix == ".svg":
-                figure.savefig(stream, format="svg", metadata={"Date": None, "Creator": None})
-            else:
-                figure.savefig(stream, format="png", dpi=PNG_DPI, metadata={"Software": None})
-            stream.flush()
-            os.fsync(stream.fileno())
-        draft.replace(target)
-    except OSError as error:
-        raise HingewiseError(
-            f"cannot be written: {error.strerror or error}",
-            where=os.fspath(path),
-            expected="a folder that can be written to, with room on the disk",
-            mend="Choose another folder.",
-        ) from error
-    finally:
-        with contextlib.suppress(OSError):
-            draft.unlink(missing_ok=True)
+    with house_style(), written_whole(path) as stream:
+        if suffix == ".svg":
+            figure.savefig(stream, format="svg", metadata={"Date": None, "Creator": None})
+        else:
+            figure.savefig(stream, format="png", dpi=PNG_DPI, metadata={"Software": None})
