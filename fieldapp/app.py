@@ -8,7 +8,7 @@ from __future__ import annotations
 import os
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 os.environ.setdefault("KIVY_NO_ARGS", "1")  # the command line is ours
 
@@ -84,6 +84,8 @@ class HingewiseApp(App):
         self._home_path = self.notebook_path
         self._executor: object = None
         self._stop_listening: list[Callable[[], None]] = []
+        self._stands = False  # whether the first frame was drawn
+        self._held: list[Callable[[], None]] = []
 
     # Coming and going
 
@@ -100,13 +102,23 @@ class HingewiseApp(App):
         Window.bind(size=self._window_changed, on_key_down=self._keyboard.key_down)
         Metrics.bind(density=self._window_changed, fontscale=self._window_changed)
         self.outline.refresh(EVERYTHING)
+        Window.bind(on_flip=self._first_frame_drawn)
+        self._held.append(self.outline.complete)
         if first_time and not self.demo:
-            Clock.schedule_once(lambda _dt: self.open_sheet("safety"), 0)
+            self._held.append(lambda: self.open_sheet("safety"))
+        self._held.append(self._start_devices)
         return self.outline
 
-    def on_start(self) -> None:
-        """Listen to the devices once the first frame stands."""
-        Clock.schedule_once(lambda _dt: self._start_devices(), 0)
+    def _first_frame_drawn(self, *_: object) -> None:
+        """The page can be used: now what could wait, so that it came up as fast as it can."""
+        Window.unbind(on_flip=self._first_frame_drawn)
+        Clock.schedule_once(self._do_the_rest, 0)
+
+    def _do_the_rest(self, _dt: float) -> None:
+        self._stands = True
+        held, self._held = self._held, []
+        for call in held:
+            call()
 
     def on_pause(self) -> bool:
         """Leave the screen: everything kept is committed already; the draft is saved, the sensors stop."""
@@ -135,7 +147,14 @@ class HingewiseApp(App):
         from fieldapp.dispatch import ThreadDispatch
 
         self._executor = ThreadPoolExecutor(max_workers=1, thread_name_prefix="forecast")
-        dispatch = ThreadDispatch(self._executor, mainthread(lambda call: call()))
+        elsewhere = ThreadDispatch(self._executor, mainthread(lambda call: call()))
+
+        def dispatch(*work: Any) -> None:  # noqa: ANN401 - a work, its end and its failure, as ThreadDispatch takes them
+            if self._stands:
+                elsewhere(*work)
+            else:
+                self._held.append(lambda: elsewhere(*work))
+
         if demo:
             from fieldapp.notebook.demo import make_demo
 
@@ -203,6 +222,9 @@ class HingewiseApp(App):
 
     def _choose_theme(self) -> None:
         self.theme = DARK if self.page.settings.appearance.value == "dark" else LIGHT
+        # The ground of the page is what the window is cleared with: a rectangle over all of it would cost a fifth
+        # of a frame.
+        Window.clearcolor = self.theme.paper
 
     def _form_now(self) -> Form:
         density = Metrics.density

@@ -145,8 +145,7 @@ class LogLeaf(BoxLayout):
         self.place_row = PlaceRow()
         self.feature_row = BoxLayout()
         self.readout = Readout()
-        self.grid_small = DirectionGrid()
-        self.grid_large = DirectionGrid(last_row=True)
+        self.grid_small = self.grid_large = None  # made when a screen first needs them
         self.check_slot = CheckSlot()
         self.pad = KeyPad()
         self.side = SideKeys()
@@ -166,9 +165,6 @@ class LogLeaf(BoxLayout):
 
     def _bind_keys(self) -> None:
         self.pad.bind(on_sign=lambda _pad, sign: self.sign(sign))
-        for grid in (self.grid_small, self.grid_large):
-            grid.bind(on_direction=lambda _grid, name: self.page.choose_quadrant(name))
-            grid.bind(on_sign=lambda _grid, sign: self.sign(sign))
         self.check_slot.bind(on_take=lambda _slot: self._take_offer())
         self.check_slot.bind(on_put_away=lambda _slot: self.page.dismiss_message())
         for name in ("keep", "clear", "note", "measure"):
@@ -176,6 +172,12 @@ class LogLeaf(BoxLayout):
         self.place_row.bind(on_release=lambda _row: App.get_running_app().open_sheet("place"))
         self.place_row.ids.list.bind(on_release=lambda _key: App.get_running_app().open_sheet("readings"))
         self.place_row.ids.settings.bind(on_release=lambda _key: App.get_running_app().open_sheet("settings"))
+
+    def _new_grid(self, *, last_row: bool) -> DirectionGrid:
+        grid = DirectionGrid(last_row=last_row)
+        grid.bind(on_direction=lambda _grid, name: self.page.choose_quadrant(name))
+        grid.bind(on_sign=lambda _grid, sign: self.sign(sign))
+        return grid
 
     def sign(self, sign: str) -> None:
         """Pass a sign from a key pad or a keyboard to the entry."""
@@ -246,13 +248,18 @@ class LogLeaf(BoxLayout):
         remarks += ["note"] if entry.note else []
         remarks += [] if entry.saved else ["not yet saved"]
         readout.remark = ", ".join(remarks)
-        for grid in (self.grid_small, self.grid_large):
-            grid.chosen, grid.expected = entry.quadrant, entry.expected_quadrant
-        self.grid_small.opacity = 1.0 if entry.quadrant_offered else 0.0
-        self.grid_small.disabled = not entry.quadrant_offered
+        self._show_grids(entry)
         self.side.keys["keep"].look = "accent" if entry.ready else "plain"
         self.side.keys["keep"].text = "Keep" if not entry.mending else "Keep mended"
         self._show_check(entry)
+
+    def _show_grids(self, entry: EntryState) -> None:
+        for grid in (self.grid_small, self.grid_large):
+            if grid is not None:
+                grid.chosen, grid.expected = entry.quadrant, entry.expected_quadrant
+        if self.grid_small is not None:
+            self.grid_small.opacity = 1.0 if entry.quadrant_offered else 0.0
+            self.grid_small.disabled = not entry.quadrant_offered
 
     def _show_check(self, entry: EntryState) -> None:
         """Trouble first, then what a check asks, then notes, then what is fine, then what is missing."""
@@ -350,6 +357,8 @@ class LogLeaf(BoxLayout):
             self.place_row, self.feature_row, self.readout, self.grid_small, self.check_slot, self.pad,
             self.side, self.recent_row, self._pad_holder,
         ):  # fmt: skip
+            if widget is None:
+                continue
             if widget.parent is not None:
                 widget.parent.remove_widget(widget)
             widget.size_hint = (1, 1)
@@ -381,6 +390,7 @@ class LogLeaf(BoxLayout):
                 self.add_widget(Widget())
         self._show_pad()
         if self.page is not None:
+            self._show_grids(self.page.entry)
             self._show_tabs(self.page.tabs)
             self._show_recent()
 
@@ -390,6 +400,7 @@ class LogLeaf(BoxLayout):
     def _readout_row(self, form: Form, gap: float) -> BoxLayout:
         row = BoxLayout(spacing=gap)
         if form.grid_beside:
+            self.grid_small = self.grid_small or self._new_grid(last_row=False)
             self.readout.size_hint_x, self.grid_small.size_hint_x = 0.52, 0.48
             for widget in self._handed(self.readout, self.grid_small):
                 row.add_widget(widget)
@@ -406,6 +417,9 @@ class LogLeaf(BoxLayout):
         if not whole:
             self.digits_wanted = False
         turn = not self.form.grid_beside and entry.quadrant_offered and whole and not self.digits_wanted
+        if turn and self.grid_large is None:
+            self.grid_large = self._new_grid(last_row=True)
+            self._show_grids(entry)
         pad = self.grid_large if turn else self.pad
         if pad.parent is self._pad_holder and len(self._pad_holder.children) == 2:
             return

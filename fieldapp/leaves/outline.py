@@ -67,6 +67,7 @@ class Outline(FloatLayout):
         self._make = make
         self.leaves: dict[str, Widget] = {}
         self._behind: dict[str, Change] = {}
+        self._first_frame = True
         self.leaf_keys: dict[str, LeafKey] = {}
         self.demo_mark = DemoMark()
         self.notice = Notice()
@@ -118,18 +119,27 @@ class Outline(FloatLayout):
         body.clear_widgets()
         names = self.names_shown
         for number, name in enumerate(names):
-            leaf = self.leaf(name)
-            leaf.size_hint_x = 1
-            if len(names) > 1 and number == 0:
-                share = form.log_width_dp / form.width_dp
-                leaf.size_hint_x = share / (1.0 - share)
             if number:
                 body.add_widget(Divider())
+                if self._first_frame:
+                    # The page is usable with its first leaf; the second comes with the next frame.
+                    body.add_widget(Widget())
+                    continue
+            leaf = self.leaf(name)
+            leaf.size_hint_x = 1
             body.add_widget(leaf)
+        if len(names) > 1:
+            share = form.log_width_dp / form.width_dp
+            body.children[-1].size_hint_x = share / (1.0 - share)
         for name, key in self.leaf_keys.items():
             key.chosen = name in names
         self._bring_up_to_date()
         self._show_notice()
+
+    def complete(self) -> None:
+        """Bring what could wait for the first frame."""
+        self._first_frame = False
+        self._lay_out()
 
     # Telling
 
