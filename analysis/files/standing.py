@@ -43,12 +43,12 @@ def find(table: ReadingTable) -> tuple[Bools, tuple[Conflict, ...]]:
     live: Bools = ~table.struck_out
     ids = table.column("reading_id")
     revision = table.revision
-    some_missing = bool(len(ids)) and bool((ids == "").any())
-    if some_missing and bool((ids == "").all()) and len(table.files) == 1 and bool((revision == 1).all()):
+    missing = ids == ""
+    if len(table.files) == 1 and bool(missing.all()) and bool((revision == 1).all()):
         # Equal rows of one file are different readings: each row stands for itself.
         return live, ()
-    ids = table.reading_id if some_missing else ids
-    if pd.Index(ids).is_unique:
+    ids = table.reading_id if bool(missing.any()) else ids
+    if pd.Index(ids, dtype=object).is_unique:
         return live, ()
     return _highest(table, ids, revision, live)
 

@@ -238,6 +238,8 @@ class ReadingTable:
             rows = np.flatnonzero(self.standing)
             fold = self.fold
             codes = fold.codes[rows]
+            if len(fold.names) < 2**16:
+                codes = codes.astype(np.uint16)  # sorted by radix, in a fraction of the time
             ordered = np.argsort(codes, kind="stable")
             present, starts = np.unique(codes[ordered], return_index=True)
             groups = np.split(rows[ordered], starts[1:])
