@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from analysis.orient.position import Position
@@ -122,14 +123,14 @@ class PageNorth(PageCore):
             )
             if not found.is_true:
                 continue
-            late = corrected_late(reading, found, self._clock())
-            kept = tuple(w for w in reading.warnings_kept if w != NOT_CORRECTED)
+            waited = tuple(w for w in reading.warnings_kept if w != NOT_CORRECTED)
+            late = corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
             changes = {
                 "strike_deg": late.strike_deg,
                 "trend_deg": late.trend_deg,
                 "correction_deg": late.correction_deg,
                 "correction_model": late.correction_model,
-                "warnings_kept": kept,
+                "warnings_kept": late.warnings_kept,
             }
             revised = self._revise(reading, changes)
             if revised is None:

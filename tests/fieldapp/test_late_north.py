@@ -44,7 +44,7 @@ def test_a_quadrant_that_just_misses_true_north_is_kept_with_a_warning():
     """A side that fitted the compass by a hair and not true north stays as tapped, and the record says so."""
     far_west = north_correction("magnetic", Position(60.0, -140.0), DAY)
     assert far_west.correction_deg > 10.0
-    reading = bed(strike_deg=45.0, dip_quadrant="E")  # dips 135 from magnetic, 45° from east: it just fits
+    reading = bed(strike_deg=75.0, dip_quadrant="E")  # dips 165 from magnetic, 75° from east: within the 80
     later = corrected_late(reading, far_west, LATER)
     assert later.dip_quadrant == "E"
     assert later.warnings_kept == ("quadrant-misfit",)

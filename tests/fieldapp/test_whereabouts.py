@@ -138,3 +138,15 @@ def test_the_plan_lays_outcrops_out_in_metres(page, clock, kept):
     assert b.lines == pytest.approx((50.0, 10.0))
     page.choose_outcrop("C")
     assert page.plan.unplaced == ("C",)
+
+
+def test_a_late_correction_that_turns_a_strike_off_its_side_is_kept_as_seen(page, clock, typed):
+    """A side that fitted the compass and just misses true north stays, and the record says so."""
+    typed(page, "075/30", "E")  # dips 165 from magnetic north, 75 degrees from east: within the 80 that fit
+    assert page.keep()
+    reading_id = page.recent[0].reading_id
+    page.position_changed(PositionFix(latitude_deg=60.0, longitude_deg=-140.0, at=clock()))
+    assert page.correct_north() == 1
+    late = page._all[reading_id]
+    assert late.correction_deg > 10.0
+    assert (late.dip_quadrant, late.warnings_kept) == ("E", ("quadrant-misfit",))
