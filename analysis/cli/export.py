@@ -53,7 +53,7 @@ def export(
     *,
     strict: bool,
 ) -> None:
-    r"""Write the readings in FILE... and the verdict on each fold for a GIS.
+    """Write the readings in FILE... and the verdict on each fold for a GIS.
 
     GeoPackage has a layer a feature and one of verdicts, with the styles that draw strike-and-dip symbols turned
     by azimuth; GeoJSON has the same as one collection. Points are in WGS 84. Readings that stand are in it, those
@@ -62,7 +62,7 @@ def export(
     \b
     Example:
       hingewise export readings.csv -o readings.gpkg
-    """
+    """  # noqa: D301 - click reads the escape
     if output.suffix.lower() not in _FORMATS:
         raise SettingError(
             f"{output.name} ends in no format",

@@ -49,7 +49,7 @@ def survey_command(
     *,
     moving: bool,
 ) -> None:
-    r"""Map hinge, cleavage, intersection, transection and verdict over an archive of CSV and Parquet files.
+    """Map hinge, cleavage, intersection, transection and verdict over an archive of CSV and Parquet files.
 
     Folders are searched for files. The archive is read piece by piece and never held whole; the figures are those
     that `check` gives fold by fold. By fold, each is placed at the mean position of its readings; by square, at the
@@ -58,7 +58,7 @@ def survey_command(
     \b
     Example:
       hingewise survey archive/ -o map.gpkg --cell 2
-    """
+    """  # noqa: D301 - click reads the escape
     from analysis.survey.run import survey  # noqa: PLC0415 - pandas is loaded only when files are read
     from analysis.survey.squares import Grid  # noqa: PLC0415 - as above
 

@@ -32,7 +32,7 @@ def _opened(path: Path) -> Any:  # noqa: ANN401 - pyarrow has no types
         ) from error
     try:
         return parquet.ParquetFile(path)
-    except (OSError, pa.ArrowInvalid) as error:
+    except (OSError, pa.ArrowException) as error:
         raise CsvError(f"cannot be read: {error}", where=str(path), expected="a Parquet file") from error
 
 
@@ -79,15 +79,19 @@ def parquet_parts(path: Path) -> tuple[list[tuple[tuple[int, ...], int]], bool]:
 
 def parquet_texts(path: Path, row_groups: tuple[int, ...]) -> Iterator[bytes]:
     """Give the rows of some row groups as CSV with a header line each, some ten thousand rows at a time."""
-    from pyarrow import csv  # noqa: PLC0415 - as above
+    import pyarrow as pa  # noqa: PLC0415 - as above
+    from pyarrow import csv  # noqa: PLC0415
 
     with _opened(path) as file:
         empty = True
-        for batch in file.iter_batches(_ROWS_IN_TEXT, row_groups=list(row_groups)):
-            empty = False
-            stream = io.BytesIO()
-            csv.write_csv(_as_text(batch, path), stream)
-            yield stream.getvalue()
+        try:
+            for batch in file.iter_batches(_ROWS_IN_TEXT, row_groups=list(row_groups)):
+                empty = False
+                stream = io.BytesIO()
+                csv.write_csv(_as_text(batch, path), stream)
+                yield stream.getvalue()
+        except (OSError, pa.ArrowException) as error:
+            raise CsvError(f"cannot be read: {error}", where=str(path), expected="a Parquet file") from error
         if empty:
             yield (",".join(f'"{name}"' for name in file.schema_arrow.names) + "\n").encode()
 
@@ -117,7 +121,7 @@ def _as_text(batch: Any, path: Path) -> Any:  # noqa: ANN401 - pyarrow has no ty
         elif not (pa.types.is_integer(kind) or pa.types.is_null(kind)):
             try:
                 made = made.cast(pa.string())
-            except pa.ArrowInvalid as error:
+            except pa.ArrowException as error:
                 raise CsvError(
                     f"the column {name} holds {kind}",
                     where=str(path),

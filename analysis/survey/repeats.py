@@ -32,8 +32,8 @@ if TYPE_CHECKING:
 class Repeats(NamedTuple):
     """Rows of the whole archive, numbered through all parts in order.
 
-    `superseded` have a higher revision elsewhere. `tied` share the highest revision of their reading with other
-    rows, and `tied_ids` (as many) say with which.
+    `superseded` have a higher revision elsewhere. `tied` share id and revision with other rows, and `tied_ids` (as
+    many) say with which; superseded ones may be among them.
     """
 
     superseded: Rows
@@ -57,9 +57,9 @@ def find_repeats(scans: Sequence[Scan]) -> Repeats:
     revisions = np.concatenate([scan.revisions for scan in scans])[rows]
     highest = np.zeros(len(repeated), dtype=np.int32)
     np.maximum.at(highest, ids, revisions)
-    top = revisions == highest[ids]
-    tied = top & (np.bincount(ids[top], minlength=len(repeated)) > 1)[ids]
-    return Repeats(rows[~top], rows[tied], ids[tied])
+    keys, groups = np.unique(np.stack([ids, revisions], axis=-1), axis=0, return_inverse=True)
+    tied = (np.bincount(groups, minlength=len(keys)) > 1)[groups]
+    return Repeats(rows[revisions < highest[ids]], rows[tied], groups[tied])
 
 
 def by_part(rows: Rows, scans: Sequence[Scan]) -> dict[int, Rows]:

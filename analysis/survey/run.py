@@ -158,7 +158,7 @@ def _without_repeats(
             clashing = np.array(list(ties.clashing), dtype=np.int64)
             lost, conflicts = repeats.settle_clashes(ties.clashing, fetched(readings_at, clashing))
             out.append(lost)
-    places = repeats.by_part(np.concatenate(out), scans)
+    places = repeats.by_part(np.unique(np.concatenate(out)), scans)
     if places:
         tasks = [delayed(sums_at)(scans[at].part, rows, grid) for at, rows in places.items()]
         total = total - sum_of(compute(tasks, "taking back repeated rows"))
@@ -242,7 +242,7 @@ def _cluster(address: str, progress: TextIO | None) -> Iterator[Compute]:
 
     def compute(tasks: list[Any], label: str) -> list[Any]:
         futures = client.compute(tasks)
-        for done, _ in enumerate(as_completed(futures), start=1):
+        for done, _ in enumerate(as_completed(futures, loop=client.loop), start=1):
             if progress is not None:
                 progress.write(f"\r{label}: {done} of {len(futures)} parts")
         if progress is not None:

@@ -70,7 +70,7 @@ class Grid:
         return latitude, (place + 0.5) * 360.0 / int(self.squares_in(band)) - 180.0
 
     def window_of(self, name: str, held: Iterable[str]) -> tuple[str, ...]:
-        """Names, among those held, of the squares whose middles lie within one and a half widths each way."""
+        """Names, among those held, of the square and those around it: the three nearest of three bands."""
         held = held if isinstance(held, set | frozenset) else set(held)
         band, _ = parts_of(name)
         _, longitude = self.centre_deg(name)
@@ -79,8 +79,8 @@ class Grid:
             squares = int(self.squares_in(other))
             width_deg = 360.0 / squares
             first = (longitude + 180.0) / width_deg - 0.5  # the place whose middle has this longitude
-            low, high = math.ceil(first - 1.5 + 1e-9), math.floor(first + 1.5 - 1e-9)
-            places = {place % squares for place in range(low, high + 1)}
+            low = math.ceil(first - 1.5)
+            places = {place % squares for place in range(low, low + 3)}
             found += [square_name(other, place) for place in sorted(places)]
         return tuple(square for square in found if square in held)
 
