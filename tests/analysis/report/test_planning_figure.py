@@ -54,7 +54,7 @@ def test_labels_of_curves_do_not_cover_each_other(planned):
 
 def test_a_fold_that_does_not_settle_is_marked_at_the_top():
     """A transection without a median gets a mark of its own, which the key explains."""
-    rough = FoldDesign(limb_dips_deg=(20.0, 20.0), bedding_scatter_deg=12.0)
+    rough = FoldDesign(bedding_scatter_deg=10.0, cleavage_scatter_deg=9.0)
     figure = draw_plan_of_readings(plan(rough, transections_deg=(0.0, 40.0), folds=20, most_readings=40))
     lines = {line.get_gid(): line for axes in figure.axes for line in axes.lines}
     assert list(lines["never"].get_xdata()) == [0.0]
