@@ -4,6 +4,8 @@ The pictures show the invented Mossgarth folds on a tablet, upright and on its s
 with larger type. Each screen is a process of its own, because Kivy reads density and font scale once.
 """
 
+# ruff: noqa: PLC0415 - Kivy is imported in the process of one screen only.
+
 from __future__ import annotations
 
 import contextlib
@@ -44,7 +46,7 @@ SCREENS = (
 )
 
 
-def take(screen: Screen, folder: Path) -> None:
+def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk through all leaves
     """Open the demo on one screen and save a picture of each leaf; runs in the process of that screen."""
     sys.path.insert(0, str(setup_env.ROOT))
     from kivy.config import Config

@@ -3,6 +3,9 @@
 `open_app` is the one way in. Nothing here or below imports pandas or matplotlib; a hand-over does when it is made.
 """
 
+# ruff: noqa: E402, PLC0415 - Kivy is configured before its window is imported; what the first frame does not need
+# is imported when it is used.
+
 from __future__ import annotations
 
 import os
@@ -23,11 +26,10 @@ from fieldapp.look.fonts import register
 register()
 
 from kivy.app import App
-from kivy.base import EventLoop
 from kivy.clock import Clock, mainthread
 from kivy.core.window import Window
 from kivy.metrics import Metrics
-from kivy.properties import ObjectProperty
+from kivy.properties import BooleanProperty, ObjectProperty
 
 from fieldapp.leaves.keyboard import Keyboard
 from fieldapp.leaves.log import LogLeaf
@@ -36,18 +38,22 @@ from fieldapp.look.form import Form
 from fieldapp.look.theme import DARK, LIGHT
 from fieldapp.mishaps import MishapLog, watch
 from fieldapp.outcrop import open_page
-from fieldapp.states import EVERYTHING, Change, SignalKind
+from fieldapp.states import EVERYTHING, Change
 
 if TYPE_CHECKING:
     from collections.abc import Callable
+    from concurrent.futures import ThreadPoolExecutor
 
+    from kivy.clock import ClockEvent
     from kivy.uix.widget import Widget
 
+    from fieldapp.attending import Attendant
+    from fieldapp.devices.clock import Clock as DeviceClock
+    from fieldapp.devices.ports import Devices
     from fieldapp.leaves.parts import Sheet
     from fieldapp.outcrop import OutcropPage
     from fieldapp.states import Signal
 
-AGE_TICK_S = 1.0  # the age of a position is told to the second at most
 NAME = "Hingewise"
 
 
@@ -61,13 +67,15 @@ class HingewiseApp(App):
 
     theme = ObjectProperty(LIGHT, rebind=True)
     form = ObjectProperty(Form(800.0, 1280.0), rebind=True)
+    has_sensors = BooleanProperty(False)
 
     def __init__(
         self,
         notebook_path: Path,
         *,
         demo: bool = False,
-        devices: object = None,
+        devices: Devices | None = None,
+        device_clock: DeviceClock | None = None,
         clock: Callable[[], datetime] = now_utc,
         **kwargs: object,
     ) -> None:
@@ -76,13 +84,16 @@ class HingewiseApp(App):
         self.notebook_path = Path(notebook_path)
         self.demo = demo
         self.devices = devices
+        self.device_clock = device_clock
+        self.attendant: Attendant | None = None
         self.clock_utc = clock
         self.mishaps = MishapLog(self.notebook_path.parent / "mishaps.log", clock)
         self.outline: Outline | None = None
         self.page: OutcropPage | None = None
         self._keyboard: Keyboard | None = None
         self._home_path = self.notebook_path
-        self._executor: object = None
+        self._executor: ThreadPoolExecutor | None = None
+        self._seconds: ClockEvent | None = None
         self._stop_listening: list[Callable[[], None]] = []
         self._stands = False  # whether the first frame was drawn
         self._held: list[Callable[[], None]] = []
@@ -174,19 +185,21 @@ class HingewiseApp(App):
 
     def change_notebook(self, path: Path, *, demo: bool) -> None:
         """Open another notebook: the demo, or the geologist's own again."""
+        self._stop_devices()
         self._close()
         self._open(path, demo=demo)
         self._choose_theme()
         self.outline.refresh(EVERYTHING)
+        self._start_devices()
 
     def open_demo(self) -> None:
         """Open the invented notebook; it is a file of its own and cannot mix with real readings."""
         self.change_notebook(demo_path_beside(self._home_path), demo=True)
 
     def leave_demo(self) -> None:
-        """Go back to the geologist's own notebook."""
-        home = self._home_path
-        self.change_notebook(home.with_name("notebook.db") if self.demo and home == self.notebook_path else home, demo=False)
+        """Go back to the geologist's own notebook, or to a new one where the app was opened on the demo."""
+        own = self._home_path
+        self.change_notebook(own.with_name("notebook.db") if own == self.notebook_path else own, demo=False)
 
     # Wiring
 
@@ -197,28 +210,38 @@ class HingewiseApp(App):
             self.outline.refresh(change)
 
     def _signalled(self, signal: Signal) -> None:
-        devices = self.devices
-        if devices is None:
-            return
-        if signal.kind is SignalKind.KEPT:
-            devices.vibrate(0.04)
-        elif signal.kind is SignalKind.VERDICT:
-            devices.vibrate(0.25)
-        if signal.spoken:
-            devices.speak(signal.spoken)
+        if self.attendant is not None:
+            self.attendant.signalled(signal)
 
     def _start_devices(self) -> None:
-        if self.devices is not None:
-            self.devices.start(self.page)
+        from fieldapp.attending import Attendant
+        from fieldapp.devices.choose import choose_devices
+        from fieldapp.devices.clock import SystemClock
+
+        if self.devices is None:
+            self.devices = choose_devices(Window)
+        self.attendant = Attendant(
+            self.devices, self.page, self.device_clock or SystemClock(), self._tell_mishap
+        )
+        self.attendant.start()
+        self.has_sensors = self.attendant.has_sensors
+        if self.attendant.wants_seconds:
+            self._seconds = Clock.schedule_interval(self._second, 1.0)
+
+    def _second(self, _dt: float) -> None:
+        self.attendant.second()
 
     def _stop_devices(self) -> None:
-        if self.devices is not None:
-            self.devices.stop()
+        if self._seconds is not None:
+            self._seconds.cancel()
+            self._seconds = None
+        if self.attendant is not None:
+            self.attendant.stop()
+            self.attendant = None
 
     def measure(self) -> None:
         """Read an attitude with the sensors into the draft."""
-        if self.devices is not None:
-            self.devices.measure(self.page)
+        self.open_sheet("measure")
 
     def _choose_theme(self) -> None:
         self.theme = DARK if self.page.settings.appearance.value == "dark" else LIGHT
@@ -271,10 +294,13 @@ class HingewiseApp(App):
             self.outline.show("Log")
 
     def share(self, path: Path) -> None:
-        """Hand a file to the device's own sharing, where there is one."""
-        share = getattr(self.devices, "share", None)
-        if share is not None:
-            share(path)
+        """Hand a file to the device's own sharing, on a phone or tablet; elsewhere the file stands where it is."""
+        from fieldapp.devices.choose import is_field_build
+
+        if is_field_build():
+            from plyer import share
+
+            share.share(path=str(path), title=path.name)
 
     def _tell_mishap(self, text: str) -> None:
         if self.outline is not None:
@@ -296,4 +322,4 @@ def open_app(notebook_path: str | os.PathLike[str], *, demo: bool = False) -> No
     HingewiseApp(path, demo=demo).run()
 
 
-__all__ = ["AGE_TICK_S", "EventLoop", "HingewiseApp", "demo_path_beside", "open_app"]
+__all__ = ["HingewiseApp", "demo_path_beside", "open_app"]

@@ -1,8 +1,8 @@
 """The narrowing funnel: the transection against the count of readings, its valid interval closing in."""
 
-from __future__ import annotations
+# ruff: noqa: RUF001 - the page is set with true minus signs and dashes.
 
-from typing import TYPE_CHECKING
+from __future__ import annotations
 
 import numpy as np
 from kivy.clock import Clock
@@ -15,9 +15,6 @@ from fieldapp.drawing import placing, strokes
 from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
 from fieldapp.drawing.scene import FunnelScene
 from fieldapp.look.theme import LIGHT
-
-if TYPE_CHECKING:
-    from fieldapp.look.theme import Theme
 
 MOST_DOTS = 24  # more readings than this and the line alone is clearer
 
@@ -53,7 +50,9 @@ class NarrowingFunnel(Widget):
         self._layer = InstructionGroup()
         self.canvas.add(self._layer)
         self._redraw = Clock.create_trigger(self.redraw, -1)
-        self.bind(pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self.bind(
+            pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw
+        )
         self._redraw()
 
     def to_page(self, counts: np.ndarray, angles_deg: np.ndarray) -> np.ndarray:
@@ -101,8 +100,12 @@ class NarrowingFunnel(Widget):
         left, bottom, right, top = self._box
         first, last, low, high = self._span
         margin = self.scene.margin_deg
-        band = self.to_page(np.array([first, first, last, last]), np.array([-margin, margin, margin, -margin]))
-        add_mesh(group, theme.card, [strokes.polygon([(left, bottom), (right, bottom), (right, top), (left, top)])])
+        band = self.to_page(
+            np.array([first, first, last, last]), np.array([-margin, margin, margin, -margin])
+        )
+        add_mesh(
+            group, theme.card, [strokes.polygon([(left, bottom), (right, bottom), (right, top), (left, top)])]
+        )
         add_mesh(group, theme.band, [strokes.polygon(band)])
         zero = self.to_page(np.array([first, last]), np.zeros(2))
         edges = [strokes.line([(left, top), (left, bottom), (right, bottom)], dp(1.2))]
@@ -166,7 +169,7 @@ class NarrowingFunnel(Widget):
 
     def _draw_words(self, group: InstructionGroup) -> None:
         scene, theme = self.scene, self.theme
-        left, bottom, right, top = self._box
+        left, _, right, top = self._box
         size = sp(self.words_sp)
         taken = self.words_boxes
 
@@ -180,10 +183,16 @@ class NarrowingFunnel(Widget):
         names = PAINTS.words("readings in the fold →", size)
         put("across", "readings in the fold →", theme.muted, right - names.width, self.y)
         band = PAINTS.words(f"within ±{scene.margin_deg:g}°", size)
-        first, last, low, high = self._span
+        first, last, _, _ = self._span
         low_edge = self.to_page(np.array([first]), np.array([-scene.margin_deg]))[0][1]
         if scene.known.any():
-            put("band", f"within ±{scene.margin_deg:g}°", theme.ink, right - band.width - dp(5), low_edge + dp(1))
+            put(
+                "band",
+                f"within ±{scene.margin_deg:g}°",
+                theme.ink,
+                right - band.width - dp(5),
+                low_edge + dp(1),
+            )
         if not scene.known.any():
             self._put_wrapped(group, scene.why_empty)
         elif scene.settles_at is not None:

@@ -23,7 +23,7 @@ from fieldapp.look.theme import LIGHT
 
 if TYPE_CHECKING:
     from analysis.orient.features import Feature
-    from fieldapp.look.theme import Rgba, Theme
+    from fieldapp.look.theme import Rgba
 
 REACH_DP = 26.0  # a thumb in a glove need not hit a dot exactly
 WIDE_DEG = 45.0
@@ -111,10 +111,7 @@ class EqualAreaNet(Widget):
             strokes.segments(on_rim[main], on_rim[main] - rays[main] * dp(13), dp(2)),
             strokes.segments(on_rim[~main], on_rim[~main] - rays[~main] * dp(6), dp(1.2)),
         ]
-        cross = [
-            strokes.line([centre - (dp(5), 0), centre + (dp(5), 0)], dp(1.2)),
-            strokes.line([centre - (0, dp(5)), centre + (0, dp(5))], dp(1.2)),
-        ]
+        cross = [strokes.line([centre - arm, centre + arm], dp(1.2)) for arm in np.eye(2) * dp(5)]
         add_mesh(group, theme.ink, [strokes.line(rim, dp(2), closed=True), *ticks])
         add_mesh(group, theme.rule, cross)
         words = PAINTS.words("N", sp(self.words_sp), bold=True)
@@ -145,7 +142,9 @@ class EqualAreaNet(Widget):
         self._draw_labels(group)
 
     def _colour_of(self, feature: Feature) -> Rgba:
-        return {"cleavage": self.theme.second, "intersection": self.theme.accent}.get(feature.value, self.theme.ink)
+        return {"cleavage": self.theme.second, "intersection": self.theme.accent}.get(
+            feature.value, self.theme.ink
+        )
 
     def _draw_readings(self, group: InstructionGroup) -> None:
         keys: list[str] = []
@@ -183,7 +182,9 @@ class EqualAreaNet(Widget):
         group.add(Color(red, green, blue, 0.8))
         size = round(dp(5))
         group.add(
-            Point(points=places[:-1].ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size))
+            Point(
+                points=places[:-1].ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size)
+            )
         )
 
     def _draw_mean(self, group: InstructionGroup, name: str, mean: Mean, colour: Rgba, shape: str) -> None:
@@ -218,7 +219,9 @@ class EqualAreaNet(Widget):
     def _draw_chosen(self, group: InstructionGroup) -> None:
         if self.scene.chosen_key in self._keys:
             place = self._places[self._keys.index(self.scene.chosen_key)]
-            add_mesh(group, self.theme.ink, [strokes.line(strokes.circle(place, dp(13), 48), dp(2.5), closed=True)])
+            add_mesh(
+                group, self.theme.ink, [strokes.line(strokes.circle(place, dp(13), 48), dp(2.5), closed=True)]
+            )
 
     def _draw_labels(self, group: InstructionGroup) -> None:
         scene, theme = self.scene, self.theme

@@ -107,7 +107,9 @@ class Paints:
         if texture is None:
             if len(self._words) > MOST_WORDS:
                 self._words.clear()
-            label = CoreLabel(text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1))
+            label = CoreLabel(
+                text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1)
+            )
             label.refresh()
             texture = self._words[key] = label.texture
         return texture
@@ -133,7 +135,9 @@ def marker_alpha(shape: str, size: int) -> np.ndarray:
         inside = reach * (0.80 if shape == "dot" else 1.0) - np.hypot(x, y)
     elif shape == "triangle":
         # Three half planes; the base lies low (texture rows run upwards).
-        inside = np.minimum(y + reach * 0.72, (reach * 1.0 - y - np.sqrt(3.0) * np.abs(x)) / 2.0 + reach * 0.0)
+        inside = np.minimum(
+            y + reach * 0.72, (reach * 1.0 - y - np.sqrt(3.0) * np.abs(x)) / 2.0 + reach * 0.0
+        )
     elif shape == "diamond":
         inside = (reach - np.abs(x) - np.abs(y)) / np.sqrt(2.0)
     else:

@@ -53,9 +53,7 @@ def place_beside(
             cost += sum(WORDS_COST * overlap(box, other) / area for other in taken)
             cost += OUTSIDE_COST * (1.0 - overlap(box, bounds) / area)
             if len(points):
-                inside = (
-                    (points[:, 0] > box[0]) & (points[:, 0] < box[2]) & (points[:, 1] > box[1]) & (points[:, 1] < box[3])
-                )
+                inside = np.all((points > box[:2]) & (points < box[2:]), axis=1)
                 cost += min(float(inside.sum()), 20.0)
             if cost < least:
                 best, least = box, cost

@@ -82,7 +82,9 @@ class PlanSketch(Widget):
         self._layer = InstructionGroup()
         self.canvas.add(self._layer)
         self._redraw = Clock.create_trigger(self.redraw, -1)
-        self.bind(pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw)
+        self.bind(
+            pos=self._redraw, size=self._redraw, scene=self._redraw, theme=self._redraw, words_sp=self._redraw
+        )
         self._redraw()
 
     def redraw(self, *_: object) -> None:
@@ -98,7 +100,9 @@ class PlanSketch(Widget):
         self._draw_north(group)
         if not scene.outcrops:
             words = PAINTS.words(scene.why_empty, sp(self.words_sp))
-            self._put(group, "empty", scene.why_empty, theme.muted, self.center_x - words.width / 2, self.center_y)
+            self._put(
+                group, "empty", scene.why_empty, theme.muted, self.center_x - words.width / 2, self.center_y
+            )
             return
         pixels_per_m = self._place_outcrops(scene.outcrops)
         self._draw_scale(group, pixels_per_m)
@@ -126,6 +130,7 @@ class PlanSketch(Widget):
         if outcrop.here:
             add_mesh(group, theme.pressed, [strokes.polygon(strokes.circle(place, dp(25), 48))])
         half = dp(17)
+        along = np.linspace(-half, half, 9)[:, np.newaxis]  # words keep off the bars
         if not outcrop.planes:
             add_mesh(group, theme.ink, [strokes.polygon(strokes.circle(place, dp(3.5), 24))])
         for plane in outcrop.planes:
@@ -139,7 +144,7 @@ class PlanSketch(Widget):
                 words.size,
                 gap=dp(4),
                 taken=list(self.words_boxes.values()),
-                points=place + np.concatenate([azimuth_ray(p.strike_deg) * np.linspace(-half, half, 9)[:, np.newaxis] for p in outcrop.planes]),
+                points=place + np.concatenate([along * azimuth_ray(p.strike_deg) for p in outcrop.planes]),
                 bounds=(self.x, self.y, self.right, self.top),
             )
             self._put(group, f"dip {outcrop.name} {plane.feature.value}", words, colour, box[0], box[1])
@@ -151,7 +156,9 @@ class PlanSketch(Widget):
             words.size,
             gap=dp(20),
             taken=list(self.words_boxes.values()),
-            points=np.array([place for name, place in self._places.items() if name != outcrop.name]).reshape(-1, 2),
+            points=np.array([place for name, place in self._places.items() if name != outcrop.name]).reshape(
+                -1, 2
+            ),
             bounds=(self.x + dp(4), self.y + dp(4), self.right - dp(4), self.top - dp(4)),
         )
         self._put(group, f"name {outcrop.name}", words, self.theme.ink, box[0], box[1])
@@ -188,7 +195,9 @@ class PlanSketch(Widget):
         text = f"{metres:g} m" if metres < 1000 else f"{metres / 1000:g} km"
         self._put(group, "scale", text, self.theme.ink, left, low + dp(6))
 
-    def _put(self, group: InstructionGroup, name: str, words: object, colour: Rgba, x: float, y: float) -> None:
+    def _put(
+        self, group: InstructionGroup, name: str, words: object, colour: Rgba, x: float, y: float
+    ) -> None:
         texture = PAINTS.words(words, sp(self.words_sp)) if isinstance(words, str) else words
         self.words_boxes[name] = add_words(group, texture, colour, x, y)
 

@@ -1,5 +1,7 @@
 """The Check leaf: net or plan, funnel, means, the next best reading, and whatever blocks a verdict."""
 
+# ruff: noqa: RUF001 - the page is set with true minus signs and dashes.
+
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
@@ -209,8 +211,8 @@ class CheckLeaf(FloatLayout):
             return
         self.clear_widgets()
         for widget in (
-            self._picture_box, self.funnel, self.pictures, self.legend, self.hinge, self.cleavage, self.intersection, self.next_reading,
-            self.limbs, self.because,
+            self._picture_box, self.funnel, self.pictures, self.legend, self.hinge, self.cleavage,
+            self.intersection, self.next_reading, self.limbs, self.because,
         ):  # fmt: skip
             if widget.parent is not None:
                 widget.parent.remove_widget(widget)
@@ -232,7 +234,7 @@ class CheckLeaf(FloatLayout):
             row.add_widget(figure)
         return row
 
-    def _words(self, form: Form) -> tuple[AdviceWords, ...]:
+    def _words(self) -> tuple[AdviceWords, ...]:
         words = (self.next_reading, self.limbs, self.because)
         for one in words:
             one.size_hint_y = None
@@ -255,10 +257,19 @@ class CheckLeaf(FloatLayout):
         # On a tablet the words below the picture stay on the screen without scrolling.
         most = dp(form.log_height_dp) * 0.52 if form.large else across + extra
         self._picture_box.height = min(across + extra, most)
-        self.funnel.height = dp(form.log_height_dp) * 0.23 if form.large else dp(max(form.width_dp * 0.62, 220))
-        for widget in (self._picture_box, self._means(form), self.next_reading, self.funnel, self.limbs, self.because):
+        self.funnel.height = (
+            dp(form.log_height_dp) * 0.23 if form.large else dp(max(form.width_dp * 0.62, 220))
+        )
+        for widget in (
+            self._picture_box,
+            self._means(form),
+            self.next_reading,
+            self.funnel,
+            self.limbs,
+            self.because,
+        ):
             column.add_widget(widget)
-        self._words(form)
+        self._words()
         return self._scrolled(column)
 
     def _side_by_side(self, form: Form) -> BoxLayout:
@@ -274,7 +285,7 @@ class CheckLeaf(FloatLayout):
         if form.low:
             side.add_widget(self.pictures)
         side.add_widget(self.funnel)
-        for widget in self._words(form):
+        for widget in self._words():
             side.add_widget(widget)
         if form.low:
             side.add_widget(self._means(form), index=len(side.children) - 1)

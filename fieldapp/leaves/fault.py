@@ -4,6 +4,8 @@ What each explanation predicts at that angle is drawn by `figures` once the expl
 then the leaf says so instead of showing a figure.
 """
 
+# ruff: noqa: RUF001 - the page is set with true minus signs and dashes.
+
 from __future__ import annotations
 
 from dataclasses import replace
@@ -90,7 +92,12 @@ class FaultLeaf(BoxLayout):
     def ask_width(self) -> None:
         """Type the width of the fault zone."""
         App.get_running_app().open_sheet(
-            "number", title="Width of the fault zone", unit="m", low=0.0, high=100_000.0, take_number=self._set_width
+            "number",
+            title="Width of the fault zone",
+            unit="m",
+            low=0.0,
+            high=100_000.0,
+            take_number=self._set_width,
         )
 
     def choose_sense(self, sense: str) -> None:

@@ -31,7 +31,9 @@ def space_text(count: int | None) -> str:
     """Space left in words."""
     if count is None:
         return "not known"
-    return f"{count / MEGABYTE:,.0f} MB" if count < 10_000 * MEGABYTE else f"{count / MEGABYTE / 1000:,.0f} GB"
+    return (
+        f"{count / MEGABYTE:,.0f} MB" if count < 10_000 * MEGABYTE else f"{count / MEGABYTE / 1000:,.0f} GB"
+    )
 
 
 class Row(BoxLayout):

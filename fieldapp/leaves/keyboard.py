@@ -24,7 +24,7 @@ class Keyboard:
     def __init__(self, app: HingewiseApp) -> None:
         self._app = app
 
-    def key_down(self, window: object, code: int, *_: object) -> bool:
+    def key_down(self, _window: object, code: int, *_: object) -> bool:
         """Handle a key; True where it meant something."""
         outline = self._app.outline
         if outline is None:
@@ -57,7 +57,9 @@ class Keyboard:
             return True
         # A sheet with keys of its own takes the digits.
         take = getattr(sheet, "key", None)
-        if take is None or not (code in DIGITS or code in ENTER or code in POINTS or code == CODES["backspace"]):
+        if take is None or not (
+            code in DIGITS or code in ENTER or code in POINTS or code == CODES["backspace"]
+        ):
             return False
         sign = DIGITS.get(code) or ("." if code in POINTS else "enter" if code in ENTER else "back")
         take(sign)

@@ -6,16 +6,14 @@ from typing import TYPE_CHECKING
 
 from kivy.app import App
 from kivy.metrics import dp
-from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
-from kivy.uix.behaviors import ButtonBehavior
+from kivy.properties import BooleanProperty, ObjectProperty
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.widget import Widget
-from kivy.utils import get_hex_from_color
 
 from fieldapp.drawing.scene import LETTERS, MARKERS
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.keys import DirectionGrid, KeyPad
-from fieldapp.leaves.parts import Key, Words
+from fieldapp.leaves.logparts import CheckSlot, FeatureKey, PlaceRow, Readout, RecentChip, SideKeys
 from fieldapp.states import Change, MessageKind
 
 if TYPE_CHECKING:
@@ -24,111 +22,6 @@ if TYPE_CHECKING:
     from fieldapp.states import EntryState, ReadingLine, Tab
 
 SHORT_LABELS = {"Intersection": "Intersect."}
-AZIMUTH_DIGITS, INCLINATION_DIGITS = 3, 2
-
-
-class FeatureKey(ButtonBehavior, BoxLayout):
-    """A feature to read: its marker, its name and how many stand in the fold and here."""
-
-    text = StringProperty("")
-    counts = StringProperty("")
-    letter = StringProperty("")
-    shape = StringProperty("dot")
-    chosen = BooleanProperty(False)
-
-
-class Figure(Words):
-    """The digits as typed."""
-
-
-class Readout(BoxLayout):
-    """The digits as typed, those to come, and the labels that the notation gives them."""
-
-    azimuth = StringProperty("")
-    inclination = StringProperty("")
-    azimuth_label = StringProperty("strike")
-    inclination_label = StringProperty("dip")
-    active = StringProperty("azimuth")
-    direction = StringProperty("")
-    remark = StringProperty("")
-
-    def padded(self, text: str, digits: int, colour: object) -> str:
-        """The digits typed, and a quiet dash for each one to come."""
-        waiting = "–" * max(digits - len(text.partition(".")[0]), 0)
-        return f"{text}[color={get_hex_from_color(colour)}]{waiting}[/color]" if waiting else text
-
-
-class RecentChip(BoxLayout):
-    """One past reading with its two keys: mend, and strike out or put back."""
-
-    reading_id = StringProperty("")
-    text = StringProperty("")
-    shape = StringProperty("dot")
-    struck_out = BooleanProperty(False)
-    being_mended = BooleanProperty(False)
-
-
-class CheckSlot(BoxLayout):
-    """The words of the entry check or of a message, with one key for its mend or its offer."""
-
-    sign = StringProperty("")
-    text = StringProperty("")
-    offer = StringProperty("")
-    asks = BooleanProperty(False)
-    can_close = BooleanProperty(False)
-
-    def __init__(self, **kwargs: object) -> None:
-        self.register_event_type("on_take")
-        self.register_event_type("on_put_away")
-        super().__init__(**kwargs)
-
-    def on_take(self) -> None:
-        """The key was touched."""
-
-    def on_put_away(self) -> None:
-        """The words are to go."""
-
-
-class SideKeys(BoxLayout):
-    """Measure where there are sensors, Note, Clear, and Keep: four rows of keys beside the pad."""
-
-    has_sensors = BooleanProperty(False)
-
-    def __init__(self, **kwargs: object) -> None:
-        self.keys = {name: Key(text=name.capitalize()) for name in ("measure", "note", "clear")}
-        self.keys["keep"] = KeepKey(text="Keep")
-        self._pair = BoxLayout()
-        super().__init__(orientation="vertical", **kwargs)
-        self._build()
-
-    def on_has_sensors(self, *_: object) -> None:
-        """Make room for Measure."""
-        self._build()
-
-    def on_spacing(self, *_: object) -> None:
-        """Keep the same gaps inside."""
-        self._pair.spacing = self.spacing
-        # Keep is as high as two keys and the gap between them.
-        self.keys["keep"].size_hint_y = 2.0 + 4.0 * self.spacing / max(self.height, 1.0)
-
-    on_height = on_spacing
-
-    def _build(self) -> None:
-        self.clear_widgets()
-        self._pair.clear_widgets()
-        keys = self.keys
-        if self.has_sensors:
-            self._pair.add_widget(keys["note"])
-            self._pair.add_widget(keys["clear"])
-            rows = (keys["measure"], self._pair, keys["keep"])
-        else:
-            rows = (keys["note"], keys["clear"], keys["keep"])
-        for row in rows:
-            self.add_widget(row)
-
-
-class KeepKey(Key):
-    """The largest key."""
 
 
 class LogLeaf(BoxLayout):
@@ -296,7 +189,9 @@ class LogLeaf(BoxLayout):
             short = self.form is not None and self.form.row_dp < 480.0
             key.text = SHORT_LABELS.get(tab.label, tab.label) if short else tab.label
             few = self.form is None or self.form.row_dp < 640.0
-            key.counts = f"{tab.in_fold}" if few or tab.in_fold == tab.here else f"{tab.in_fold}, {tab.here} here"
+            key.counts = (
+                f"{tab.in_fold}" if few or tab.in_fold == tab.here else f"{tab.in_fold}, {tab.here} here"
+            )
             key.chosen = tab.chosen
 
     def _show_recent(self) -> None:
@@ -304,8 +199,12 @@ class LogLeaf(BoxLayout):
         if form is None or row.parent is None:
             return
         lines = self.page.recent[: self._recent_columns() * self._recent_rows()]
-        chips = [chip for line in row.children for chip in line.children if isinstance(chip, RecentChip)]
-        chips = chips[::-1]
+        chips = [
+            chip
+            for line in row.children[::-1]
+            for chip in line.children[::-1]
+            if isinstance(chip, RecentChip)
+        ]
         if len(chips) != self._recent_columns() * self._recent_rows():
             chips = self._build_recent()
         mending = self.page.entry.mending
@@ -321,7 +220,14 @@ class LogLeaf(BoxLayout):
 
     def _spare_dp(self) -> float:
         form = self.form
-        used = form.place_dp + form.feature_dp + form.readout_dp + form.check_dp + form.pad_dp + 6.5 * form.gap_dp
+        used = (
+            form.place_dp
+            + form.feature_dp
+            + form.readout_dp
+            + form.check_dp
+            + form.pad_dp
+            + 6.5 * form.gap_dp
+        )
         return form.log_height_dp - used
 
     def _build_recent(self) -> list[RecentChip]:
@@ -351,17 +257,7 @@ class LogLeaf(BoxLayout):
         form: Form | None = self.form
         if form is None:
             return
-        for box in (self, self._pad_holder, self.recent_row):
-            box.clear_widgets()
-        for widget in (
-            self.place_row, self.feature_row, self.readout, self.grid_small, self.check_slot, self.pad,
-            self.side, self.recent_row, self._pad_holder,
-        ):  # fmt: skip
-            if widget is None:
-                continue
-            if widget.parent is not None:
-                widget.parent.remove_widget(widget)
-            widget.size_hint = (1, 1)
+        self._take_apart()
         gap = dp(form.gap_dp)
         self.padding, self.spacing = (dp(form.edge_dp), gap, dp(form.edge_dp), gap), gap
         for row in (self.feature_row, self._pad_holder, self.recent_row):
@@ -393,6 +289,19 @@ class LogLeaf(BoxLayout):
             self._show_grids(self.page.entry)
             self._show_tabs(self.page.tabs)
             self._show_recent()
+
+    def _take_apart(self) -> None:
+        for box in (self, self._pad_holder, self.recent_row):
+            box.clear_widgets()
+        pieces = (
+            self.place_row, self.feature_row, self.readout, self.grid_small, self.check_slot, self.pad,
+            self.side, self.recent_row, self._pad_holder,
+        )  # fmt: skip
+        for piece in pieces:
+            if piece is not None:
+                if piece.parent is not None:
+                    piece.parent.remove_widget(piece)
+                piece.size_hint = (1, 1)
 
     def _handed(self, first: Widget, second: Widget) -> tuple[Widget, Widget]:
         return (second, first) if self.left_handed else (first, second)
@@ -429,19 +338,6 @@ class LogLeaf(BoxLayout):
             self._pad_holder.add_widget(widget)
 
 
-class PlaceRow(ButtonBehavior, BoxLayout):
-    """Where we stand: outcrop, fold, position and its age; a touch opens the choice of another."""
-
-    outcrop = StringProperty("")
-    fold = StringProperty("")
-    position = StringProperty("")
-
-    def show(self, place: object) -> None:
-        """Show the presenter's place."""
-        self.outcrop, self.fold = place.outcrop_title, place.fold_title
-        self.position = place.position_text or "no position"
-
-
 def _tall(widget: Widget, height_dp: float) -> None:
     widget.size_hint_y = None
     widget.height = dp(height_dp)
@@ -454,7 +350,5 @@ def _fill_chip(chip: RecentChip, line: ReadingLine | None, mending: str) -> None
         chip.shape = MARKERS[line.feature]
         chip.being_mended = line.reading_id == mending
 
-
-__all__ = ["Key", "LogLeaf"]
 
 load_kv("log")

@@ -4,7 +4,14 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from kivy.properties import BooleanProperty, ColorProperty, NumericProperty, ObjectProperty, OptionProperty, StringProperty
+from kivy.properties import (
+    BooleanProperty,
+    ColorProperty,
+    NumericProperty,
+    ObjectProperty,
+    OptionProperty,
+    StringProperty,
+)
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
@@ -65,7 +72,8 @@ class Words(Label):
             return True
         room = self.text_size[0] - self.padding[0] - self.padding[2]
         if self.fit == "one":
-            return self._label.get_extents(self.text)[0] <= room - 1 and len(self._label._cached_lines) <= 1
+            lines = self._label._cached_lines  # noqa: SLF001 - Kivy tells nowhere else whether it wrapped
+            return self._label.get_extents(self.text)[0] <= room - 1 and len(lines) <= 1
         return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
 
 

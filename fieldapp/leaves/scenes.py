@@ -63,7 +63,9 @@ def net_scene(check: FoldCheck, net: NetState, outcrop: str, chosen: str = "") -
     return NetScene(
         points=points,
         hinge=_mean(check.hinge, "hinge"),
-        intersection=_mean(None if check.intersection is None else check.intersection.axis, "mean intersection"),
+        intersection=_mean(
+            None if check.intersection is None else check.intersection.axis, "mean intersection"
+        ),
         trail=np.asarray(net.trail).reshape(-1, 3) if len(net.trail) else no_vectors(),
         cleavage=_mean(check.cleavage, "mean cleavage"),
         girdle_pole=check.hinge.vector if girdle else None,
@@ -99,10 +101,15 @@ def plan_scene(plan: PlanState) -> PlanScene:
     for outcrop in plan.outcrops:
         planes = [
             PlanPlane(feature, *attitude)
-            for feature, attitude in ((Feature.BEDDING, outcrop.bedding), (Feature.CLEAVAGE, outcrop.cleavage))
+            for feature, attitude in (
+                (Feature.BEDDING, outcrop.bedding),
+                (Feature.CLEAVAGE, outcrop.cleavage),
+            )
             if attitude is not None
         ]
-        outcrops.append(PlanOutcrop(outcrop.name, outcrop.east_m, outcrop.north_m, outcrop.here, tuple(planes)))
+        outcrops.append(
+            PlanOutcrop(outcrop.name, outcrop.east_m, outcrop.north_m, outcrop.here, tuple(planes))
+        )
     return PlanScene(outcrops=tuple(outcrops), hinge=plan.hinge)
 
 
@@ -120,7 +127,9 @@ def mean_lines(check: FoldCheck, name: str) -> tuple[str, tuple[str, ...]]:
         ellipse = "no confidence ellipse yet: too few readings"
     else:
         e = estimate.ellipse
-        ellipse = f"{check.settings.confidence:.0%} ellipse: half axes {e.major_deg:.1f}° and {e.minor_deg:.1f}°"
+        ellipse = (
+            f"{check.settings.confidence:.0%} ellipse: half axes {e.major_deg:.1f}° and {e.minor_deg:.1f}°"
+        )
     return f"{name.capitalize()} {line_text(estimate.line)}", (source, ellipse)
 
 
@@ -140,8 +149,8 @@ def next_words(check: FoldCheck) -> tuple[str, str]:
     first = f"{advice.feature.value.capitalize()}{where}"
     if more is None or not more.total:
         return first, ""
-    parts = [(more.bedding, "bedding"), (more.cleavage, "cleavage"), (more.intersection, "intersection"), (more.hinge, "hinge")]
-    split = ", ".join(f"{count} {name}" for count, name in parts if count)
+    names = ("bedding", "cleavage", "intersection", "hinge")
+    split = ", ".join(f"{getattr(more, name)} {name}" for name in names if getattr(more, name))
     spread = f" ({more.low} to {more.high})" if more.low != more.high else ""
     return first, f"about {more.total} more{spread}: {split}"
 

@@ -13,6 +13,7 @@ from kivy.uix.textinput import TextInput
 from fieldapp.drawing.scene import MARKERS
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.keys import KeyPad  # noqa: F401 - the .kv file uses it
+from fieldapp.leaves.measure import MeasureSheet
 from fieldapp.leaves.parts import Choice, Key, Sheet
 from fieldapp.settings import Appearance, NorthMode, PlaneNotation
 from fieldapp.states import Change
@@ -102,10 +103,12 @@ class SettingsSheet(Sheet):
         for name, meaning, attribute, values in CHOICES:
             setting = Setting(name=name, meaning=meaning)
             now = getattr(self._page.settings, attribute)
-            if all(value != now for value, _ in values):
-                values = (*values, (now, f"{now:g}"))  # set on the desk, to a value without a key
-            choice = Choice(choices=values, chosen=now)
-            choice.bind(on_choice=lambda choice, value, attribute=attribute: self._change(choice, attribute, value))
+            # A value without a key, as set on the desk, gets one.
+            missing = () if any(value == now for value, _ in values) else ((now, f"{now:g}"),)
+            choice = Choice(choices=(*values, *missing), chosen=now)
+            choice.bind(
+                on_choice=lambda choice, value, attribute=attribute: self._change(choice, attribute, value)
+            )
             setting.ids.key_row.add_widget(choice)
             self.choices[attribute] = choice
             self.ids.content.add_widget(setting)
@@ -138,7 +141,9 @@ class PlaceSheet(Sheet):
         self._list(chooser.ids.outcrops, place.outcrops, place.outcrop, self._page.choose_outcrop)
         self._list(chooser.ids.folds, place.folds, place.fold, self._page.choose_fold)
 
-    def _list(self, box: BoxLayout, names: tuple[str, ...], chosen: str, choose: Callable[[str], None]) -> None:
+    def _list(
+        self, box: BoxLayout, names: tuple[str, ...], chosen: str, choose: Callable[[str], None]
+    ) -> None:
         box.clear_widgets()
         for name in names:
             key = PlaceKey(text=name or "unnamed", look="chosen" if name == chosen else "plain")
@@ -152,7 +157,9 @@ class PlaceSheet(Sheet):
     def begin(self, kind: str, name: str) -> None:
         """Begin an outcrop or a fold of this name."""
         if name.strip():
-            self._choose(self._page.choose_outcrop if kind == "outcrop" else self._page.choose_fold, name.strip())
+            self._choose(
+                self._page.choose_outcrop if kind == "outcrop" else self._page.choose_fold, name.strip()
+            )
 
     def next_outcrop(self) -> None:
         """Go on to the next outcrop under the suggested name."""
@@ -330,6 +337,7 @@ class SafetyKeys(BoxLayout):
 
 
 SHEETS = {
+    "measure": MeasureSheet,
     "settings": SettingsSheet,
     "place": PlaceSheet,
     "readings": ReadingsSheet,
@@ -342,7 +350,6 @@ SHEETS = {
 def make_sheet(name: str, **values: object) -> Sheet:
     """Make the sheet of this name."""
     return SHEETS[name](**values)
-
 
 
 load_kv("sheets")

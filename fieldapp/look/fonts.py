@@ -1,5 +1,7 @@
 """The bundled font: B612 (SIL Open Font License 1.1, see fonts/OFL.txt), made for legibility."""
 
+# ruff: noqa: RUF001 - the page is set with true minus signs and dashes.
+
 from __future__ import annotations
 
 from pathlib import Path

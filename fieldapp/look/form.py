@@ -168,7 +168,9 @@ class Form:
     def figure_sp(self) -> float:
         """The digits as typed."""
         if self.large:
-            return 42.0 if self.split else 86.0 if self.log_width_dp > 700.0 else 60.0
+            if self.split:
+                return 42.0
+            return 86.0 if self.log_width_dp > 700.0 else 60.0
         return 34.0 if self.low else 42.0 if self.height_dp < 700.0 else 48.0
 
     @property
@@ -187,7 +189,11 @@ class Form:
         return max(self.readout_alone_dp, self.grid_dp) if self.grid_beside else self.readout_alone_dp
 
     def _key_dp(self, readout_dp: float) -> float:
-        return (self._column_dp(recent=self.shows_recent) - max(readout_dp, self.readout_alone_dp) - 3.0 * self.gap_dp) / 4.0
+        return (
+            self._column_dp(recent=self.shows_recent)
+            - max(readout_dp, self.readout_alone_dp)
+            - 3.0 * self.gap_dp
+        ) / 4.0
 
     @property
     def key_dp(self) -> float:

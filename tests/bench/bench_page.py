@@ -8,6 +8,8 @@ Limits named beside the figures: from Keep to the screen 50 ms at 500 readings, 
 a core, first frame 2 times and memory 1.5 times that of the empty window.
 """
 
+# ruff: noqa: T201, PLC0415 - it prints its figures; each child imports only what it measures.
+
 from __future__ import annotations
 
 import json
@@ -103,7 +105,9 @@ def child_app(path: Path, idle_s: float) -> None:
 
 def make_notebook(path: Path, count: int) -> None:
     """Write a notebook with so many readings, in a process of its own, so that nothing is left of it here."""
-    subprocess.run([sys.executable, __file__, "--make", str(path), str(count)], check=True, stdout=subprocess.DEVNULL)
+    subprocess.run(
+        [sys.executable, __file__, "--make", str(path), str(count)], check=True, stdout=subprocess.DEVNULL
+    )
 
 
 def child_make(path: Path, count: int) -> None:
@@ -191,7 +195,9 @@ def run_child(*arguments: str) -> dict[str, object]:
 def main(rounds: int) -> None:
     """Measure everything and print it."""
     load = os.getloadavg()[0]
-    print(f"{os.cpu_count()} cores, load {load:.1f} before the start; other work on the machine makes all of it slower")
+    print(
+        f"{os.cpu_count()} cores, load {load:.1f} before the start; other work on the machine makes all of it slower"
+    )
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "notebook.db"
         make_notebook(path, 40)

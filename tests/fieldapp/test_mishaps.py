@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from datetime import UTC, datetime
 
+import pytest
+
 from fieldapp.mishaps import MOST_BYTES, MishapLog
 
 AT = datetime(2026, 5, 4, 12, 30, tzinfo=UTC)
@@ -12,10 +14,9 @@ AT = datetime(2026, 5, 4, 12, 30, tzinfo=UTC)
 def test_a_mishap_is_written_with_its_time_and_trace(tmp_path):
     """The log holds the time, the kind of error and where it came from."""
     log = MishapLog(tmp_path / "mishaps.log", lambda: AT)
-    try:
+    with pytest.raises(ZeroDivisionError) as caught:
         _ = 1 / 0
-    except ZeroDivisionError as error:
-        assert log.write(error)
+    assert log.write(caught.value)
     assert "2026-05-04T12:30:00+00:00" in log.text()
     assert "ZeroDivisionError" in log.text()
     assert "test_mishaps.py" in log.text()

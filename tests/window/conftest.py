@@ -1,5 +1,7 @@
 """Window tests: the real app in a real window, with a notebook of its own for each test."""
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 import os

@@ -1,5 +1,7 @@
 """Drives the real app in a real window: touches go in through an input provider, frames are run one by one."""
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 import time
@@ -14,7 +16,9 @@ if TYPE_CHECKING:
 class Driver:
     """The running app, one frame at a time."""
 
-    def __init__(self, path: Path, *, size: tuple[int, int] = (800, 1280), demo: bool = False, **app_values: object) -> None:
+    def __init__(
+        self, path: Path, *, size: tuple[int, int] = (800, 1280), demo: bool = False, **app_values: object
+    ) -> None:
         from kivy.base import EventLoop, runTouchApp
         from kivy.core.window import Window
         from kivy.input.motionevent import MotionEvent
@@ -32,7 +36,9 @@ class Driver:
                 super().depack(args)
 
         class Fingers(MotionEventProvider):
-            waiting: deque = deque()
+            def __init__(self) -> None:
+                super().__init__("fingers", None)
+                self.waiting: deque[tuple[str, MotionEvent]] = deque()
 
             def update(self, dispatch_fn: Callable[..., None]) -> None:
                 while self.waiting:
@@ -44,7 +50,7 @@ class Driver:
         self.expects_mishap = False
         self.app = None
         self.resize(*size)
-        self.provider = Fingers("fingers", None)
+        self.provider = Fingers()
         EventLoop.add_input_provider(self.provider)
         self.app = HingewiseApp(path, demo=demo, **app_values)
         self.app._run_prepare()
@@ -113,7 +119,9 @@ class Driver:
         found = [
             widget
             for widget in top.walk()
-            if isinstance(widget, ButtonBehavior) and getattr(widget, "text", None) == text and widget.opacity > 0
+            if isinstance(widget, ButtonBehavior)
+            and getattr(widget, "text", None) == text
+            and widget.opacity > 0
         ]
         assert len(found) == 1, f"{len(found)} keys say {text!r}"
         return found[0]
@@ -130,7 +138,8 @@ class Driver:
         assert widget.get_root_window() is not None, f"{widget} is not on the screen"
         x, y = widget.to_window(*widget.center)
         width, height = self.window.size
-        assert 0 <= x < width and 0 <= y < height, f"{widget} lies outside the window"
+        assert 0 <= x < width, f"{widget} lies outside the window"
+        assert 0 <= y < height, f"{widget} lies outside the window"
         self.touch(x, y)
 
     def stop(self) -> None:

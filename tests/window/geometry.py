@@ -1,5 +1,7 @@
 """What the eye would see at once and a test must measure: words cut off, things outside their place."""
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 SLACK_PX = 1.5
@@ -27,7 +29,12 @@ def faults(top) -> list[str]:
     for widget in shown(top):
         name = f"{type(widget).__name__} {getattr(widget, 'text', '')!r}"
         parent = widget.parent
-        if parent is not None and parent is not top and not isinstance(parent, ScrollView) and widget is not top:
+        if (
+            parent is not None
+            and parent is not top
+            and not isinstance(parent, ScrollView)
+            and widget is not top
+        ):
             outside = (
                 widget.x < parent.x - SLACK_PX
                 or widget.y < parent.y - SLACK_PX
@@ -35,7 +42,8 @@ def faults(top) -> list[str]:
                 or widget.top > parent.top + SLACK_PX
             )
             if outside and parent.get_root_window() is not parent:
-                found.append(f"{name} at {widget.pos} {widget.size} leaves its {type(parent).__name__} {parent.pos} {parent.size}")
+                place = f"{type(parent).__name__} {parent.pos} {parent.size}"
+                found.append(f"{name} at {widget.pos} {widget.size} leaves its {place}")
         if isinstance(widget, Label) and widget.text:
             wide, high = widget.texture_size
             if wide > widget.width + SLACK_PX or high > widget.height + SLACK_PX:

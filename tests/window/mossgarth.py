@@ -3,6 +3,8 @@
 The fold's hinge is 032/16 with limbs of 60 and 50 degrees; the cleavage is turned clockwise off the hinge.
 """
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 from dataclasses import dataclass
@@ -26,6 +28,7 @@ class TestClock:
         self.now = START
 
     def __call__(self) -> datetime:
+        """Give the time, a little later than the last one."""
         self.now += timedelta(seconds=0.05)
         return self.now
 
@@ -47,7 +50,12 @@ def _turned(axis, angle_deg, v):
 
 
 def fold(
-    count: int = 30, *, transection_deg: float = 9.0, scatter_deg: float = 3.0, seed: int = 14, outcrops: int = 3
+    count: int = 30,
+    *,
+    transection_deg: float = 9.0,
+    scatter_deg: float = 3.0,
+    seed: int = 14,
+    outcrops: int = 3,
 ) -> list[Typed]:
     """Give so many readings in turn: bedding of both limbs, cleavage, now and then an intersection line."""
     chance = np.random.default_rng(seed)

@@ -3,6 +3,8 @@
 Density and font scale come from KIVY_METRICS_DENSITY and KIVY_METRICS_FONTSCALE, which Kivy reads once.
 """
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 import json
@@ -17,7 +19,7 @@ os.environ.setdefault("KIVY_NO_FILELOG", "1")
 os.environ.setdefault("KIVY_LOG_MODE", "PYTHON")
 
 
-def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:
+def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PLR0915 - one walk through all
     """Visit every leaf and every sheet; give faults by place."""
     from driving import Driver
     from geometry import faults
@@ -107,4 +109,4 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:
 if __name__ == "__main__":
     here = Path(__file__).resolve().parent
     sys.path[:0] = [str(here), str(here.parent.parent)]
-    print(json.dumps(main(float(sys.argv[1]), float(sys.argv[2]))))
+    print(json.dumps(main(float(sys.argv[1]), float(sys.argv[2]))))  # noqa: T201 - its output

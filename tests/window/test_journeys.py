@@ -1,5 +1,7 @@
 """What a geologist does, done by touch in a real window."""
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 import pytest
@@ -109,7 +111,9 @@ def test_a_past_reading_is_mended_without_leaving_the_leaf(driver, clock):
     driver.frames(3)
     line = page.recent[0]
     chip = next(w for w in log.recent_row.walk() if getattr(w, "reading_id", "") == line.reading_id)
-    driver.press(next(w for w in chip.walk() if getattr(w, "sign", "") == "mend" and hasattr(w, "on_release")))
+    driver.press(
+        next(w for w in chip.walk() if getattr(w, "sign", "") == "mend" and hasattr(w, "on_release"))
+    )
     assert page.entry.mending == line.reading_id
     assert "mending" in log.readout.remark
     enter(driver, fold(3, outcrops=1)[0].__class__(line.feature, "050", "40", "SE"))
@@ -345,7 +349,11 @@ def test_the_fault_is_typed_on_our_own_keys(driver, clock):
 
 def test_the_next_outcrop_is_two_touches_away(driver):
     """A touch on the place and one on the suggestion begin the next outcrop."""
-    driver.touch(*log_of(driver).place_row.to_window(log_of(driver).place_row.x + 20, log_of(driver).place_row.center_y))
+    driver.touch(
+        *log_of(driver).place_row.to_window(
+            log_of(driver).place_row.x + 20, log_of(driver).place_row.center_y
+        )
+    )
     driver.tap("Next outcrop: MG-15")
     assert driver.app.page.place.outcrop == "MG-15"
     assert driver.app.outline.sheet is None

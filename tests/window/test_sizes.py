@@ -1,5 +1,7 @@
 """Nothing is cut off, too small or out of place, at every size, density and font scale, on every leaf and sheet."""
 
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
 from __future__ import annotations
 
 import json

@@ -13,7 +13,9 @@ BOUNDS = (0.0, 0.0, 100.0, 100.0)
 
 def place(anchor, taken=(), points=NO_POINTS):
     """Place words of 20 by 10."""
-    return placing.place_beside(anchor, (20.0, 10.0), gap=5.0, taken=list(taken), points=points, bounds=BOUNDS)
+    return placing.place_beside(
+        anchor, (20.0, 10.0), gap=5.0, taken=list(taken), points=points, bounds=BOUNDS
+    )
 
 
 def test_words_stand_to_the_right_where_nothing_is_in_the_way():
@@ -41,11 +43,15 @@ def test_words_keep_off_readings():
     """Where readings lie on the right the words go to a side without any."""
     points = np.array([[60.0, 50.0], [65.0, 52.0]])
     box = place((50.0, 50.0), points=points)
-    inside = (points[:, 0] > box[0]) & (points[:, 0] < box[2]) & (points[:, 1] > box[1]) & (points[:, 1] < box[3])
+    inside = (
+        (points[:, 0] > box[0]) & (points[:, 0] < box[2]) & (points[:, 1] > box[1]) & (points[:, 1] < box[3])
+    )
     assert not inside.any()
 
 
-@pytest.mark.parametrize(("span", "most", "step"), [(10, 5, 2), (10, 10, 1), (0.3, 3, 0.1), (100, 4, 50), (7, 1, 10)])
+@pytest.mark.parametrize(
+    ("span", "most", "step"), [(10, 5, 2), (10, 10, 1), (0.3, 3, 0.1), (100, 4, 50), (7, 1, 10)]
+)
 def test_a_nice_step_cuts_into_no_more_parts(span, most, step):
     """Steps are 1, 2 or 5 times a power of ten and give at most that many parts."""
     assert placing.nice_step(span, most) == pytest.approx(step)

@@ -6,14 +6,18 @@ import ast
 import re
 from pathlib import Path
 
-import fieldapp
 import pytest
 from fontTools.ttLib import TTFont
 
 import analysis
+import fieldapp
 from fieldapp.look.fonts import BOLD_FILE, FONT_FOLDER, REGULAR_FILE
 
-PACKAGES = [Path(fieldapp.__file__).parent, Path(analysis.__file__).parent / "fold", Path(analysis.__file__).parent / "orient"]
+PACKAGES = [
+    Path(fieldapp.__file__).parent,
+    Path(analysis.__file__).parent / "fold",
+    Path(analysis.__file__).parent / "orient",
+]
 
 
 # These hold signs that are read from what somebody typed, and are never shown.
@@ -26,7 +30,8 @@ def python_strings(path):
     docs = {
         id(node.body[0].value)
         for node in ast.walk(tree)
-        if isinstance(node, ast.Module | ast.ClassDef | ast.FunctionDef) and node.body
+        if isinstance(node, ast.Module | ast.ClassDef | ast.FunctionDef)
+        and node.body
         and isinstance(node.body[0], ast.Expr)
     }
     for node in ast.walk(tree):
@@ -34,23 +39,21 @@ def python_strings(path):
             yield node.value
 
 
-def signs_used():
-    """Give every sign outside ASCII in the words of the app and of the checks it shows."""
-    used = {}
+def texts():
+    """Give the app's own words and those of the checks it shows, each with its file's name."""
     for package in PACKAGES:
         for path in package.rglob("*.py"):
-            if path.name in ONLY_READ:
-                continue
-            for text in python_strings(path):
-                for sign in text:
-                    if ord(sign) > 126:
-                        used.setdefault(sign, path.name)
+            if path.name not in ONLY_READ:
+                yield from ((text, path.name) for text in python_strings(path))
         for path in package.rglob("*.kv"):
-            for text in re.findall(r'"[^"\n]*"', path.read_text(encoding="utf-8")):
-                for sign in text:
-                    if ord(sign) > 126:
-                        used.setdefault(sign, path.name)
-    return used
+            yield from (
+                (text, path.name) for text in re.findall(r'"[^"\n]*"', path.read_text(encoding="utf-8"))
+            )
+
+
+def signs_used():
+    """Give every sign outside ASCII in those words, with a file that has it."""
+    return {sign: name for text, name in texts() for sign in text if ord(sign) > 126}
 
 
 @pytest.mark.parametrize("path", [REGULAR_FILE, BOLD_FILE], ids=lambda path: path.stem)

@@ -22,7 +22,11 @@ def test_contrast_of_a_known_grey():
 @pytest.mark.parametrize("theme", [LIGHT, DARK], ids=lambda theme: theme.name)
 def test_every_pair_of_words_and_ground_has_enough_contrast(theme):
     """Each pair of words and ground that the page uses has a contrast of at least 7:1."""
-    low = {name: contrast_ratio(*pair) for name, pair in theme.text_pairs().items() if contrast_ratio(*pair) < NEEDED}
+    low = {
+        name: contrast_ratio(*pair)
+        for name, pair in theme.text_pairs().items()
+        if contrast_ratio(*pair) < NEEDED
+    }
     assert low == {}
 
 
