@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from analysis.files.csvfile import csv_text
@@ -31,6 +31,7 @@ SMALL = st.builds(
 NOTEBOOK = st.lists(SMALL, max_size=8)
 
 
+@settings(max_examples=1000)  # three thousand notebooks
 @given(NOTEBOOK, NOTEBOOK, NOTEBOOK)
 def test_the_order_of_joining_does_not_matter(one, two, three):
     """Joining is commutative, associative and idempotent, conflicts and what stands included."""
