@@ -51,8 +51,9 @@ def readings(draw, reading_id=None):
         fields |= {"trend_deg": azimuth, "plunge_deg": inclination}
     if draw(YES_NO):
         fields |= {"latitude_deg": draw(st.floats(-90, 90)), "longitude_deg": draw(st.floats(-180, 180))}
+    # Names of ours are no other columns, and "column 7" is what a column without name is called.
     other_names = NAME.map(str.strip).filter(
-        lambda name: name and "_" not in name and not name.startswith("column") and name not in NAMES
+        lambda name: name and name not in (*NAMES, "dip_direction_deg") and not name.startswith("column")
     )
     return Reading(
         reading_id=draw(NAME.filter(str.strip)) if reading_id is None else draw(reading_id),
