@@ -49,6 +49,7 @@ SCREENS = (
 def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk through all leaves
     """Open the demo on one screen and save a picture of each leaf; runs in the process of that screen."""
     sys.path.insert(0, str(setup_env.ROOT))
+    os.environ["KIVY_NO_ARGS"] = "1"  # the arguments are ours
     from kivy.config import Config
 
     Config.set("graphics", "width", str(screen.width))

@@ -252,11 +252,16 @@ class HingewiseApp(App):
     def _form_now(self) -> Form:
         density = Metrics.density
         width, height = Window.size
-        return Form(width / density, height / density, Metrics.fontscale)
+        bars = 0 if self.outline is None else self.outline.bars
+        return Form(width / density, height / density, Metrics.fontscale, bars)
 
     def _window_changed(self, *_: object) -> None:
+        self.fit()
+
+    def fit(self) -> None:
+        """Fit the page to the window and to what else stands on it."""
         form = self._form_now()
-        if form != self.form:
+        if form != self.form and self.outline is not None:
             self.form = form
             self.outline.form = form
 
@@ -301,6 +306,11 @@ class HingewiseApp(App):
             from plyer import share
 
             share.share(path=str(path), title=path.name)
+
+    @property
+    def outline_trouble(self) -> str:
+        """What went wrong inside the app, until it is closed."""
+        return "" if self.outline is None else self.outline.trouble
 
     def _tell_mishap(self, text: str) -> None:
         if self.outline is not None:

@@ -49,6 +49,7 @@ class EqualAreaNet(Widget):
         self._keys: list[str] = []
         self._places = np.zeros((0, 2))
         self._means: dict[str, np.ndarray] = {}
+        self._outlines: list[np.ndarray] = []
         super().__init__(**kwargs)
         self._frame = InstructionGroup()
         self._layer = InstructionGroup()
@@ -133,7 +134,7 @@ class EqualAreaNet(Widget):
             add_mesh(group, theme.second, [strokes.line(circle, dp(2.4))])
         self._draw_readings(group)
         self._draw_trail(group)
-        self._means = {}
+        self._means, self._outlines = {}, []
         if scene.hinge is not None:
             self._draw_mean(group, HINGE, scene.hinge, theme.ink, "disc")
         if scene.intersection is not None:
@@ -194,6 +195,7 @@ class EqualAreaNet(Widget):
             e = mean.ellipse
             curve = sphere.ellipse(mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg)
             pieces = [self._curve(piece) for piece in sphere.lower_pieces(curve)]
+            self._outlines.extend(pieces)
             if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
                 red, green, blue, _ = colour
                 add_mesh(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
@@ -228,8 +230,8 @@ class EqualAreaNet(Widget):
         named = [(HINGE, scene.hinge, theme.ink), (INTERSECTION, scene.intersection, theme.accent)]
         bounds = (self.x, self.y, self.right, self.middle[1] + self.radius)
         marks = np.concatenate([self._places, *(place[np.newaxis, :] for place in self._means.values())])
-        # Words keep off the rim and the great circle too.
-        marks = np.concatenate([marks, strokes.circle(self.middle, self.radius, 180)])
+        # Words keep off the rim, the ellipses and the great circle too.
+        marks = np.concatenate([marks, strokes.circle(self.middle, self.radius, 180), *self._outlines])
         if scene.cleavage is not None:
             marks = np.concatenate([marks, self._curve(sphere.great_circle(scene.cleavage.vector, 61))])
         for name, mean, colour in named:

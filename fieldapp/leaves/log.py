@@ -59,7 +59,7 @@ class LogLeaf(BoxLayout):
     def _bind_keys(self) -> None:
         self.pad.bind(on_sign=lambda _pad, sign: self.sign(sign))
         self.check_slot.bind(on_take=lambda _slot: self._take_offer())
-        self.check_slot.bind(on_put_away=lambda _slot: self.page.dismiss_message())
+        self.check_slot.bind(on_put_away=lambda _slot: App.get_running_app().outline.close_notice())
         for name in ("keep", "clear", "note", "measure"):
             self.side.keys[name].bind(on_release=lambda _key, name=name: getattr(self, f"press_{name}")())
         self.place_row.bind(on_release=lambda _row: App.get_running_app().open_sheet("place"))
@@ -161,7 +161,11 @@ class LogLeaf(BoxLayout):
         fine = [line for line in entry.checks if line.passed]
         loud = message is not None and message.kind is not MessageKind.NOTE
         slot.can_close = False
-        if message is not None and (loud or not asks):
+        trouble = App.get_running_app().outline_trouble
+        if trouble:
+            self._offer = None
+            slot.sign, slot.text, slot.offer, slot.asks, slot.can_close = "asks", trouble, "", True, True
+        elif message is not None and (loud or not asks):
             self._offer = ("message", "") if message.offer else None
             slot.sign = "asks" if loud else "fine"
             slot.text, slot.offer, slot.asks, slot.can_close = message.text, str(message.offer), loud, True

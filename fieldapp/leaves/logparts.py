@@ -125,5 +125,6 @@ class PlaceRow(ButtonBehavior, BoxLayout):
 
     def show(self, place: object) -> None:
         """Show the presenter's place."""
-        self.outcrop, self.fold = place.outcrop_title, place.fold_title
+        self.outcrop = place.outcrop_title
+        self.fold = f"Demo, invented: {place.fold_title}" if place.demo else place.fold_title
         self.position = place.position_text or "no position"

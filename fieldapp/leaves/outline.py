@@ -134,6 +134,7 @@ class Outline(FloatLayout):
         for name, key in self.leaf_keys.items():
             key.chosen = name in names
         self._bring_up_to_date()
+        self._mark_demo()
         self._show_notice()
 
     def complete(self) -> None:
@@ -151,7 +152,7 @@ class Outline(FloatLayout):
             self.ids.strip.headline = strip.headline
             self.ids.strip.figures = self._shortened(strip.figures)
         if change & Change.PLACE:
-            self._mark_demo(demo=self.page.place.demo)
+            self._mark_demo()
         for name in self._behind:
             self._behind[name] |= change
         self._bring_up_to_date()
@@ -174,23 +175,29 @@ class Outline(FloatLayout):
                 self._behind[name] = Change(0)
                 self.leaves[name].refresh(behind)
 
-    def _mark_demo(self, *, demo: bool) -> None:
+    def _mark_demo(self) -> None:
         column = self.ids.column
+        # A phone on its side has no height for a bar over the keys; there the row of the place says it.
+        in_row = self.form is not None and self.form.low and "Log" in self.names_shown
+        demo = self.page.place.demo and not in_row
         if demo and self.demo_mark.parent is None:
             column.add_widget(self.demo_mark, index=len(column.children) - 1)
         elif not demo and self.demo_mark.parent is not None:
             column.remove_widget(self.demo_mark)
+        App.get_running_app().fit()
 
     def tell_trouble(self, text: str) -> None:
         """Say that something went wrong inside the app; stands until it is closed."""
         self.trouble = text
         self._show_notice()
+        self.refresh(Change.MESSAGE)
 
     def close_notice(self) -> None:
         """Take the message away."""
         if self.trouble:
             self.trouble = ""
             self._show_notice()
+            self.refresh(Change.MESSAGE)
         else:
             self.page.dismiss_message()
 
@@ -201,9 +208,11 @@ class Outline(FloatLayout):
     def _show_notice(self) -> None:
         message = self.page.message
         notice = self.notice
-        if self.trouble:
+        if "Log" in self.names_shown:
+            notice.text = notice.offer = ""  # the Log leaf has a place of its own for messages
+        elif self.trouble:
             notice.text, notice.offer, notice.loud = self.trouble, "", True
-        elif message is not None and "Log" not in self.names_shown and self._is_news(message):
+        elif message is not None and self._is_news(message):
             notice.text, notice.offer = message.text, str(message.offer)
             notice.loud = message.kind is not MessageKind.NOTE
         else:
@@ -213,6 +222,12 @@ class Outline(FloatLayout):
             column.add_widget(notice, index=1)
         elif not notice.text and notice.parent is not None:
             column.remove_widget(notice)
+        App.get_running_app().fit()
+
+    @property
+    def bars(self) -> int:
+        """Bars that take height from the leaves."""
+        return 1 if self.demo_mark.parent is not None else 0
 
     def _is_news(self, message: Message) -> bool:
         return message.kind is not MessageKind.NOTE or message is not self._said

@@ -28,6 +28,7 @@ class Form:
     width_dp: float
     height_dp: float
     font_scale: float = 1.0
+    bars: int = 0  # bars across the page beside the strip: the mark of the demo
 
     @property
     def split(self) -> bool:
@@ -150,7 +151,12 @@ class Form:
     @property
     def log_height_dp(self) -> float:
         """Height of the Log leaf."""
-        return self.height_dp - self.strip_dp - self.tabs_dp
+        return self.height_dp - self.strip_dp - self.tabs_dp - self.bars * self.bar_dp
+
+    @property
+    def bar_dp(self) -> float:
+        """A bar across the page."""
+        return self.line_dp(self.small_sp) + 6.0
 
     def _column_dp(self, *, recent: bool) -> float:
         """Height left for readout, direction grid and keys, one above the other."""

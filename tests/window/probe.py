@@ -102,6 +102,15 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         page.change_settings(replace(page.settings, appearance=Appearance.DARK, left_handed=True))
         outline.show("Log")
         look("Log, dark, left-handed")
+        app.open_demo()
+        look("Log, demo")
+        outline.show("Check")
+        look("Check, demo")
+        outline.show("Log")
+        outline.tell_trouble("Something went wrong on the screen. Your readings are safe.")
+        look("Log, demo and a mishap told")
+        outline.show("Hand over")
+        look("Hand over, demo and a mishap told")
         driver.stop()
     return {place: texts for place, texts in found.items() if texts}
 

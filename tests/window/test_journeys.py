@@ -230,9 +230,12 @@ def test_a_mishap_is_logged_and_told_and_the_app_goes_on(driver, monkeypatch):
         driver.press(log.side.keys["note"])
         driver.tap("Done")
     assert "ZeroDivisionError" in driver.app.mishaps.text()
+    driver.app.close_sheets()
+    assert "went wrong" in log.check_slot.text
+    driver.tap("Fault", driver.app.outline.ids.leaf_keys)
     assert "went wrong" in driver.app.outline.notice.text
     assert driver.app.outline.notice.get_root_window() is not None
-    driver.app.close_sheets()
+    driver.tap("Log", driver.app.outline.ids.leaf_keys)
     enter(driver, fold(1)[0])
     assert len(page.standing) == 1
 

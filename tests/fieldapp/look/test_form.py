@@ -38,6 +38,14 @@ def test_the_log_leaf_fits_its_screen(size, scale):
 
 
 @pytest.mark.parametrize("size", SIZES)
+def test_bars_across_the_page_are_given_room(size):
+    """With the mark of the demo on the page the Log leaf still fits."""
+    form = Form(*size, 1.3, bars=1)
+    if not form.low:
+        assert heights(form) <= form.log_height_dp + 0.01
+
+
+@pytest.mark.parametrize("size", SIZES)
 @pytest.mark.parametrize("scale", SCALES)
 def test_no_key_is_too_low_to_hit(size, scale):
     """No key of the pad is lower than 40 dp (6.4 mm), on the smallest phone with the largest type."""
