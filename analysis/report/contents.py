@@ -10,6 +10,7 @@ from analysis.report import method_words
 from analysis.report.blocks import Column, Facts, Points, Report, Row, Section, Table, Typed, Words, cut
 from analysis.report.fault_words import fault_section
 from analysis.report.fold_words import fold_section, share
+from analysis.report.palette import LETTERS, NAMES
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
@@ -23,7 +24,8 @@ _CONFLICTS_LISTED: Final = 20
 
 def contents(campaign: Campaign, progress: Callable[[float], None] | None = None) -> Report:
     """Make the report of a campaign; `progress` is called with the share of the drawing done, 0 to 1."""
-    sections = [_summary(campaign)]
+    cautions = Section("cautions", "Cautions", (Points(method_words.CAUTIONS, boxed=True),))
+    sections = [_summary(campaign), cautions]
     for number, part in enumerate(campaign.folds, start=1):
         sections.append(fold_section(part, f"fold-{number}"))
         if progress is not None:
@@ -33,7 +35,6 @@ def contents(campaign: Campaign, progress: Callable[[float], None] | None = None
     sections += [
         Section("method", "Method in short", (Points(_method(campaign)),), new_page=True),
         Section("conventions", "Conventions", (Points(method_words.CONVENTIONS),)),
-        Section("cautions", "Cautions", (Points(method_words.CAUTIONS, boxed=True),)),
         Section("repeat", "To repeat this", tuple(_repeat(campaign))),
     ]
     if progress is not None:
@@ -66,15 +67,16 @@ def _summary(campaign: Campaign) -> Section:
         settings = campaign.folds[0].check.settings
         columns = (
             Column("Fold", 20),
-            Column("Verdict", 15),
+            Column("Verdict", 14),
             Column("Transection", 16),
-            Column("Interval", 23),
-            *(Column(name, 7, figures=True) for name in ("Bedding", "Cleav.", "Inters.", "Hinge", "Outcr.")),
+            Column("Interval", 20),
+            *(Column(LETTERS[feature], 5, figures=True) for feature in Feature),
+            Column("Outcrops", 10, figures=True),
         )
+        letters = ", ".join(f"{LETTERS[feature]} {NAMES[feature]}" for feature in Feature)
         caption = (
-            f"The transection stands with its {share(settings.confidence)} interval, valid at every look. Counted are"
-            f" bedding, cleavage, intersection and hinge lines, and outcrops. The margin M is"
-            f" {degrees(settings.margin_deg)}."
+            f"Each transection stands with its {share(settings.confidence)} interval, valid at every look. The margin M"
+            f" is {degrees(settings.margin_deg)}. Numbers of readings: {letters}."
         )
         rows = tuple(
             Row((part.name, *_summary_cells(part.check)), link=f"fold-{number}")
@@ -101,7 +103,9 @@ def _summary_cells(check: FoldCheck) -> tuple[str, ...]:
     # The figure never stands without its interval.
     if check.transection_deg is not None and check.interval_deg is not None:
         figure = turned(check.transection_deg, signed=signed)
-        interval = between(*check.interval_deg, signed=signed).removeprefix("between ").replace(" and ", " to ")
+        interval = (
+            between(*check.interval_deg, signed=signed).removeprefix("between ").replace(" and ", " to ")
+        )
     counts = check.readings
     numbers = (*(counts.of(feature) for feature in Feature), counts.outcrops)
     return (check.verdict.value.capitalize(), figure, interval, *map(str, numbers))
@@ -112,8 +116,10 @@ def _method(campaign: Campaign) -> tuple[str, ...]:
     chosen: tuple[str, ...] = ()
     if settings is not None:
         chosen = (
-            f"Settings of this report: M {degrees(settings.margin_deg)}, confidence {share(settings.confidence)} over"
-            f" all looks together, forecast limit {settings.forecast_limit} readings.",
+            (
+                f"Settings of this report: M {degrees(settings.margin_deg)}, confidence {share(settings.confidence)}"
+                f" over all looks together, forecast limit {settings.forecast_limit} readings."
+            ),
         )
     return (*method_words.METHOD, *(method_words.FAULT_METHOD if campaign.fault_words else ()), *chosen)
 
@@ -121,7 +127,11 @@ def _method(campaign: Campaign) -> tuple[str, ...]:
 def _repeat(campaign: Campaign) -> Iterator[Block]:
     yield Words("In the folder that holds the files, type:")
     yield Typed(campaign.command)
-    columns = (Column("File", 30), Column("Readings used", 12, figures=True), Column("SHA-256 of its content", 58))
+    columns = (
+        Column("File", 30),
+        Column("Readings used", 12, figures=True),
+        Column("SHA-256 of its content", 58),
+    )
     rows = tuple(Row((file.name, str(file.standing), file.sha256)) for file in campaign.files)
     yield Table("The files read. The same content has the same SHA-256.", columns, rows)
     yield Facts(campaign.versions)

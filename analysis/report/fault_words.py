@@ -37,7 +37,9 @@ def _fold(part: FoldPart, number: int) -> Iterator[Block]:
     if check is None:
         yield Words("No hinge yet, so there is nothing to hold against the fault.")
         return
-    yield Points((headline(check), *check.because))
+    # On this page the cautions stand above, not below.
+    because = (text.replace("the assumptions below", "the assumptions above") for text in check.because)
+    yield Points((headline(check), *because))
     if not check.explanations:
         return
     figure = plane_figure(check, confidence=part.check.settings.confidence)
@@ -57,11 +59,15 @@ def _fold(part: FoldPart, number: int) -> Iterator[Block]:
         Column("Fits", 16),
     )
     rows = tuple(Row(_cells(one)) for one in check.explanations)
-    yield Table("What each explanation predicts and needs. One that fits is one of several that may.", columns, rows)
+    yield Table(
+        "What each explanation predicts and needs. One that fits is one of several that may.", columns, rows
+    )
 
 
 def _seen(check: FaultCheck) -> str:
-    angle = "" if check.fold_fault_angle_deg is None else f"fold-fault angle {check.fold_fault_angle_deg:.0f}°"
+    angle = (
+        "" if check.fold_fault_angle_deg is None else f"fold-fault angle {check.fold_fault_angle_deg:.0f}°"
+    )
     found = "" if check.transection_deg is None else f", transection {turned(check.transection_deg)}"
     fitting = [one.name for one in check.explanations if one.fits]
     return f"Plane of explanations: {angle}{found}; within reach: {', '.join(fitting) or 'none'}."

@@ -34,8 +34,8 @@ if TYPE_CHECKING:
     from analysis.report.blocks import Block
     from analysis.report.campaign import FoldPart
 
-MARKERS_NAMED_UP_TO: Final = 3000
-"""Readings of a fold whose markers say what they are; more are drawn as one picture."""
+MARKERS_DRAWN: Final = 2000
+"""Readings of a fold that are drawn on its net; of more, every so-manieth is."""
 _OUTCROPS_DRAWN: Final = 60  # more outcrops than these leave no room for their symbols
 
 
@@ -51,9 +51,13 @@ def fold_section(part: FoldPart, anchor: str) -> Section:
         blocks.append(Points(check.warnings, title="Mind", boxed=True))
     # The drawings carry no name of their own here: the heading has it.
     nameless = check.changed(fold="")
-    titles = marker_titles(part) if len(part.table) <= MARKERS_NAMED_UP_TO else {}
-    net = drawing_of(draw_net(nameless, part.axes), f"{anchor}-net", titles)
+    step = -(-len(part.table) // MARKERS_DRAWN)
+    axes = {feature: axes[::step] for feature, axes in part.axes.items()} if step > 1 else part.axes
+    titles = marker_titles(part) if step <= 1 else {}
+    net = drawing_of(draw_net(nameless, axes), f"{anchor}-net", titles)
     caption = "Equal-area net, lower hemisphere: poles of planes, lines as read."
+    if step > 1:
+        caption += f" One reading in {step} is drawn; all are counted."
     blocks.append(Picture(net, caption, _net_seen(check)))
     blocks.append(Facts(tuple(_facts(check))))
     funnel = drawing_of(draw_funnel(part.history, nameless), f"{anchor}-funnel")
@@ -96,7 +100,7 @@ def _facts(check: FoldCheck) -> Iterator[tuple[str, str]]:
     if check.fixed_interval_deg is not None:
         ordinary = between(*check.fixed_interval_deg, signed=signed)
         yield "Ordinary interval", f"{ordinary}: holds at one look only, and decides nothing here"
-    if len(check.estimates) > 1:
+    if len(check.estimates) > 1 and check.interval_deg is not None:
         yield (
             "Side by side",
             "; ".join(
@@ -135,9 +139,7 @@ def _funnel_seen(part: FoldPart) -> str:
     if known:
         first, last = known[0], known[-1]
         wide = [(point.high_deg or 0.0) - (point.low_deg or 0.0) for point in (first, last)]
-        text += (
-            f": {degrees(wide[0])} wide after {first.after} readings, {degrees(wide[1])} wide after {last.after}"
-        )
+        text += f": {degrees(wide[0])} wide after {first.after} readings, {degrees(wide[1])} wide after {last.after}"
     since = settled_from(part.history)
     if since is not None:
         text += f"; {part.history[-1].verdict} from {since} readings on"
@@ -146,7 +148,9 @@ def _funnel_seen(part: FoldPart) -> str:
 
 def _limbs(check: FoldCheck, anchor: str) -> Iterator[Block]:
     if check.limbs is None:
-        yield Words("Both limbs are not told apart yet: bedding so far lies on one side of the fold, or is too little.")
+        yield Words(
+            "Both limbs are not told apart yet: bedding so far lies on one side of the fold, or is too little."
+        )
         return
     lines = {line.limb: line for line in check.limb_lines}
     figure = draw_limbs(check)
@@ -158,7 +162,9 @@ def _limbs(check: FoldCheck, anchor: str) -> Iterator[Block]:
         seen = [f"on the {line.limb} {line_text(line.computed)}" for line in check.limb_lines]
         hinge = "" if check.hinge is None else f"; hinge {line_text(check.hinge.line)}"
         yield Picture(
-            drawing_of(figure, f"{anchor}-limbs"), caption, f"Net of the two limbs. Intersections: {', '.join(seen)}{hinge}."
+            drawing_of(figure, f"{anchor}-limbs"),
+            caption,
+            f"Net of the two limbs. Intersections: {', '.join(seen)}{hinge}.",
         )
     columns = (
         Column("Limb", 24),

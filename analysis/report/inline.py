@@ -86,9 +86,7 @@ class Drawing:
         return text.encode()
 
 
-def drawing_of(
-    figure: Figure, name: str, titles: Mapping[str, Sequence[str]] | None = None
-) -> Drawing:
+def drawing_of(figure: Figure, name: str, titles: Mapping[str, Sequence[str]] | None = None) -> Drawing:
     """Make a drawing of a figure in the colours of day.
 
     Parameters
@@ -120,7 +118,8 @@ def _edges_pt(figure: Figure) -> tuple[float, float, float, float]:
     boxes = []
     for axes in figure.axes:
         # Axes without lines of their own count by what stands in them, not by the room they take.
-        parts = [axes] if axes.axison else [one for one in axes.get_children() if one is not axes.patch]
+        frame = {axes.patch, axes.xaxis, axes.yaxis, *axes.spines.values()}
+        parts = [axes] if axes.axison else [one for one in axes.get_children() if one not in frame]
         boxes += [box for one in parts if one.get_visible() and (box := one.get_tightbbox()) is not None]
     boxes += [box for text in figure.texts if (box := text.get_tightbbox()) is not None]
     boxes = [box for box in boxes if box.width > 0.0 or box.height > 0.0]
@@ -149,60 +148,100 @@ def _tidied(
     whole: ET.Element, name: str, titles: Mapping[str, Sequence[str]]
 ) -> tuple[ET.Element, dict[str, ET.Element]]:
     """Group of all that is drawn, and the letters; definitions go first, under names of this drawing's own."""
-    letters: dict[str, ET.Element] = {}
-    definitions = ET.Element("defs")
-    used: dict[str, str] = {}
+    tidier = _Tidier(name.replace("-", "_"), titles)
+    root = ET.Element("g")
+    root.extend(part for child in whole if (part := tidier.clean(child)) is not None)
+    _straighten(root, tidier.definitions)
+    if len(tidier.definitions):
+        root.insert(0, tidier.definitions)
+    return root, tidier.letters
 
-    def renamed(old: str) -> str:
-        return old if _GLYPH.fullmatch(old) else used.setdefault(old, f"{name}-{len(used)}")
 
-    def clean(element: ET.Element) -> ET.Element | None:
+class _Tidier:
+    """Copies elements without namespaces, needless names and needless digits; takes definitions out."""
+
+    def __init__(self, name: str, titles: Mapping[str, Sequence[str]]) -> None:
+        self.name, self.titles = name, titles
+        self.letters: dict[str, ET.Element] = {}
+        self.definitions = ET.Element("defs")
+        self._names: dict[str, str] = {}
+
+    def clean(self, element: ET.Element, *, defined: bool = False) -> ET.Element | None:
+        """Copy an element with all in it; None for what the page does not need, or has elsewhere."""
         tag = element.tag.removeprefix(_SVG)
         if tag in ("metadata", "style"):
             return None
         made = ET.Element(tag)
         for key, value in element.attrib.items():
-            text = _REFERENCE.sub(lambda found: f"url(#{renamed(found[1])})", value)
-            if key == _LINK:
-                made.set("href", text if text.startswith("data:") else f"#{renamed(text[1:])}")
-            elif key == "style":
-                made.set("style", _themed(text))
-            elif key == "transform":
-                made.set(key, _TRANSLATION.sub(lambda found: _shorter(found[0]), text))
-            elif key in ("d", "points", "x", "y", "width", "height"):
-                made.set(key, _shorter(text))
-            elif key == "id":
-                if tag in ("path", "clipPath") and inside_definitions[-1]:
-                    made.set("id", renamed(text))
-            else:
-                made.set(key, text)
-        inside_definitions.append(inside_definitions[-1] or tag == "defs")
-        for child in element:
-            part = clean(child)
-            if part is not None:
-                made.append(part)
-        inside_definitions.pop()
-        marks = titles.get(element.get("id", ""))
+            # Of the names only those that something else refers to are kept.
+            if key != "id" or (defined and tag in ("path", "clipPath")):
+                made.set("href" if key == _LINK else key, self._value(key, value))
+        inside = defined or tag == "defs"
+        made.extend(part for child in element if (part := self.clean(child, defined=inside)) is not None)
+        marks = self.titles.get(element.get("id", ""))
         if marks is not None:
             _entitle(made, marks)
-        if tag == "defs":
-            for part in made:
-                if _GLYPH.fullmatch(part.get("id", "")):
-                    letters[part.get("id", "")] = part
-                else:
-                    definitions.append(part)
-            return None
-        return made
+        if tag != "defs":
+            return made
+        for part in made:
+            name = part.get("id", "")
+            if _GLYPH.fullmatch(name):
+                self.letters[name] = part
+            else:
+                self.definitions.append(part)
+        return None
 
-    inside_definitions = [False]
-    root = ET.Element("g")
-    for child in whole:
-        part = clean(child)
-        if part is not None:
-            root.append(part)
-    if len(definitions):
-        root.insert(0, definitions)
-    return root, letters
+    def _value(self, key: str, value: str) -> str:
+        text = _REFERENCE.sub(lambda found: f"url(#{self._renamed(found[1])})", value)
+        if key == "id":
+            return self._renamed(text)
+        if key == _LINK:
+            return f"#{self._renamed(text.removeprefix('#'))}"
+        if key == "style":
+            return _themed(text)
+        if key == "transform":
+            return _TRANSLATION.sub(lambda found: _shorter(found[0]), text)
+        return _shorter(text) if key in ("d", "x", "y", "width", "height") else text
+
+    def _renamed(self, name: str) -> str:
+        if _GLYPH.fullmatch(name):
+            return name
+        return self._names.setdefault(name, f"{self.name}_{len(self._names)}")
+
+
+def _straighten(root: ET.Element, definitions: ET.Element) -> None:
+    """Draw what is defined for one use only where it is used: some readers do not clip what is used."""
+    uses: dict[str, list[tuple[ET.Element, ET.Element]]] = {}
+    for parent in root.iter("g"):
+        for child in parent:
+            if child.tag == "use" and "clip-path" in parent.attrib:
+                uses.setdefault(child.get("href", "#")[1:], []).append((parent, child))
+    for path in list(definitions):
+        found = uses.get(path.get("id", ""), [])
+        if path.tag != "path" or len(found) != 1 or "transform" in path.attrib:
+            continue
+        parent, use = found[0]
+        if len(use):  # it carries a title
+            continue
+        shift = float(use.get("x", "0")), float(use.get("y", "0"))
+        made = {"d": _shifted(path.get("d", ""), shift), "clip-path": parent.get("clip-path", "")}
+        style = ";".join(filter(None, (path.get("style"), use.get("style"))))
+        parent.insert(list(parent).index(use), ET.Element("path", {**made, "style": style}))
+        parent.remove(use)
+        definitions.remove(path)
+
+
+def _shifted(data: str, shift: tuple[float, float]) -> str:
+    """Path data in absolute coordinates, moved."""
+    place = 0
+    words = []
+    for word in data.split():
+        if word.isalpha():
+            words.append(word)
+            continue
+        words.append(f"{float(word) + shift[place % 2]:.2f}")
+        place += 1
+    return " ".join(words)
 
 
 def _entitle(group: ET.Element, titles: Sequence[str]) -> None:
@@ -225,7 +264,7 @@ def _themed(style: str) -> str:
 def _shorter(text: str) -> str:
     """Numbers to a hundredth of a point, which nobody sees, and no needless spaces."""
     cut = _NUMBER.sub(lambda found: f"{float(found[0]):.2f}".rstrip("0").rstrip("."), text)
-    return " ".join(cut.split()) if not cut.startswith("data:") else cut
+    return " ".join(cut.split())
 
 
 def _markup(element: ET.Element) -> str:

@@ -68,7 +68,9 @@ class _Limbs:
         for azimuth in range(0, 360, 10):
             ray = np.array([np.sin(np.radians(azimuth)), np.cos(np.radians(azimuth))])
             self._curve(np.array([ray, 0.97 * ray]), palette.ink, 0.8, f"tick-{azimuth:03d}")
-        north = self.axes.text(0.0, 1.03, "N", fontsize=12.0, fontweight="bold", color=palette.ink, ha="center")
+        north = self.axes.text(
+            0.0, 1.03, "N", fontsize=12.0, fontweight="bold", color=palette.ink, ha="center"
+        )
         self.placer.take(self.sheet.box_of(north))
         beds = [great_circle(limb.plane.pole) for limb in check.limbs.both]
         for number, bed in enumerate(beds):
@@ -110,10 +112,22 @@ class _Limbs:
         self.placer.block(self._pixels(np.atleast_2d(place)), radius * 100.0 / 72.0, 40.0)
 
     def _curve(
-        self, xy: Floats, colour: str, width: float, gid: str, *, dashes: tuple[int, tuple[float, float]] | None = None
+        self,
+        xy: Floats,
+        colour: str,
+        width: float,
+        gid: str,
+        *,
+        dashes: tuple[int, tuple[float, float]] | None = None,
     ) -> None:
         self.axes.plot(
-            xy[:, 0], xy[:, 1], color=colour, linewidth=width, linestyle=dashes or "solid", gid=gid, zorder=2.0
+            xy[:, 0],
+            xy[:, 1],
+            color=colour,
+            linewidth=width,
+            linestyle=dashes or "solid",
+            gid=gid,
+            zorder=2.0,
         )
         self.placer.block(self._pixels(xy), 1.0, 2.0)
 

@@ -30,12 +30,12 @@ _CHECKED: Final = {
 }
 _COLUMNS: Final = (
     Column("No.", 5, figures=True),
-    Column("When, UTC", 13),
+    Column("When, UTC", 17),
     Column("Outcrop", 12),
-    Column("Feature", 11),
-    Column("Attitude", 11, figures=True),
-    Column("As entered", 19),
-    Column("Remarks", 29),
+    Column("Feature", 13),
+    Column("Attitude", 10, figures=True),
+    Column("As entered", 17),
+    Column("Remarks", 26),
 )
 
 
@@ -97,7 +97,9 @@ def _cells(number: int, reading: Reading, off_deg: float | None) -> tuple[str, .
 def _entered(reading: Reading) -> str:
     parts = [cut(reading.as_entered)] if reading.as_entered else []
     if reading.correction_deg is not None:
-        parts.append(f"{reading.north_reference} {reading.correction_deg:+.1f}°".replace("-", "\N{MINUS SIGN}"))
+        parts.append(
+            f"{reading.north_reference} {reading.correction_deg:+.1f}°".replace("-", "\N{MINUS SIGN}")
+        )
     elif reading.north_reference != "true":
         parts.append(f"{reading.north_reference} north")
     if reading.instrument and reading.instrument != "compass":

@@ -7,14 +7,18 @@ file descriptors 3 and 4 of the browser. One browser serves all tests of a sessi
 from __future__ import annotations
 
 import base64
+import fcntl
 import json
 import os
 import select
 import shutil
 import subprocess
+import sys
 import time
-from pathlib import Path
-from typing import Any, NamedTuple
+from typing import TYPE_CHECKING, Any, NamedTuple
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 NAMES = ("chromium", "chromium-browser", "google-chrome", "google-chrome-stable", "chrome", "microsoft-edge")
 PATIENCE_S = 120.0
@@ -50,6 +54,9 @@ def find_browser() -> str:
     )
 
 
+SCREEN = Look()
+
+
 class Browser:
     """A browser that runs until it is closed."""
 
@@ -57,18 +64,20 @@ class Browser:
         ours_read, theirs_write = os.pipe()
         theirs_read, ours_write = os.pipe()
         command = [find_browser(), *FLAGS, f"--user-data-dir={folder}", "about:blank"]
-        # The browser wants its pipe on the descriptors 3 and 4: a shell moves them there.
-        moved = ["/bin/sh", "-c", f'exec "$@" 3<&{theirs_read} 4>&{theirs_write}', "sh", *command]
+        # The browser wants its pipe on the descriptors 3 and 4: a small program moves them there.
+        ends = [fcntl.fcntl(end, fcntl.F_DUPFD, 10) for end in (theirs_read, theirs_write)]
+        mover = f"import os, sys; os.dup2({ends[0]}, 3); os.dup2({ends[1]}, 4); os.execv(sys.argv[1], sys.argv[1:])"
+        moved = [sys.executable, "-c", mover, *command]
         with (folder / "browser.log").open("wb") as log:
             self.process = subprocess.Popen(
                 moved,
-                pass_fds=(theirs_read, theirs_write),
+                pass_fds=ends,
                 stdin=subprocess.DEVNULL,
                 stdout=log,
                 stderr=log,
             )
-        os.close(theirs_read)
-        os.close(theirs_write)
+        for end in (theirs_read, theirs_write, *ends):
+            os.close(end)
         self._read, self._write = ours_read, ours_write
         self._rest = b""
         self._number = 0
@@ -117,7 +126,7 @@ class Browser:
         message, _, self._rest = self._rest.partition(b"\0")
         return json.loads(message)
 
-    def open(self, path: Path, look: Look = Look()) -> Tab:
+    def open(self, path: Path, look: Look = SCREEN) -> Tab:
         """Open a file in a new tab and wait until it is loaded."""
         target = self.call("Target.createTarget", url="about:blank")["targetId"]
         session = self.call("Target.attachToTarget", targetId=target, flatten=True)["sessionId"]
@@ -176,7 +185,11 @@ class Tab:
         """Print the page."""
         self.call("Emulation.setEmulatedMedia", media="print")
         made = self.call(
-            "Page.printToPDF", paperWidth=width_in, paperHeight=height_in, printBackground=True, preferCSSPageSize=False
+            "Page.printToPDF",
+            paperWidth=width_in,
+            paperHeight=height_in,
+            printBackground=True,
+            preferCSSPageSize=False,
         )
         return base64.b64decode(made["data"])
 

@@ -1,5 +1,7 @@
 """Invented folds to draw, and ways to look into what was drawn."""
 
+import dataclasses
+from datetime import UTC, datetime
 from typing import NamedTuple
 
 import numpy as np
@@ -158,3 +160,60 @@ def collisions(texts):
         return pairs + outside
 
     return found
+
+
+NOTE = "read again, 2 m up the wall"
+HOSTILE_FOLD = "<script>alert('fold')</script> & \"Tarrow\" ]]> {{ 7 * 7 }} $x_1$"
+HOSTILE_NOTE = "</td></table><img src=https://example.invalid/x.png onerror=alert(1)>"
+
+
+def campaign_readings():
+    """The demo's first and third fold, with readings struck out, mended and hostile ones among them."""
+    from analysis.demo import demo_readings  # noqa: PLC0415 - loads the table library
+
+    later = datetime(2026, 5, 9, tzinfo=UTC)
+    readings = [one for one in demo_readings() if one.fold != "Low Mossgarth fold"]
+    readings.append(readings[3].struck(at=later))
+    mended = readings[10].revised(at=later, note=NOTE, warnings_kept=("quadrant-misfit", "flat-plane"))
+    readings.append(mended)
+    hostile = {
+        "fold": HOSTILE_FOLD,
+        "outcrop": "<b>MG</b>",
+        "note": HOSTILE_NOTE,
+        "as_entered": "'\"><svg onload=x>",
+    }
+    readings += [
+        dataclasses.replace(one, reading_id=f"hostile-{number}", **hostile)
+        for number, one in enumerate(readings[:3])
+    ]
+    return readings
+
+
+FAULT = ("--fault-strike", "52", "--sense", "sinistral", "--zone-width-km", "2")
+
+
+def write_report(folder, ending, *options):
+    """Run the command on the campaign's file in a folder and return the report's path."""
+    from click.testing import CliRunner  # noqa: PLC0415 - only where a report is made
+
+    from analysis.cli import hingewise  # noqa: PLC0415
+    from analysis.files.csvfile import write_readings  # noqa: PLC0415
+
+    write_readings(folder / "mossgarth.csv", campaign_readings())
+    path = folder / f"report{ending}"
+    arguments = ["report", str(folder / "mossgarth.csv"), "-o", str(path), *options]
+    done = CliRunner().invoke(hingewise, arguments)
+    assert done.exit_code == 0, done.output
+    return path
+
+
+@pytest.fixture(scope="session")
+def page_path(tmp_path_factory):
+    """A report as a page, with the fault explained."""
+    return write_report(tmp_path_factory.mktemp("page"), ".html", *FAULT)
+
+
+@pytest.fixture(scope="session")
+def paper_path(tmp_path_factory):
+    """The same as a PDF."""
+    return write_report(tmp_path_factory.mktemp("paper"), ".pdf", *FAULT)
