@@ -136,7 +136,7 @@ def main(arguments: list[str]) -> int:
         for screen in SCREENS:
             environment = setup_env.kivy_environment(kivy_home, display)
             environment |= {"KIVY_METRICS_DENSITY": "1", "KIVY_METRICS_FONTSCALE": str(screen.font_scale)}
-            environment["KIVY_LOG_MODE"] = "PYTHON"
+            environment |= {"KIVY_LOG_MODE": "PYTHON", "KIVY_CLIPBOARD": "dummy"}
             command = [str(python), os.fspath(Path(__file__).resolve()), "--screen", screen.name, str(folder)]
             done = subprocess.run(command, cwd=setup_env.ROOT, env=environment, check=False)
             if done.returncode:
