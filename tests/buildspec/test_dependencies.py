@@ -29,12 +29,13 @@ def asked_for(*groups):
     return {canonicalize_name(Requirement(line).name) for group in groups for line in group}
 
 
-def imported_by(folder):
+def imported_by(folder, files="**/*.py"):
     """Return the top-level names that a folder's files import from outside the project and the library."""
     names = set()
     # Tests may bring helpers of their own along: modules beside them are no dependencies.
-    own = {path.stem for path in (ROOT / folder).rglob("*.py")} | {"analysis", "fieldapp", "buildspec", "tests"}
-    for path in (ROOT / folder).rglob("*.py"):
+    own = {path.stem for folder in (folder, "buildspec") for path in (ROOT / folder).rglob("*.py")}
+    own |= {"analysis", "fieldapp", "buildspec", "packing", "tests"}
+    for path in (ROOT / folder).glob(files):
         for node in ast.walk(ast.parse(path.read_text(encoding="utf-8"))):
             if isinstance(node, ast.Import):
                 names |= {alias.name.partition(".")[0] for alias in node.names}
@@ -54,17 +55,20 @@ def undeclared(names, declared):
 
 
 @pytest.mark.parametrize(
-    ("folder", "groups"),
+    ("folder", "files", "groups"),
     [
-        ("analysis", [PROJECT["dependencies"], EXTRAS["desk"]]),
-        ("fieldapp", [PROJECT["dependencies"]]),
-        ("tests", [PROJECT["dependencies"], *EXTRAS.values()]),
-        ("buildspec", []),
+        ("analysis", "**/*.py", [PROJECT["dependencies"], EXTRAS["desk"]]),
+        ("fieldapp", "**/*.py", [PROJECT["dependencies"]]),
+        ("tests", "**/*.py", [PROJECT["dependencies"], *EXTRAS.values()]),
+        ("buildspec", "[!p]*.py", []),
+        ("buildspec", "pack.py", []),
+        ("buildspec", "pictures.py", [PROJECT["dependencies"], *EXTRAS.values()]),
+        ("buildspec", "*/*.py", [EXTRAS["test"]]),
     ],
 )
-def test_every_import_is_asked_for(folder, groups):
-    """A fresh environment holds all that the code imports, and buildspec runs on a bare Python."""
-    assert undeclared(imported_by(folder) - ON_ANDROID, asked_for(*groups)) == []
+def test_every_import_is_asked_for(folder, files, groups):
+    """A fresh environment holds all that the code imports, and the commands of buildspec run on a bare Python."""
+    assert undeclared(imported_by(folder, files) - ON_ANDROID, asked_for(*groups)) == []
 
 
 def test_an_import_that_is_not_asked_for_is_found():

@@ -1,0 +1,8 @@
+"""Let the tests import what stands in buildspec, as its own commands do."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+sys.path.insert(0, str(Path(__file__).resolve().parents[2] / "buildspec"))
