@@ -291,6 +291,7 @@ class LogLeaf(BoxLayout):
         self._show_pad()
         if self.page is not None:
             self._show_grids(self.page.entry)
+            self.place_row.show(self.page.place)
             self._show_tabs(self.page.tabs)
             self._show_recent()
 

@@ -4,6 +4,7 @@
 
 from __future__ import annotations
 
+from kivy.app import App
 from kivy.properties import BooleanProperty, StringProperty
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
@@ -126,5 +127,7 @@ class PlaceRow(ButtonBehavior, BoxLayout):
     def show(self, place: object) -> None:
         """Show the presenter's place."""
         self.outcrop = place.outcrop_title
-        self.fold = f"Demo, invented: {place.fold_title}" if place.demo else place.fold_title
+        # A phone on its side shows no bar that marks the demo.
+        marked = place.demo and App.get_running_app().form.low
+        self.fold = f"Demo, invented: {place.fold_title}" if marked else place.fold_title
         self.position = place.position_text or "no position"
