@@ -41,7 +41,11 @@ def join_command(
         write_readings(
             conflicts_file, [content for conflict in joined.conflicts for content in conflict.contents]
         )
-    click.echo(f"{len(joined.standing)} readings stand, in {len(joined)} revisions, in {output}")
+    standing, revisions = (
+        f"{count} {word}{'' if count == 1 else 's'}"
+        for count, word in ((len(joined.standing), "reading"), (len(joined), "revision"))
+    )
+    click.echo(f"{standing} standing, in {revisions}, in {output}")
     for conflict in joined.conflicts:
         click.echo(f"conflict: {conflict}", err=True)
     if joined.conflicts:

@@ -27,9 +27,7 @@ _SHOWN = 20
     help="The map to write: .gpkg or .geojson.",
 )  # fmt: skip
 @click.option("--cell", "cell_km", metavar="KM", type=float, help="Check squares of this width, not folds.")
-@click.option(
-    "--moving", is_flag=True, help="With --cell: each square together with the eight or so around it."
-)
+@click.option("--moving", is_flag=True, help="With --cell: each square together with the eight around it.")
 @click.option(
     "--workers", metavar="N", type=click.IntRange(min=1), help="Threads; one a processor unless given."
 )
@@ -96,7 +94,8 @@ def _say_left_out(found: Survey) -> None:
     if len(found.conflicts) > _SHOWN:
         click.echo(f"and {len(found.conflicts) - _SHOWN} more conflicts", err=True)
     if found.unplaced:
-        click.echo(f"{found.unplaced} readings without position lie in no square", err=True)
+        readings = "1 reading" if found.unplaced == 1 else f"{found.unplaced} readings"
+        click.echo(f"left out, for a reading without position is in no square: {readings}", err=True)
 
 
 def _write(found: Survey, output: Path) -> None:

@@ -22,12 +22,14 @@ def whole_file(path: str | os.PathLike[str]) -> Iterator[Path]:
     The draft is flushed to disk before. Raises CsvError where it cannot be written; nothing is left behind then.
     """
     target = Path(os.path.realpath(path))
-    draft = target.with_name(f".{target.stem[:100]}.{secrets.token_hex(6)}.part{target.suffix}")
+    # The ending stays, because libraries go by it.
+    draft = target.with_name(f".{target.stem[:100]}.{secrets.token_hex(6)}.part{target.suffix[:20]}")
     try:
         yield draft
         with draft.open("rb+") as stream:
             os.fsync(stream.fileno())
         draft.replace(target)
+        _sync_folder(target.parent)
     except HingewiseError:
         raise
     except OSError as error:
@@ -40,3 +42,13 @@ def whole_file(path: str | os.PathLike[str]) -> Iterator[Path]:
     finally:
         with contextlib.suppress(OSError):
             draft.unlink(missing_ok=True)
+
+
+def _sync_folder(folder: Path) -> None:
+    """Flush the new name to disk too, where the system lets folders be opened."""
+    with contextlib.suppress(OSError):
+        handle = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)

@@ -11,7 +11,6 @@ from __future__ import annotations
 
 import contextlib
 import os
-import secrets
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import Future, ThreadPoolExecutor
@@ -20,6 +19,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, BinaryIO, cast
 
 from analysis.errors import CsvError
+from analysis.files.atomic import whole_file
 from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless
 from analysis.files.cells import quoted
 from analysis.files.columns import BY_NAME, NAMES, Kind
@@ -130,30 +130,13 @@ def write_readings(
     The file is written beside its place under another name, flushed to disk and renamed, so that it is never
     there in part. Raises CsvError where the folder cannot be written to; nothing is left behind then.
     """
-    target = Path(os.path.realpath(path))
     table = readings if isinstance(readings, ReadingTable) else ReadingTable.from_readings(readings)
-    draft = target.with_name(f".{target.name[:100]}.{secrets.token_hex(6)}.part")
-    try:
-        # "x": never over a file that is there already, and with the permissions any new file gets.
-        with draft.open("x", encoding="utf-8", newline="") as stream:
-            for row, text in _texts(table):
-                stream.write(text)
-                if progress is not None and len(table):
-                    progress(row / len(table))
-            stream.flush()
-            os.fsync(stream.fileno())
-        draft.replace(target)
-        _sync_folder(target.parent)
-    except OSError as error:
-        raise CsvError(
-            f"cannot be written: {error.strerror or error}",
-            where=os.fspath(path),
-            expected="a folder that can be written to, with room on the disk",
-            mend="Choose another folder.",
-        ) from error
-    finally:
-        with contextlib.suppress(OSError):
-            draft.unlink(missing_ok=True)
+    # "x": never over a file that is there already, and with the permissions any new file gets.
+    with whole_file(path) as draft, draft.open("x", encoding="utf-8", newline="") as stream:
+        for row, text in _texts(table):
+            stream.write(text)
+            if progress is not None and len(table):
+                progress(row / len(table))
 
 
 def csv_text(readings: ReadingTable | Iterable[Reading]) -> Iterator[str]:
@@ -209,13 +192,3 @@ def _unreadable(file: str, error: OSError | ValueError) -> CsvError:
     return CsvError(
         f"cannot be read: {reason}", where=file, expected="a file of readings", mend="Look at the path."
     )
-
-
-def _sync_folder(folder: Path) -> None:
-    """Flush the new name to disk too, where the system lets folders be opened."""
-    with contextlib.suppress(OSError):
-        handle = os.open(folder, os.O_RDONLY)
-        try:
-            os.fsync(handle)
-        finally:
-            os.close(handle)

@@ -62,7 +62,9 @@ def find_archive(paths: Iterable[str | os.PathLike[str]]) -> Archive:
     for given in map(Path, paths):
         if given.is_dir():
             files += sorted(
-                path for path in given.rglob("*") if path.suffix.lower() in _SUFFIXES and path.is_file()
+                path
+                for path in given.rglob("[!.]*")  # hidden ones are drafts of files being written
+                if path.suffix.lower() in _SUFFIXES and path.is_file()
             )
         else:
             files.append(given)

@@ -93,7 +93,7 @@ def test_conflicts_are_listed_and_the_exit_code_is_1(run, tmp_path):
     result = run("join", tmp_path / "a.csv", tmp_path / "b.csv", "-o", tmp_path / "all.csv")
     assert result.exit_code == 1
     assert "conflict: a, revision 2: 2 contents differ in revised_at, dip_deg, note" in result.stderr
-    assert "1 readings stand, in 3 revisions" in result.stdout
+    assert "1 reading standing, in 3 revisions" in result.stdout
     assert read_readings(tmp_path / "all.csv")[0] == [bed(), early, late]
 
 

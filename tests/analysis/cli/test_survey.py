@@ -77,7 +77,7 @@ def test_what_is_left_out_is_said(run, archive, tmp_path):
     assert "f.csv, line 2, column dip_deg" in result.stderr
     assert "1 row was left out" in result.stderr
     assert f"conflict: {reading.reading_id}, revision 2" in result.stderr
-    assert "1 readings without position" in result.stderr
+    assert "in no square: 1 reading" in result.stderr
 
 
 def test_what_cannot_be_surveyed_is_said_in_one_line(run, archive, tmp_path):

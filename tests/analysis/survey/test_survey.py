@@ -203,8 +203,10 @@ def test_progress_is_shown_where_it_is_asked_for(readings, written):
 
 
 def test_parts_follow_the_names_of_files(written, readings):
-    """Files of a folder are taken in the order of their names, given twice only once."""
+    """Files of a folder are taken in the order of their names, twice given once; drafts and others are let be."""
     paths = written(readings[:5], readings[5:], readings[:2])
+    (paths[0].parent / ".1.csv.0123.part.csv").write_text("half of a fi", encoding="utf-8")
+    (paths[0].parent / "notes.txt").write_text("no readings", encoding="utf-8")
     archive = find_archive([paths[0].parent, paths[1]])
     assert [part.path for part in archive.parts] == [str(path) for path in paths]
     assert archive.ids_matter
