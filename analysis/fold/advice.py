@@ -75,7 +75,7 @@ def next_reading(
     new_outcrop: bool,
 ) -> NextReading:
     """Give the reading with the larger gain: of bedding for the hinge, or of `other` for the cleavage."""
-    if gain_hinge > gain_cleavage:
+    if gain_hinge >= gain_cleavage:
         if hinge is None:
             held = sums.count(Feature.BEDDING)
             return NextReading(

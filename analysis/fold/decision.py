@@ -47,6 +47,7 @@ def decide(
         return _advised(check.changed(**angle, because=because, warnings=tuple(warnings)), sums)
 
     clear = bool(hinge_is_clear(check.hinge.fit))
+    cluster = blocks.one_cluster(check.hinge.fit, check.limbs)
     waits, blocked, notes = _kept_back(check, sums, transection, lines)
     waiting += waits
     progress = (
@@ -77,6 +78,9 @@ def decide(
         return _advised(
             check.changed(verdict=Verdict.CANNOT_BE_SETTLED, because=tuple(blocked), blocked=True), sums
         )
+    if cluster and (seen.transected or seen.axial_planar):
+        verdict = Verdict.CANNOT_BE_SETTLED if blocks.should_be_clear(counts) else Verdict.KEEP_READING
+        return _advised(check.changed(verdict=verdict, because=(cluster,), blocked=True), sums)
     if seen.transected:
         return check.changed(verdict=Verdict.TRANSECTED, because=_why_transected(check, transection))
     if seen.axial_planar:
@@ -237,22 +241,24 @@ def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
     """Add the next best reading."""
     counts, numbers = check.readings, check.numbers
     other = Feature.INTERSECTION if check.cleavage is None and counts.intersection else Feature.CLEAVAGE
-    gains = (1.0, 0.0)
-    if (
-        numbers is not None
-        and not blocks.missing_for_hinge(counts)
-        and not blocks.missing_for_cleavage(counts)
+    if blocks.missing_for_hinge(counts) or blocks.missing_for_cleavage(counts):
+        gains = (
+            1.0 - float(stream_progress(counts.bedding, counts.hinge)),
+            1.0 - float(stream_progress(counts.cleavage, counts.intersection)),
+        )
+    elif (
+        check.hinge is None
+        or not hinge_is_clear(check.hinge.fit)
+        or blocks.one_cluster(check.hinge.fit, check.limbs)
     ):
+        gains = (1.0, 0.0)  # nothing can be said before the hinge is clear
+    elif numbers is None:
+        gains = (0.0, 1.0)
+    else:
         gains = (
             numbers.hinge_variance / max(counts.bedding + counts.hinge, 1),
             numbers.cleavage_variance / max(counts.cleavage + counts.intersection, 1),
         )
-    else:
-        progress = (
-            stream_progress(counts.bedding, counts.hinge),
-            stream_progress(counts.cleavage, counts.intersection),
-        )
-        gains = (1.0 - float(progress[0]), 1.0 - float(progress[1]))
     pole = None if check.cleavage is None else check.cleavage.vector
     return check.changed(
         next_reading=next_reading(

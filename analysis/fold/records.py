@@ -176,7 +176,7 @@ class FoldCheck:
     interval_deg: tuple[float, float] | None = None
     verdict: Verdict = Verdict.KEEP_READING
     because: tuple[str, ...] = ()
-    blocked: bool = False
+    blocked: bool = False  # a condition keeps a verdict back, not the interval
     more_readings: MoreReadings | None = None
     next_reading: NextReading | None = None
     warnings: tuple[str, ...] = ()

@@ -56,6 +56,21 @@ def hinge_is_clear(hinge: AxisFit) -> npt.NDArray[np.bool_]:
     return np.asarray(np.degrees(hinge.less_certain_se_rad) <= HINGE_SE_AT_MOST_DEG)
 
 
+def girdle_by_chance(hinge: AxisFit) -> Floats:
+    """Chance, (...), that a single cluster of bedding poles is drawn out into a girdle as much as this one.
+
+    Poles of one limb scatter evenly about their mean; few of them may look drawn out, and their hinge is any line in
+    the bed. With l2, l3 the two smaller eigenvalues, V = 4 l2 l3/(l2 + l3)^2 has P(V <= v) = v^((n - 2)/2) for an even
+    cluster (Mauchly 1940, two dimensions, from memory). Zero with hinge lines, which show the hinge without a girdle.
+    """
+    least, middle = -hinge.eigenvalues[..., 0], -hinge.eigenvalues[..., 1]
+    from_lines = hinge.freedom > hinge.readings - 1.5  # a line gives two residuals, a bedding pole one
+    with np.errstate(invalid="ignore", divide="ignore"):
+        evenness = 4.0 * np.maximum(least, 0.0) * middle / (least + middle) ** 2
+        chance = np.clip(evenness, 0.0, 1.0) ** (0.5 * np.maximum(hinge.freedom, 0.0))
+    return np.where(from_lines, 0.0, np.where(np.isfinite(chance), chance, 1.0))
+
+
 def hinge_part_is_small(transection: Transection) -> npt.NDArray[np.bool_]:
     """Tell, (...), whether the hinge is known well enough in the direction that makes the transection."""
     return np.asarray(np.sqrt(transection.steady_hinge_variance) <= HINGE_PART_AT_MOST_DEG)
