@@ -281,7 +281,7 @@ class HingewiseApp(App):
         return HandOverLeaf()
 
     def open_sheet(self, name: str, **values: object) -> Sheet:
-        """Lay a sheet over the page: "settings", "place", "readings", "note", "number" or "safety"."""
+        """Lay a sheet over the page: "settings", "place", "readings", "note", "number", "safety" or "help"."""
         from fieldapp.leaves.sheets import make_sheet
 
         return make_sheet(name, **values).open(self.outline)

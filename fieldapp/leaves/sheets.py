@@ -12,6 +12,7 @@ from kivy.uix.textinput import TextInput
 
 from fieldapp.drawing.scene import MARKERS
 from fieldapp.leaves import load_kv
+from fieldapp.leaves.help import HelpSheet
 from fieldapp.leaves.keys import KeyPad  # noqa: F401 - the .kv file uses it
 from fieldapp.leaves.measure import MeasureSheet
 from fieldapp.leaves.parts import Choice, Key, Sheet
@@ -120,7 +121,7 @@ class SettingsSheet(Sheet):
 
 
 class SheetKeys(BoxLayout):
-    """Safety, the demo, and the way back from it."""
+    """Help, safety, the demo, and the way back from it."""
 
 
 class PlaceSheet(Sheet):
@@ -344,6 +345,7 @@ SHEETS = {
     "note": NoteSheet,
     "number": NumberSheet,
     "safety": SafetySheet,
+    "help": HelpSheet,
 }
 
 

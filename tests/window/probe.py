@@ -27,6 +27,7 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
     from mossgarth import TestClock, fold, type_into
 
     from analysis.orient.features import Feature
+    from fieldapp.help import PAGES
     from fieldapp.settings import Appearance
 
     Config.set("graphics", "maxfps", "0")
@@ -75,9 +76,13 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         page.set_overturned(overturned=True)
         look("Log, mending")
         page.clear()
-        for name in ("settings", "place", "readings", "note"):
+        for name in ("settings", "place", "readings", "note", "help"):
             app.open_sheet(name)
             look(f"sheet {name}")
+            app.close_sheets()
+        for name in PAGES:
+            app.open_sheet("help", page=name)
+            look(f"help {name}")
             app.close_sheets()
         page.strike_out(page.standing[2].reading_id)
         look("Log, struck out")
