@@ -44,11 +44,13 @@ class SystemPackage(NamedTuple):
     what: str
     library: str = ""
     program: str = ""
+    others: tuple[str, ...] = ()
+    """Programs that do as well."""
 
     def is_present(self) -> bool:
-        """Whether the library loads or the program is found, whatever package manager put it there."""
+        """Whether the library loads or a program is found, whatever package manager put it there."""
         if self.program:
-            return shutil.which(self.program) is not None
+            return any(shutil.which(name) is not None for name in (self.program, *self.others))
         try:
             ctypes.CDLL(self.library)
         except OSError:
@@ -63,6 +65,15 @@ WINDOW_PACKAGES = (
     SystemPackage("libmtdev1", "touch screens", library="libmtdev.so.1"),
 )
 DISPLAY_PACKAGES = (SystemPackage("xvfb", "a display for the window tests", program="Xvfb"),)
+# The names that tests/analysis/report/browser.py looks for; a test compares the two.
+BROWSER_PACKAGES = (
+    SystemPackage(
+        "chromium",
+        "a browser for the tests of the report",
+        program="chromium",
+        others=("chromium-browser", "google-chrome", "google-chrome-stable", "chrome", "microsoft-edge"),
+    ),
+)
 
 
 def require_python() -> None:

@@ -174,7 +174,9 @@ def main(arguments: list[str]) -> int:
     extra = arguments[1:] if benchmarks else arguments
     with contextlib.ExitStack() as stack:
         try:
-            missing = setup_env.ensure_system(setup_env.WINDOW_PACKAGES + setup_env.DISPLAY_PACKAGES)
+            missing = setup_env.ensure_system(
+                setup_env.WINDOW_PACKAGES + setup_env.DISPLAY_PACKAGES + setup_env.BROWSER_PACKAGES
+            )
             if missing:
                 say(setup_env.describe_missing(missing))
             python = setup_env.ensure_environment(setup_env.all_extras())

@@ -47,7 +47,7 @@ ROOMS = {
     "strain": Room({"orient", "stats", "fold"}, {"numpy"}),
     "files": Room({"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio"}),
     "survey": Room(FIELD_ROOMS | {"files"}, {"numpy", "pandas"}, {"dask", "distributed", "pyarrow"}),
-    "report": Room(EVERY_ROOM, {"numpy", "pandas"}, {"matplotlib", "jinja2"}),
+    "report": Room(EVERY_ROOM, {"numpy", "pandas"}, {"matplotlib", "jinja2", "fpdf"}),
     "demo": Room({"orient", "stats", "files"}, {"numpy"}),
     "cli": Room(EVERY_ROOM | {"survey", "demo"}, {"numpy", "pandas", "click"}),
 }

@@ -13,7 +13,9 @@ from analysis.cli.common import OneLineErrors
 from analysis.cli.explain import explain_command
 from analysis.cli.export import export
 from analysis.cli.join import join_command
+from analysis.cli.plan import plan_command
 from analysis.cli.replay import replay
+from analysis.cli.report import report_command
 from analysis.cli.simulate import simulate
 from analysis.cli.survey import survey_command
 
@@ -31,5 +33,15 @@ def hingewise() -> None:
     """  # noqa: D301 - click reads the escape
 
 
-for _command in (check, explain_command, export, join_command, replay, simulate, survey_command):
+for _command in (
+    check,
+    explain_command,
+    export,
+    join_command,
+    plan_command,
+    replay,
+    report_command,
+    simulate,
+    survey_command,
+):
     hingewise.add_command(_command)

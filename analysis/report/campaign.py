@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
@@ -83,7 +83,8 @@ class Campaign:
     """Everything that the report prints from.
 
     `command` repeats it, `versions` are names and releases of what reckoned it, `left_out` says what could not be
-    read (at most a few sentences, then a count), and `fault_words` describes the fault, or is empty.
+    read (at most a few sentences, then a count), `struck_only` counts the readings of folds of which none stands, and
+    `fault_words` describes the fault, or is empty.
     """
 
     title: str
@@ -93,6 +94,7 @@ class Campaign:
     versions: tuple[tuple[str, str], ...]
     left_out: tuple[str, ...] = ()
     conflicts: tuple[Conflict, ...] = ()
+    struck_only: Mapping[str, int] = field(default_factory=dict)
     fault_words: str = ""
 
 

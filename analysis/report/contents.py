@@ -8,6 +8,7 @@ from analysis.fold.words import between, degrees, turned
 from analysis.orient.features import Feature
 from analysis.report import method_words
 from analysis.report.blocks import Column, Facts, Points, Report, Row, Section, Table, Typed, Words, cut
+from analysis.report.campaign import UNNAMED
 from analysis.report.fault_words import fault_section
 from analysis.report.fold_words import fold_section, share
 from analysis.report.palette import LETTERS, NAMES
@@ -85,6 +86,12 @@ def _summary(campaign: Campaign) -> Section:
         blocks.append(Table(caption, columns, rows))
     else:
         blocks.append(Words("No readings stand in these files."))
+    if campaign.struck_only:
+        gone = (
+            f"{name or UNNAMED}: {number} reading{'' if number == 1 else 's'}, all struck out"
+            for name, number in campaign.struck_only.items()
+        )
+        blocks.append(Points(tuple(gone), title="Folds of which no reading stands"))
     if campaign.left_out:
         blocks.append(Points(campaign.left_out, title="Left out", boxed=True))
     if campaign.conflicts:

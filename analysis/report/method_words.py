@@ -35,10 +35,10 @@ METHOD: Final = (
 )
 FAULT_METHOD: Final = (
     (
-        "Rotation: folds start at 45° to the fault and turn as lines in simple shear, cleavage follows the"
-        " finite strain (Ramsay & Huber 1983). Partitioned transpression: faults take up the wrench, and no transection is"
-        " left (Tikoff & Teyssier 1994). Unpartitioned transpression: Sanderson & Marchini 1984, Fossen & Tikoff 1993. Late"
-        " cleavage records the last part of the shear only."
+        "Rotation: folds start at 45° to the fault and turn as lines in simple shear, and cleavage follows the finite"
+        " strain (Ramsay & Huber 1983). Partitioned transpression: faults take up the wrench, and no transection is"
+        " left (Tikoff & Teyssier 1994). Unpartitioned transpression: Sanderson & Marchini 1984, Fossen & Tikoff"
+        " 1993. Late cleavage records the last part of the shear only."
     ),
     (
         "Each is held against fold-fault angle and transection together, with the covariance of the two. Rotation and"

@@ -14,10 +14,10 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 
 from analysis.errors import SettingError
+from analysis.files.atomic import whole_file
 from analysis.fold.records import Verdict
 from analysis.fold.words import figure_line, headline
 from analysis.report.placing import Box
-from analysis.report.whole import written_whole
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -214,8 +214,8 @@ def save(figure: Figure, path: str | os.PathLike[str]) -> None:
             where=os.fspath(path),
             expected="a name that ends in .png or .svg",
         )
-    with house_style(), written_whole(path) as stream:
+    with house_style(), whole_file(path) as draft:
         if suffix == ".svg":
-            figure.savefig(stream, format="svg", metadata={"Date": None, "Creator": None})
+            figure.savefig(draft, format="svg", metadata={"Date": None, "Creator": None})
         else:
-            figure.savefig(stream, format="png", dpi=PNG_DPI, metadata={"Software": None})
+            figure.savefig(draft, format="png", dpi=PNG_DPI, metadata={"Software": None})

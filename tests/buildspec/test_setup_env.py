@@ -10,6 +10,8 @@ from pathlib import Path
 
 import pytest
 
+from tests.analysis.report.browser import NAMES as BROWSERS
+
 BUILDSPEC = Path(__file__).resolve().parents[2] / "buildspec"
 
 
@@ -110,6 +112,20 @@ def test_present_library_is_seen_and_absent_one_missed(setup_env):
     assert package("python3", "this", program=sys.executable).is_present()
     assert not absent.is_present()
     assert not no_program.is_present()
+
+
+def test_a_program_that_does_as_well_is_seen(setup_env):
+    """A package is there when any of the programs that do its work is found."""
+    package = setup_env.SystemPackage(
+        "nothing-2", "x", program="no-program-of-this-name", others=(sys.executable,)
+    )
+    assert package.is_present()
+
+
+def test_the_browser_asked_for_is_one_that_the_tests_find(setup_env):
+    """The set-up and the tests of the report know the same browsers."""
+    (package,) = setup_env.BROWSER_PACKAGES
+    assert (package.program, *package.others) == BROWSERS
 
 
 def test_missing_packages_are_named_where_they_may_not_be_installed(setup_env, monkeypatch):

@@ -10,6 +10,8 @@ if TYPE_CHECKING:
     from pathlib import Path
 
 POINTS_PER_MM = 72.0 / 25.4
+SNAPPED_PT = 1.5
+"""Browsers move edges onto whole CSS pixels of 0.75 points: an edge may lie two of them off, points."""
 
 
 def texts(document: bytes | Path) -> list[str]:
@@ -20,12 +22,13 @@ def texts(document: bytes | Path) -> list[str]:
 
 def cut_off(document: bytes | Path, margin_mm: float) -> list[tuple[int, tuple[float, ...]]]:
     """Page and bounds, points, of everything drawn that reaches into a page's margin or beyond its edge."""
-    room = margin_mm * POINTS_PER_MM - 1.0
+    room = margin_mm * POINTS_PER_MM - SNAPPED_PT
     found = []
     with pypdfium2.PdfDocument(document) as pdf:
         for number, page in enumerate(pdf, start=1):
             wide, high = page.get_size()
-            for one in page.get_objects(max_depth=15):
+            # What stands inside a group is measured with the group.
+            for one in page.get_objects(max_depth=1):
                 left, bottom, right, top = one.get_bounds()
                 if left < room or bottom < room or right > wide - room or top > high - room:
                     found.append((number, (left, bottom, right, top)))

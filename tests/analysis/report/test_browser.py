@@ -143,13 +143,13 @@ def test_words_stand_out_from_their_ground(tab, scheme):
 
 
 def test_drawings_follow_the_look(tab):
-    """The rim of a net is drawn dark by day and bright at dusk."""
-    ink = "getComputedStyle(document.querySelector('main figure use')).stroke"
+    """A reading's marker is drawn dark by day and bright at dusk."""
+    ink = "getComputedStyle(document.querySelector('main use:has(> title)')).fill"
     colours = []
     for scheme in ("light", "dark"):
         tab.look(Look(scheme=scheme))
         colours.append(tab.value(ink))
-    assert colours[0] != colours[1]
+    assert colours == ["rgb(22, 25, 29)", "rgb(244, 241, 232)"]
 
 
 def test_markers_can_be_pointed_at(tab):

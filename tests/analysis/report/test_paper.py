@@ -99,9 +99,12 @@ def test_words_of_any_length_and_script_are_set():
     """A word longer than a line is broken, signs that the letters lack are shown as such, markup means nothing."""
     long = "x" * 500
     blocks = (
-        Words(f"{long} **bold** --- <b>"), Points((long, "縞 \U0001f9ed"), title=long, boxed=True),
-        Facts(((long, long),)), Typed(long), Table(long, (Column(long, 1), Column("b", 1)), (Row((long, "\u0627\u0644"), struck=True),)),
-    )  # fmt: skip
+        Words(f"{long} **bold** --- <b>"),
+        Points((long, "縞 \U0001f9ed"), title=long, boxed=True),
+        Facts(((long, long),)),
+        Typed(long),
+        Table(long, (Column(long, 1), Column("b", 1)), (Row((long, "\u0627\u0644"), struck=True),)),
+    )
     made = render_paper(report_of(*blocks))
     whole = " ".join(texts(made))
     assert cut_off(made, LEAST_MARGIN_MM) == []
