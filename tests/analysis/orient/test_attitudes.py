@@ -5,11 +5,13 @@ from __future__ import annotations
 import dataclasses
 import math
 
+import numpy as np
 import pytest
 from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from analysis.errors import AttitudeError
+from analysis.orient import vectors
 from analysis.orient.attitudes import Line, Plane
 from analysis.orient.features import Feature
 
@@ -183,3 +185,27 @@ def test_features_say_whether_they_are_planes_and_their_sign():
     assert [feature for feature in Feature if feature.is_plane] == [Feature.BEDDING, Feature.CLEAVAGE]
     assert [feature.symbol for feature in Feature] == ["S0", "S1", "L01", "h"]
     assert Feature("hinge") is Feature.HINGE
+
+
+# Squares of less than 1e-100 vanish, and with them the length of such a vector in an array.
+PARTS = st.sampled_from([0.0, -0.0, 1.0, -1.0, 1e-100]) | st.floats(-10, 10).filter(
+    lambda part: abs(part) > 1e-100
+)
+
+
+@given(st.lists(PARTS, min_size=3, max_size=3))
+def test_records_agree_with_the_arrays(parts):
+    """A record made from one axis holds what the array functions give for it, also on the rim and at the poles."""
+    axis = np.array(parts)
+    try:
+        unit = vectors.unit(axis)
+    except AttitudeError:
+        with pytest.raises(AttitudeError):
+            Line.from_vector(axis)
+        return
+    line, plane = Line.from_vector(axis), Plane.from_pole(axis)
+    assert np.allclose(line.vector, vectors.lower_hemisphere(unit), atol=1e-12)
+    assert np.allclose(plane.pole, line.vector, atol=1e-12)
+    trend, plunge = vectors.trend_plunge_deg(unit)
+    assert line.plunge_deg == pytest.approx(float(plunge), abs=1e-9)
+    assert abs((line.trend_deg - float(trend) + 180.0) % 360.0 - 180.0) * np.cos(np.radians(plunge)) < 1e-9
