@@ -18,7 +18,7 @@ from analysis.cli.common import (
 )
 from analysis.fold.check import check_fold
 from analysis.fold.settings import CheckSettings
-from analysis.fold.words import figure_line
+from analysis.fold import words
 from analysis.strain.explanations import ExplainSettings, FaultCheck, explain
 from analysis.strain.frame import Sense
 from analysis.strain.observed import Fault
@@ -73,7 +73,10 @@ def explain_command(
     """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = Fault(
-        strike_deg=fault_strike, sense=Sense(sense), zone_width_km=zone_width_km, strike_se_deg=fault_strike_se
+        strike_deg=fault_strike,
+        sense=Sense(sense),
+        zone_width_km=zone_width_km,
+        strike_se_deg=fault_strike_se,
     )
     table = read_files(files, strict=strict)
     done: list[FaultCheck] = []
@@ -105,7 +108,13 @@ def explained(check: FoldCheck, fault: Fault) -> FaultCheck | None:
 
 def text_of(one: FaultCheck, check: FoldCheck) -> str:
     """Write an explanation as readable lines, with the cautions that belong to it."""
-    lines = [one.fold or "(unnamed fold)", f"  {headline(one)}", f"  {figure_line(check)}", ""]
+    lines = [
+        one.fold or "(unnamed fold)",
+        f"  {headline(one)}",
+        f"  {words.headline(check)}",
+        f"  {words.figure_line(check)}",
+        "",
+    ]
     lines += [f"  {_explanation(e)}" for e in one.explanations]
     lines += [
         "",

@@ -22,6 +22,8 @@ from analysis.fold.watch import (
     stream_progress,
 )
 from analysis.fold.words import degrees
+from analysis.orient.features import Feature
+from analysis.stats.moments import COUNT, tensor
 from analysis.stats.watching import watched_multiplier
 
 if TYPE_CHECKING:
@@ -30,6 +32,7 @@ if TYPE_CHECKING:
     from analysis.fold.transection import Transection
     from analysis.orient.vectors import Floats
     from analysis.stats.axes import AxisFit
+    from analysis.stats.sums import RunningSums
 
 # Looked at again and again, so one in a thousand at a look.
 _OUTCROPS_DIFFER_Z: Final = 3.09
@@ -173,7 +176,8 @@ def planes_against_lines(planes: AxisFit, lines: AxisFit) -> tuple[float, bool]:
     It is too much where it passes what the errors of both allow, at all looks together.
     An intersection line lies in the cleavage on either limb, so the limbs do not matter here.
     """
-    if planes.readings < _FEWEST_TO_COMPARE or lines.readings < _FEWEST_TO_COMPARE:
+    few = planes.readings < _FEWEST_TO_COMPARE or lines.readings < _FEWEST_TO_COMPARE
+    if few or not (np.isfinite(planes.covariance).all() and np.isfinite(lines.covariance).all()):
         return 0.0, False
     sine = float(planes.vector @ lines.vector)
     pulls = (planes.across.T @ lines.vector, lines.across.T @ planes.vector)
@@ -184,6 +188,21 @@ def planes_against_lines(planes: AxisFit, lines: AxisFit) -> tuple[float, bool]:
     looks = float(stream_progress(planes.readings, lines.readings))
     limit = watched_multiplier(looks, planes.freedom + lines.freedom, _STREAMS_DIFFER_CONFIDENCE)
     return float(np.degrees(np.arcsin(abs(sine)))), bool(abs(sine) > limit * variance**0.5)
+
+
+def lines_furthest_off(planes: AxisFit, sums: RunningSums) -> str:
+    """Say at which outcrop the intersection lines leave the mean cleavage plane furthest, by their mean square."""
+    rows = sums.by_outcrop(Feature.INTERSECTION)
+    held = rows[:, COUNT] > 0.5
+    squares = np.einsum("i,oij,j->o", planes.vector, tensor(rows), planes.vector)
+    off = np.sqrt(np.maximum(squares, 0.0) / np.maximum(rows[:, COUNT], 1.0))
+    worst = int(np.argmax(np.where(held, off, -1.0)))
+    if np.count_nonzero(held) < 2 or not sums.outcrops[worst]:
+        return "Read both again side by side."
+    return (
+        f"The lines at outcrop {sums.outcrops[worst]} are furthest off, by {degrees(float(np.degrees(off[worst])))}: "
+        "read both again there."
+    )
 
 
 def too_steep_for_lines(hinge: Floats, line: Floats) -> str:

@@ -86,7 +86,11 @@ def check_fold(
         pole = _estimate(fit_cleavage(rows.cleavage, rows.intersection), "planes", settings)
     beds = None if hinge is None or not counts.bedding else _beds(sums, hinge.fit, pole)
     lines = fit_lines(rows.intersection) if counts.intersection else None
-    by_planes, by_lines = _transections(rows, hinge, pole)
+    planes = None
+    if pole is not None:
+        # Where lines were read too, the planes by themselves are held against the lines.
+        planes = pole.fit if lines is None else fit_cleavage(rows.cleavage)
+    found, by_planes, by_lines = _transections(rows, hinge, pole, planes)
     check = FoldCheck(
         fold=fold,
         settings=settings,
@@ -103,7 +107,7 @@ def check_fold(
         ),
     )
     return decide(
-        check, sums, by_planes or by_lines, _warnings(rows, check, beds, lines), lines, forecast=forecast
+        check, sums, found, _warnings(rows, check, beds, lines), planes=planes, lines=lines, forecast=forecast
     )
 
 
@@ -168,18 +172,20 @@ def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> t
 
 
 def _transections(
-    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None
-) -> tuple[Transection | None, Transection | None]:
-    """Transection from cleavage planes with the lines in them, and from measured lines alone."""
+    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None, planes: AxisFit | None
+) -> tuple[Transection | None, Transection | None, Transection | None]:
+    """Transection from all there is, from cleavage planes alone, and from measured lines alone."""
     if hinge is None:
-        return None, None
-    by_planes = by_lines = None
-    if pole is not None:
-        by_planes = transection(hinge.fit, pole.fit, rows)
+        return None, None, None
+    found = by_planes = by_lines = None
     if rows.intersection[:, COUNT].any():
         alone = fit_cleavage_to_lines(rows.intersection)
-        by_lines = transection(hinge.fit, alone, (rows.bedding, rows.hinge, rows.intersection))
-    return by_planes, by_lines
+        found = by_lines = transection(hinge.fit, alone, (rows.bedding, rows.hinge, rows.intersection))
+    if pole is not None and planes is not None:
+        found = by_planes = transection(hinge.fit, pole.fit, rows)
+        if planes is not pole.fit:
+            by_planes = transection(hinge.fit, planes, (rows.bedding, rows.hinge, rows.cleavage))
+    return found, by_planes, by_lines
 
 
 def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit | None) -> list[str]:

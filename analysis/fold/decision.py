@@ -10,7 +10,7 @@ from analysis.fold import blocks
 from analysis.fold.advice import next_reading
 from analysis.fold.forecast import settle, split
 from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers
-from analysis.fold.transection import FEWEST_CLUSTERS, Transection, fit_cleavage
+from analysis.fold.transection import FEWEST_CLUSTERS, Transection
 from analysis.fold.watch import (
     LINES_AT_FIRST_LOOK,
     PLANES_AT_FIRST_LOOK,
@@ -34,11 +34,15 @@ def decide(
     sums: RunningSums,
     transection: Transection | None,
     warnings: list[str],
-    lines: AxisFit | None,
     *,
+    planes: AxisFit | None,
+    lines: AxisFit | None,
     forecast: bool,
 ) -> FoldCheck:
-    """Complete a check with its figures, its verdict and, if asked, its forecast."""
+    """Complete a check with its figures, its verdict and, if asked, its forecast.
+
+    `planes` and `lines` are the fits of cleavage planes and of intersection lines each by themselves.
+    """
     counts, settings = check.readings, check.settings
     waiting = [s for s in (blocks.missing_for_hinge(counts), blocks.missing_for_cleavage(counts)) if s]
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
@@ -48,7 +52,7 @@ def decide(
 
     clear = bool(hinge_is_clear(check.hinge.fit))
     cluster = blocks.one_cluster(check.hinge.fit, check.limbs)
-    waits, blocked, notes = _kept_back(check, sums, transection, lines)
+    waits, blocked, notes = _kept_back(check, sums, transection, planes, lines)
     waiting += waits
     progress = (
         stream_progress(counts.bedding, counts.hinge),
@@ -173,7 +177,11 @@ def _within_90(low: float, high: float) -> tuple[float, float]:
 
 
 def _kept_back(
-    check: FoldCheck, sums: RunningSums, transection: Transection, lines: AxisFit | None
+    check: FoldCheck,
+    sums: RunningSums,
+    transection: Transection,
+    planes: AxisFit | None,
+    lines: AxisFit | None,
 ) -> tuple[list[str], list[str], list[str]]:
     """Sentences on what to wait for, what blocks, and what else to mind."""
     assert check.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
@@ -192,13 +200,12 @@ def _kept_back(
     if check.cleavage is None and lines is not None:
         steep = blocks.too_steep_for_lines(check.hinge.vector, lines.vector)
         blocked.append(steep or blocks.flat_by_lines(transection))
-    if check.cleavage is not None and lines is not None:
-        planes = fit_cleavage(sums.by_outcrop(Feature.CLEAVAGE))
+    if planes is not None and lines is not None:
         angle, differ = blocks.planes_against_lines(planes, lines)
         if differ:
             blocked.append(
-                f"Cleavage planes and intersection lines disagree: the mean line leaves the mean plane by "
-                f"{degrees(angle)}, more than their errors allow. Read both again at one outcrop."
+                "Cleavage planes and intersection lines disagree: the mean line leaves the mean plane by "
+                f"{degrees(angle)}, more than their errors allow. {blocks.lines_furthest_off(planes, sums)}"
             )
     if not transection.has_sense:
         notes.append(
@@ -230,9 +237,10 @@ def _why_transected(check: FoldCheck, transection: Transection) -> tuple[str, ..
 
 
 def _why_axial_planar(check: FoldCheck, transection: Transection) -> tuple[str, ...]:
+    alpha = 1.0 - check.settings.confidence
     why = (
-        f"Two one-sided tests at {100.0 * (1.0 - check.settings.confidence):g}%, valid at all looks together, put the "
-        f"transection within ±{degrees(check.settings.margin_deg)}."
+        f"Two one-sided tests at {100.0 * alpha:.3g}%, valid at all looks together, put the transection within "
+        f"±{degrees(check.settings.margin_deg)}: their {100.0 * (1.0 - 2.0 * alpha):.3g}% interval lies inside."
     )
     return why, _scale(transection)
 

@@ -81,10 +81,10 @@ def figure_line(check: FoldCheck) -> str:
     if check.transection_deg is None or check.interval_deg is None:
         return check.because[0] if check.because else "No readings yet."
     signed = check.sense != "unsigned"
-    return (
-        f"{against_hinge(check.transection_deg, signed=signed)}, "
-        f"{between(*check.interval_deg, signed=signed)}"
-    )
+    interval = between(*check.interval_deg, signed=signed)
+    if check.verdict is Verdict.TRANSECTED:  # the headline has the figure
+        return f"{interval}, at {100.0 * check.settings.confidence:g}% confidence"
+    return f"{against_hinge(check.transection_deg, signed=signed)}, {interval}"
 
 
 def more(readings: MoreReadings) -> str:

@@ -96,7 +96,7 @@ def test_headlines_of_the_four_states(draw_sums):
     transected = check_fold(draw_sums(FoldDesign(transection_deg=-15.0), bedding=40, cleavage=40))
     assert re.fullmatch(r"Transected: cleavage \d+° anticlockwise of the hinge", headline(transected))
     assert re.fullmatch(
-        r"cleavage \d+° anticlockwise of the hinge, between [\d.]+° and \d+° anticlockwise",
+        r"between [\d.]+° and \d+° anticlockwise, at 95% confidence",
         figure_line(transected),
     )
     planar = check_fold(draw_sums(FoldDesign(), bedding=300, cleavage=300))
