@@ -16,9 +16,9 @@ from analysis.cli.common import (
     strict_option,
     sums_of_table,
 )
+from analysis.fold import words
 from analysis.fold.check import check_fold
 from analysis.fold.settings import CheckSettings
-from analysis.fold import words
 from analysis.strain.explanations import ExplainSettings, FaultCheck, explain
 from analysis.strain.frame import Sense
 from analysis.strain.observed import Fault
