@@ -14,8 +14,7 @@ import numpy as np
 
 from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge
 from analysis.orient.features import Feature
-from analysis.orient.vectors import axis_angle_deg
-from analysis.stats.moments import WIDTH, moments
+from analysis.stats.moments import WIDTH, row_of_tensor
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -29,7 +28,6 @@ _ROUNDS: Final = 5
 _LEAST_SCATTER_DEG: Final = 1.0  # readings are rounded to whole degrees
 _FALSE_ALARMS: Final = 0.05  # per feature and fold, over all its readings
 _AT_LEAST: Final = 3.5  # scatters of a plane or line off its plane, however few readings there are
-_CHUNK: Final = 65_536
 
 
 class Outlier(NamedTuple):
@@ -95,8 +93,8 @@ def _beyond(
     n = len(axes)
     if n < _FEWEST:
         return []
-    angle = axis_angle_deg(axes, axis)
-    off = angle if off_axis else 90.0 - angle
+    along = np.minimum(np.abs(axes @ axis), 1.0)
+    off = np.degrees(np.arccos(along) if off_axis else np.arcsin(along))
     # The median of a normal residual is 0.6745 and that of the length of two of them 1.1774 standard deviations.
     scatter = max(float(np.median(off[kept[feature]])) / (1.1774 if off_axis else 0.6745), _LEAST_SCATTER_DEG)
     by_chance = (
@@ -109,10 +107,8 @@ def _beyond(
 
 
 def _summed(axes: Floats) -> Floats:
-    total = _none()
-    for start in range(0, len(axes), _CHUNK):
-        total += moments(axes[start : start + _CHUNK]).sum(axis=0)
-    return total
+    # An axis is fitted to tensors; the fourth moments, which give its error, are not asked for here.
+    return row_of_tensor(len(axes), axes.T @ axes)[np.newaxis]
 
 
 def _none() -> Floats:

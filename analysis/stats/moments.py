@@ -28,6 +28,7 @@ _TENSOR: Final = slice(3, 9)
 _FOURTH: Final = slice(9, 24)
 WIDTH: Final = 24
 
+_ONE: Final = 1.0
 # The six products x_i x_j and the fifteen products of four components, each in one fixed order.
 _PAIRS: Final = ((0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2))
 _QUADS: Final = tuple(combinations_with_replacement(range(3), 4))
@@ -43,7 +44,7 @@ _FOURTH_AT: Final = _QUAD_AT + 9
 _TWICE: Final = np.array([1.0, 1.0, 1.0, 2.0, 2.0, 2.0])
 
 
-def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = 1.0) -> Floats:
+def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = _ONE) -> Floats:
     """One row of moments, shape (..., 24), for each axis, shape (..., 3); weights broadcast to (...)."""
     x = np.asarray(vectors, dtype=float)
     w = np.broadcast_to(np.asarray(weights, dtype=float), x.shape[:-1])
@@ -52,10 +53,20 @@ def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = 1.0) -> Floats:
     rows[..., COUNT] = 1.0
     rows[..., WEIGHT] = w
     rows[..., WEIGHT_SQUARED] = w * w
-    rows[..., _TENSOR] = pairs * w[..., np.newaxis]
-    rows[..., _FOURTH] = pairs[..., _QUAD_FROM[:, 0]] * pairs[..., _QUAD_FROM[:, 1]]
-    rows[..., _FOURTH] *= (w * w)[..., np.newaxis]
+    rows[..., _TENSOR] = pairs
+    np.multiply(pairs[..., _QUAD_FROM[:, 0]], pairs[..., _QUAD_FROM[:, 1]], out=rows[..., _FOURTH])
+    if weights is not _ONE:
+        rows[..., _TENSOR] *= w[..., np.newaxis]
+        rows[..., _FOURTH] *= (w * w)[..., np.newaxis]
     return rows
+
+
+def row_of_tensor(count: float, tensor_sum: Floats) -> Floats:
+    """One row, shape (24,), of so many axes of weight 1 with this sum of x x^T, (3, 3); its fourth moments are 0."""
+    row = np.zeros(WIDTH)
+    row[[COUNT, WEIGHT, WEIGHT_SQUARED]] = count
+    row[_TENSOR] = tensor_sum[_PAIR_I, _PAIR_J]
+    return row
 
 
 def tensor(rows: Floats) -> Floats:

@@ -27,6 +27,7 @@ FEATURES: Final = tuple(Feature)
 _CODE: Final = {feature: code for code, feature in enumerate(FEATURES)}
 _BEDDING: Final = _CODE[Feature.BEDDING]
 _NOT_UNIT: Final = 1e-6  # how far the squared length of an axis may be off one
+_TABLE_AT_MOST: Final = 2**21  # keys that a table is made for
 _CHUNK: Final = 65_536  # axes whose moments are in memory at a time
 
 # Cells of attitude: bands of pole plunge, each cut into sectors of azimuth, about 10 degrees wide.
@@ -122,13 +123,17 @@ class RunningSums:
             rows = moments(vectors[part])
             codes = np.asarray(feature_codes[part], dtype=np.int64)
             slots = slot_of[np.asarray(outcrop_codes[part], dtype=np.int64)]
-            size = len(self._rows) * kinds
-            self._rows += grouped(rows, slots * kinds + codes, size).reshape(self._rows.shape)
             beds = codes == _BEDDING
-            keys, inverse = np.unique(slots[beds] * CELLS + cell_of(vectors[part][beds]), return_inverse=True)
-            sums = grouped(rows[beds], inverse, len(keys))
-            places = [self._cell_slot(int(key) // CELLS, int(key) % CELLS) for key in keys]
-            self._cell_rows[places] += sums
+            keys = (slots * kinds + codes) * CELLS
+            keys[beds] += cell_of(vectors[part][beds])
+            held, places = _compact(keys, len(self._rows) * kinds * CELLS)
+            sums = grouped(rows, places, len(held))
+            groups, starts = np.unique(held // CELLS, return_index=True)
+            self._rows.reshape(-1, WIDTH)[groups] += np.add.reduceat(sums, starts)
+            of_beds = held // CELLS % kinds == _BEDDING
+            owners, cells = held[of_beds] // CELLS // kinds, held[of_beds] % CELLS
+            at = [self._cell_slot(*pair) for pair in zip(owners.tolist(), cells.tolist(), strict=True)]
+            self._cell_rows[at] += sums[of_beds]
 
     def _change(self, feature: Feature, outcrop: str, vectors: npt.ArrayLike, sign: float) -> None:
         axes = np.atleast_2d(np.asarray(vectors, dtype=float))
@@ -232,6 +237,18 @@ def _clear_if_empty(row: Floats) -> None:
     # What is left of a row whose last reading was taken back is rounding, not data.
     if abs(row[COUNT]) < 0.5:
         row[:] = 0.0
+
+
+def _compact(keys: npt.NDArray[np.int64], size: int) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.int64]]:
+    """Keys that occur, ascending, and for each of `keys` (N,), 0 <= key < size, its place among them."""
+    if size > _TABLE_AT_MOST:
+        held, places = np.unique(keys, return_inverse=True)
+        return held, places
+    # A table of all keys finds the places without sorting.
+    held = np.flatnonzero(np.bincount(keys))
+    table = np.zeros(size, dtype=np.int64)
+    table[held] = np.arange(len(held))
+    return held, table[keys]
 
 
 def grouped(rows: Floats, keys: npt.NDArray[np.integer], size: int) -> Floats:
