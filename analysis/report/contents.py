@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Final
 from analysis.fold.words import between, degrees, turned
 from analysis.orient.features import Feature
 from analysis.report import method_words
-from analysis.report.blocks import Column, Facts, Points, Report, Row, Section, Table, Typed, Words, cut
+from analysis.report.blocks import Column, Points, Report, Row, Section, Table, Typed, Words, cut
 from analysis.report.campaign import UNNAMED
 from analysis.report.fault_words import fault_section
 from analysis.report.fold_words import fold_section, share
@@ -71,7 +71,7 @@ def _summary(campaign: Campaign) -> Section:
             Column("Verdict", 14),
             Column("Transection", 16),
             Column("Interval", 20),
-            *(Column(LETTERS[feature], 5, figures=True) for feature in Feature),
+            *(Column(LETTERS[feature], 6.5, figures=True) for feature in Feature),
             Column("Outcrops", 10, figures=True),
         )
         letters = ", ".join(f"{LETTERS[feature]} {NAMES[feature]}" for feature in Feature)
@@ -141,4 +141,4 @@ def _repeat(campaign: Campaign) -> Iterator[Block]:
     )
     rows = tuple(Row((file.name, str(file.standing), file.sha256)) for file in campaign.files)
     yield Table("The files read. The same content has the same SHA-256.", columns, rows)
-    yield Facts(campaign.versions)
+    yield Words(f"Made with {', '.join(f'{name} {release}' for name, release in campaign.versions)}.")

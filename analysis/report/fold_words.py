@@ -65,6 +65,8 @@ def fold_section(part: FoldPart, anchor: str) -> Section:
         f"The transection against the number of readings, with the {share(check.settings.confidence)} interval that"
         f" holds at every look, and the band of ±{degrees(check.settings.margin_deg)}."
     )
+    if len(part.history) < len(part.table):
+        caption += f" Looked at {len(part.history)} times on the way to {len(part.table)} readings."
     blocks.append(Picture(funnel, caption, _funnel_seen(part)))
     parts = [
         Section(f"{anchor}-limbs", "Limb against limb", tuple(_limbs(check, anchor))),
@@ -177,7 +179,8 @@ def _limbs(check: FoldCheck, anchor: str) -> Iterator[Block]:
     rows = []
     for limb in check.limbs.both:
         line = lines.get(limb.name)
-        measured = "none"
+        # Lines count for a limb only where their outcrop lies on that limb alone.
+        measured = "none on it alone" if check.readings.intersection else "none"
         if line is not None and line.measured is not None:
             measured = f"{line_text(line.measured)} (n = {line.measured_count})"
         computed = "" if line is None else line_text(line.computed)

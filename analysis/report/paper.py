@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final
 
 from analysis import __version__
+from analysis.report.blocks import Picture, Table
 from analysis.report.page import library
 from analysis.report.palette import LIGHT
 
@@ -23,11 +24,9 @@ if TYPE_CHECKING:
     from analysis.report.blocks import (
         Block,
         Facts,
-        Picture,
         Points,
         Report,
         Section,
-        Table,
         Typed,
         Verdict,
         Words,
@@ -45,6 +44,7 @@ _BESIDE_MM: Final = 15.0
 _ABSENT: Final = "□"
 _FIXED_DATE: Final = datetime(2000, 1, 1, tzinfo=UTC)
 """The same readings give the same file: it does not tell when it was made."""
+_SMALL_TABLE_ROWS: Final = 12  # rows up to which a table stands on one page
 _FACT_SHARE: Final = 0.22
 
 
@@ -149,7 +149,7 @@ class _Setting:
             self.section(part, level + 1)
 
     def _block(self, block: Block) -> None:
-        self._keep(min(self._height_of(block), 60.0) if block.kind != "picture" else self._height_of(block))
+        self._keep(self._height_of(block))
         makers: dict[str, Callable[[Any], None]] = {
             "words": self._words,
             "points": self._points,
@@ -333,9 +333,11 @@ class _Setting:
 
     def _height_of(self, block: Block) -> float:
         """About the height of a block that has to stand together."""
-        if block.kind == "picture":
-            return self._size_of(block)[1] + 12.0  # type: ignore[arg-type]  # told by its kind
-        return {"verdict": 26.0, "table": 28.0, "facts": 14.0}.get(block.kind, 14.0)
+        if isinstance(block, Picture):
+            return self._size_of(block)[1] + 12.0
+        if isinstance(block, Table) and len(block.rows) <= _SMALL_TABLE_ROWS:
+            return 16.0 + 5.5 * len(block.rows)
+        return {"verdict": 26.0, "table": 28.0}.get(block.kind, 14.0)
 
     def _keep(self, high: float) -> None:
         """Go on to the next page where what follows would be torn apart."""
