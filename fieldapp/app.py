@@ -8,6 +8,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 from datetime import UTC, datetime
 from pathlib import Path
@@ -31,6 +32,7 @@ from kivy.core.window import Window
 from kivy.metrics import Metrics
 from kivy.properties import BooleanProperty, ObjectProperty
 
+from fieldapp.devices.insets import NO_INSETS, Insets, read_insets
 from fieldapp.leaves.keyboard import Keyboard
 from fieldapp.leaves.log import LogLeaf
 from fieldapp.leaves.outline import Outline
@@ -97,6 +99,8 @@ class HingewiseApp(App):
         self._stop_listening: list[Callable[[], None]] = []
         self._stands = False  # whether the first frame was drawn
         self._held: list[Callable[[], None]] = []
+        self._insets = NO_INSETS
+        self.read_insets: Callable[[], Insets] = read_insets
 
     # Coming and going
 
@@ -110,7 +114,9 @@ class HingewiseApp(App):
         self.outline = Outline(self._make_leaf)
         self.outline.form = self.form
         self._keyboard = Keyboard(self)
+        Window.softinput_mode = "below_target"  # the field that is typed into stays in sight
         Window.bind(size=self._window_changed, on_key_down=self._keyboard.key_down)
+        Window.bind(on_memorywarning=self.on_memory_low)
         Metrics.bind(density=self._window_changed, fontscale=self._window_changed)
         self.outline.refresh(EVERYTHING)
         Window.bind(on_flip=self._first_frame_drawn)
@@ -127,6 +133,7 @@ class HingewiseApp(App):
 
     def _do_the_rest(self, _dt: float) -> None:
         self._stands = True
+        self._fit_to_bars()
         held, self._held = self._held, []
         for call in held:
             call()
@@ -138,17 +145,42 @@ class HingewiseApp(App):
         return True
 
     def on_resume(self) -> None:
-        """Come back: textures may be gone with the GL context."""
+        """Come back: textures may be gone with the GL context, and are then made anew."""
+        from kivy.graphics.context import get_context
+
         from fieldapp.drawing.paint import PAINTS
 
-        PAINTS.forget_words()
+        if PAINTS.were_lost():
+            get_context().reload()
         self._start_devices()
+        self._fit_to_bars()
         self.outline.refresh(EVERYTHING)
+
+    def on_memory_low(self, *_: object) -> None:
+        """The system runs short of memory and may end the app: store what is stored later otherwise, and give back."""
+        self.page.flush()
+        gc.collect()
+
+    def go_back(self) -> bool:
+        """Do what the back key asks: close what lies over the page, or return to the Log leaf.
+
+        False where there is nothing to go back from; the system then takes the app from the screen. The entry
+        stays as it is in every case.
+        """
+        if self.outline.sheet is not None:
+            if self.outline.sheet.closable:
+                self.outline.sheet.close()
+            return True
+        if "Log" not in self.outline.names_shown:
+            self.outline.show("Log")
+            return True
+        return False
 
     def on_stop(self) -> None:
         """Close the notebook."""
         self._stop_devices()
         Window.unbind(size=self._window_changed, on_key_down=self._keyboard.key_down)
+        Window.unbind(on_memorywarning=self.on_memory_low)
         Metrics.unbind(density=self._window_changed, fontscale=self._window_changed)
         self._close()
 
@@ -251,11 +283,22 @@ class HingewiseApp(App):
 
     def _form_now(self) -> Form:
         density = Metrics.density
-        width, height = Window.size
+        width, height = self._insets.inside(*Window.size)
         bars = 0 if self.outline is None else self.outline.bars
         return Form(width / density, height / density, Metrics.fontscale, bars)
 
     def _window_changed(self, *_: object) -> None:
+        self._fit_to_bars()
+        self.fit()
+
+    def _fit_to_bars(self) -> None:
+        """Keep the page clear of the bars and the notch that the system lays over the window."""
+        if self.outline is None:
+            return
+        self._insets = self.read_insets() if self._stands else self._insets
+        self.outline.size_hint = (None, None)
+        self.outline.size = self._insets.inside(*Window.size)
+        self.outline.pos = (self._insets.left_px, self._insets.bottom_px)
         self.fit()
 
     def fit(self) -> None:

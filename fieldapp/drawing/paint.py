@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from kivy.core.text import Label as CoreLabel
 from kivy.graphics import Color, InstructionGroup, Mesh, Rectangle
+from kivy.graphics.opengl import glIsTexture
 from kivy.graphics.texture import Texture
 from kivy.metrics import dp
 
@@ -62,7 +63,8 @@ class Paints:
     def __init__(self) -> None:
         self._edge: Texture | None = None
         self._markers: dict[tuple[str, int], Texture] = {}
-        self._words: dict[tuple[str, float, bool], Texture] = {}
+        # A label that lives fills its texture anew where the GL context was lost.
+        self._words: dict[tuple[str, float, bool], CoreLabel] = {}
         self._cards: dict[tuple[object, ...], Texture] = {}
 
     def card(self, radius: int, line: float, outline: Rgba, ground: Rgba) -> Texture:
@@ -103,20 +105,20 @@ class Paints:
     def words(self, text: str, size_px: float, *, bold: bool = False) -> Texture:
         """The texture of a line of white words, to be tinted by the colour before it."""
         key = (text, size_px, bold)
-        texture = self._words.get(key)
-        if texture is None:
+        label = self._words.get(key)
+        if label is None:
             if len(self._words) > MOST_WORDS:
                 self._words.clear()
             label = CoreLabel(
                 text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1)
             )
             label.refresh()
-            texture = self._words[key] = label.texture
-        return texture
+            self._words[key] = label
+        return label.texture
 
-    def forget_words(self) -> None:
-        """Make the words anew, after the GL context was lost."""
-        self._words.clear()
+    def were_lost(self) -> bool:
+        """Whether the textures are gone with the GL context, as may happen while the app is in the background."""
+        return not glIsTexture(self.edge().id)
 
 
 PAINTS = Paints()

@@ -6,6 +6,8 @@ from typing import TYPE_CHECKING
 
 from kivy.core.window import Keyboard as KivyKeyboard
 
+from fieldapp.devices.choose import is_field_build
+
 if TYPE_CHECKING:
     from fieldapp.app import HingewiseApp
 
@@ -29,11 +31,14 @@ class Keyboard:
         outline = self._app.outline
         if outline is None:
             return False
+        if code in ESCAPE and is_field_build():
+            return self._app.go_back()  # Android's back key has the code of Esc, and must not clear the entry
         if outline.sheet is not None:
             return self._key_on_sheet(code)
-        if "Log" not in outline.names_shown:
-            return False
-        log = outline.leaf("Log")
+        return "Log" in outline.names_shown and self._key_on_log(code)
+
+    def _key_on_log(self, code: int) -> bool:
+        log = self._app.outline.leaf("Log")
         if code in DIGITS:
             log.sign(DIGITS[code])
         elif code in POINTS:

@@ -109,7 +109,10 @@ class Sheet(FloatLayout):
         return self
 
     def close(self, *_: object) -> None:
-        """Take the sheet away."""
+        """Take the sheet away, and with it the device's keyboard."""
+        for widget in self.walk(restrict=True):
+            if getattr(widget, "focus", False):
+                widget.focus = False
         if self.parent is not None:
             self.parent.remove_widget(self)
 

@@ -1,0 +1,243 @@
+"""What a phone or tablet does to an app: pause, back key, turning, bars, lost textures, low memory, the end."""
+
+# ruff: noqa: PLC0415 - importing Kivy opens a window, so it is imported inside fixtures and functions.
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from mossgarth import fold, type_into
+
+BACK = 27  # the code that Kivy gives to Android's back key, the same as of Esc
+
+
+@pytest.fixture
+def android(driver, monkeypatch):
+    """The app, made to believe from now on that python-for-android started it."""
+    monkeypatch.setenv("ANDROID_ARGUMENT", "app")
+    return driver
+
+
+def type_digits(driver, digits):
+    """Type digits on the keys of the Log leaf."""
+    log = driver.app.outline.leaf("Log")
+    for digit in digits:
+        driver.press(log.pad.keys[digit])
+
+
+def entry_of(page):
+    """What stands in the entry."""
+    return page.entry.azimuth_text, page.entry.inclination_text
+
+
+def pixels(driver):
+    """The window as it is drawn: height, width, red green blue."""
+    from kivy.graphics.opengl import GL_RGBA, GL_UNSIGNED_BYTE, glReadPixels
+
+    driver.frames(5)
+    driver.app._executor.submit(int).result()  # one worker: what was asked of it before is done
+    driver.frames(25)
+    width, height = driver.window.size
+    data = glReadPixels(0, 0, width, height, GL_RGBA, GL_UNSIGNED_BYTE)
+    return np.frombuffer(data, np.uint8).reshape(height, width, 4)[:, :, :3].astype(int)
+
+
+def share_that_differs(one, other):
+    """Share of the pixels that differ visibly."""
+    apart = np.abs(one - other)[:, :-8]  # at the right edge a scroll bar fades as time passes
+    return float((apart.max(axis=2) > 8).mean())
+
+
+def spoil_textures():
+    """Empty every texture of the window, as when its GL context is lost."""
+    from kivy.graphics import opengl as gl
+
+    found = [number for number in range(1, 5000) if gl.glIsTexture(number)]
+    assert found
+    for number in found:
+        gl.glBindTexture(gl.GL_TEXTURE_2D, number)
+        gl.glTexImage2D(gl.GL_TEXTURE_2D, 0, gl.GL_RGBA, 1, 1, 0, gl.GL_RGBA, gl.GL_UNSIGNED_BYTE, bytes(4))
+
+
+@pytest.fixture
+def counting():
+    """Devices whose receiver counts how often it was switched on and off."""
+    from dataclasses import replace
+
+    from fieldapp.devices.ports import PortState, Status
+    from fieldapp.devices.unavailable import UnavailablePosition, unavailable_devices
+
+    class CountingPosition(UnavailablePosition):
+        def __init__(self):
+            self._status, self.calls = Status(PortState.OFF), []
+
+        def start(self):
+            self.calls.append("start")
+
+        def stop(self):
+            self.calls.append("stop")
+
+    return replace(unavailable_devices(), position=CountingPosition())
+
+
+def test_back_closes_a_sheet_then_leaves_the_leaf_and_never_touches_the_entry(android):
+    """The back key goes one step back; on the Log leaf it is left to the system, and digits stay typed."""
+    driver = android
+    type_digits(driver, "0453")
+    outline, page = driver.app.outline, driver.app.page
+    driver.app.open_sheet("settings")
+    outline.show("Check")
+    driver.frames(2)
+    key_down = driver.window.dispatch
+    assert key_down("on_key_down", BACK, 0, None, [])
+    assert outline.sheet is None
+    assert outline.shown == "Check"
+    assert key_down("on_key_down", BACK, 0, None, [])
+    assert outline.shown == "Log"
+    assert not key_down("on_key_down", BACK, 0, None, [])
+    assert entry_of(page) == ("045", "3")
+
+
+def test_esc_of_a_keyboard_still_clears_the_entry_at_a_desk(driver):
+    """Where there is no back key the same code is Esc and clears."""
+    type_digits(driver, "0453")
+    driver.type_key("escape")
+    assert entry_of(driver.app.page) == ("", "")
+
+
+def test_pause_stops_the_receiver_and_stores_the_entry_and_resume_goes_on(
+    open_app, counting, tmp_path, clock
+):
+    """While the app is away nothing listens; what was typed is on disk; coming back starts the receiver again."""
+    from fieldapp.dispatch import at_once
+    from fieldapp.outcrop import open_page
+
+    devices = counting
+    driver = open_app(devices=devices)
+    driver.frames(3)
+    assert devices.position.calls == ["start"]
+    type_digits(driver, "0453")
+    assert driver.app.dispatch("on_pause") is True
+    assert devices.position.calls == ["start", "stop"]
+    other = open_page(tmp_path / "notebook.db", clock=clock, dispatch=at_once)
+    assert entry_of(other) == ("045", "3")
+    other.close()
+    driver.app.dispatch("on_resume")
+    assert devices.position.calls == ["start", "stop", "start"]
+    type_digits(driver, "0")
+    assert entry_of(driver.app.page) == ("045", "30")
+
+
+@pytest.mark.parametrize("leaf", ["Log", "Check"])
+def test_lost_textures_are_made_anew_on_resume(driver, clock, leaf, monkeypatch):
+    """When the content of every texture is gone, the page after resuming looks as it did before."""
+    from fieldapp.drawing.paint import PAINTS
+
+    type_into(driver.app.page, fold(20), clock)
+    driver.app.outline.show(leaf)
+    pixels(driver)
+    before = pixels(driver)
+    assert share_that_differs(before, pixels(driver)) == 0.0
+    driver.app.dispatch("on_pause")
+    spoil_textures()
+    monkeypatch.setattr(PAINTS, "were_lost", lambda: True)
+    driver.window.canvas.ask_update()
+    assert share_that_differs(before, pixels(driver)) > 0.005, "the loss must show, or the test shows nothing"
+    driver.app.dispatch("on_resume")
+    pixels(driver)
+    assert share_that_differs(before, pixels(driver)) == 0.0
+
+
+def test_a_lost_context_is_noticed(driver):
+    """A texture that the system no longer knows means that all are lost; after resuming it knows it again."""
+    import struct
+
+    from kivy.graphics.opengl import glDeleteTextures
+
+    from fieldapp.drawing.paint import PAINTS
+
+    driver.frames(2)
+    assert not PAINTS.were_lost()
+    glDeleteTextures(1, struct.pack("=I", PAINTS.edge().id))
+    assert PAINTS.were_lost()
+    driver.app.dispatch("on_resume")
+    assert not PAINTS.were_lost()
+
+
+def test_low_memory_stores_the_entry(driver, tmp_path, clock):
+    """A warning of the system loses nothing, and the page goes on."""
+    from fieldapp.dispatch import at_once
+    from fieldapp.outcrop import open_page
+
+    type_digits(driver, "04530")
+    driver.window.dispatch("on_memorywarning")
+    other = open_page(tmp_path / "notebook.db", clock=clock, dispatch=at_once)
+    assert entry_of(other) == ("045", "30")
+    other.close()
+    driver.press(driver.app.outline.leaf("Log").side.keys["note"])
+    assert driver.app.outline.sheet is not None
+
+
+def test_turning_keeps_the_entry_and_the_leaf(driver):
+    """Portrait, landscape and back: what was typed stands, and the leaf that was shown is shown."""
+    type_digits(driver, "0453")
+    driver.resize(960, 600)
+    assert driver.app.outline.names_shown == ("Log", "Check")
+    driver.resize(600, 960)
+    assert driver.app.outline.names_shown == ("Log",)
+    assert entry_of(driver.app.page) == ("045", "3")
+
+
+def test_the_page_keeps_clear_of_the_bars_of_the_system(driver):
+    """Bars and a notch take their pixels from the page, on each turn anew, and give them back."""
+    from fieldapp.devices.insets import NO_INSETS, Insets
+
+    app, outline = driver.app, driver.app.outline
+    app.read_insets = lambda: Insets(0, 60, 0, 40)
+    app.dispatch("on_resume")
+    driver.frames(3)
+    assert (tuple(outline.pos), tuple(outline.size)) == ((0, 40), (600, 860))
+    assert (app.form.width_dp, app.form.height_dp) == (600, 860)
+    strip = outline.ids.strip
+    assert strip.to_window(strip.x, strip.top)[1] <= 900
+    app.read_insets = lambda: Insets(80, 0, 40, 20)
+    driver.resize(960, 600)
+    assert (tuple(outline.pos), tuple(outline.size)) == ((80, 20), (840, 580))
+    app.open_sheet("settings")
+    driver.frames(3)
+    card = outline.sheet.ids.card
+    assert card.x >= 80
+    assert card.right <= 920
+    app.close_sheets()
+    app.read_insets = lambda: NO_INSETS
+    driver.resize(600, 960)
+    assert (tuple(outline.pos), tuple(outline.size)) == ((0, 0), (600, 960))
+
+
+def test_the_field_typed_into_stays_in_sight_over_the_keyboard(driver):
+    """The window makes room for the device's keyboard below the field, and closing it gives the room back."""
+    assert driver.window.softinput_mode == "below_target"
+    driver.app.open_sheet("note")
+    driver.frames(2)
+    field = driver.app.outline.sheet.fields.ids.note
+    field.focus = True
+    driver.frames(2)
+    assert field.focus
+    driver.app.close_sheets()
+    driver.frames(2)
+    assert not field.focus
+
+
+def test_stopping_twice_or_while_a_sheet_is_open_does_no_harm(open_app, tmp_path, clock):
+    """The system may end the app in any state; the notebook opens again as it was."""
+    driver = open_app()
+    type_digits(driver, "045")
+    driver.app.open_sheet("settings")
+    driver.app.dispatch("on_pause")
+    driver.app.dispatch("on_stop")
+    from fieldapp.dispatch import at_once
+    from fieldapp.outcrop import open_page
+
+    page = open_page(tmp_path / "notebook.db", clock=clock, dispatch=at_once)
+    assert entry_of(page) == ("045", "")
+    page.close()
