@@ -18,6 +18,7 @@ from kivy.properties import NumericProperty, ObjectProperty
 from kivy.uix.widget import Widget
 
 from analysis.orient.features import Feature
+from analysis.orient.forms import azimuth_text, inclination_text
 from fieldapp.drawing import placing, strokes
 from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
 from fieldapp.drawing.scene import PlanOutcrop, PlanPlane, PlanScene
@@ -169,7 +170,7 @@ class PlanSketch(Widget):
         start += length / 2 - azimuth_ray(trend_deg) * length / 2
         parts = arrow(start, trend_deg, length, dp(2.5))
         add_mesh(group, self.theme.ink, parts)
-        text = f"hinge {trend_deg:03.0f}/{plunge_deg:02.0f}"
+        text = f"hinge {azimuth_text(trend_deg)}/{inclination_text(plunge_deg)}"
         words = PAINTS.words(text, sp(self.words_sp), bold=True)
         low = self.top - dp(16) - length * 1.5 - words.height
         self._put(group, "hinge", words, self.theme.ink, self.right - dp(10) - words.width, low)

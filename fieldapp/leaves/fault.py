@@ -16,6 +16,7 @@ from kivy.metrics import dp
 from kivy.properties import ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
 
+from analysis.orient.forms import azimuth_text
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.parts import Choice  # noqa: F401 - the .kv file uses it
 from fieldapp.states import Change
@@ -59,7 +60,7 @@ class FaultLeaf(BoxLayout):
         if not change & (Change.FAULT | Change.CHECK | Change.PLACE):
             return
         fault, check = self.page.fault, self.page.check
-        self.strike = "–" if fault.strike_deg is None else f"{fault.strike_deg:03.0f}°"
+        self.strike = "–" if fault.strike_deg is None else f"{azimuth_text(fault.strike_deg)}°"
         self.width_text = "–" if fault.zone_width_m is None else f"{fault.zone_width_m:g} m"
         self.sense = fault.sense
         if fault.strike_deg is None:
@@ -68,7 +69,9 @@ class FaultLeaf(BoxLayout):
             self.angle = "The angle to the fold comes with the first hinge."
         else:
             angle = fold_fault_angle_deg(check.hinge.line.trend_deg, fault.strike_deg)
-            self.angle = f"Hinge {check.hinge.line.trend_deg:03.0f}°, {angle:.0f}° from the fault in plan"
+            self.angle = (
+                f"Hinge {azimuth_text(check.hinge.line.trend_deg)}°, {angle:.0f}° from the fault in plan"
+            )
         self.show_figures()
 
     def show_figures(self, picture: Widget | None = None) -> None:
