@@ -32,13 +32,12 @@ from fieldapp.entry import EntryDraft, North
 from fieldapp.making import mended_reading, new_reading
 from fieldapp.naming import nearest
 from fieldapp.notebook.opening import open_notebook
-from fieldapp.page.exchange import PageExchange
+from fieldapp.page.faulting import PageFaulting
 from fieldapp.running import check_settings
 from fieldapp.settings import PlaneNotation, Settings
 from fieldapp.states import (
     EVERYTHING,
     Change,
-    FaultInput,
     Message,
     MessageKind,
     NamedReading,
@@ -81,7 +80,7 @@ def open_page(
     )
 
 
-class OutcropPage(PageExchange):
+class OutcropPage(PageFaulting):
     """The page: what it shows as properties, what the geologist does as methods."""
 
     # -- entry ----------------------------------------------------------------------------------------------
@@ -301,7 +300,7 @@ class OutcropPage(PageExchange):
         made = self._notebook.outcrops(fold)
         return of_fold[-1] if of_fold else made[-1] if made else FIRST_OUTCROP
 
-    # -- settings and fault ---------------------------------------------------------------------------------
+    # -- settings -------------------------------------------------------------------------------------------
 
     def change_settings(self, settings: Settings) -> bool:
         """Use other settings from now on; False where they could not be stored (used all the same)."""
@@ -324,15 +323,6 @@ class OutcropPage(PageExchange):
             self._refresh_history()
             self._seek_forecast()
         return stored
-
-    def set_fault(self, fault: FaultInput) -> bool:
-        """Note the fault beside the current fold."""
-        try:
-            self._notebook.set_fault(self._fold, fault)
-        except HingewiseError as error:
-            return self._refuse(Message(str(error), MessageKind.TROUBLE))
-        self._tell(Change.FAULT)
-        return True
 
     # -- message --------------------------------------------------------------------------------------------
 

@@ -13,6 +13,7 @@ if TYPE_CHECKING:
 
     from analysis.orient.features import Feature
     from analysis.orient.vectors import Floats
+    from analysis.strain.curves import FaultCurves
     from fieldapp.settings import PlaneNotation
 
 QUADRANTS = ("N", "NE", "E", "SE", "S", "SW", "W", "NW")
@@ -33,7 +34,7 @@ class Change(Flag):
     SETTINGS = auto()  # page.settings
     MESSAGE = auto()  # page.message
     HAND_OVER = auto()  # page.hand_over
-    FAULT = auto()  # page.fault
+    FAULT = auto()  # page.fault, page.faulting
 
 
 EVERYTHING = ~Change(0)
@@ -317,6 +318,44 @@ class FaultInput:
     strike_deg: float | None = None
     sense: str = "unknown"
     zone_width_m: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """A figure with what it is called and what belongs to it."""
+
+    name: str
+    figure: str
+    more: str
+
+
+@dataclass(frozen=True, slots=True)
+class ExplanationLine:
+    """One explanation: its kind ("rotation", "partitioned", "transpression", "late"), name and figures."""
+
+    kind: str
+    name: str
+    words: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FaultState:
+    """What the folds say of the fault.
+
+    `ask` says what is still needed, and everything else is empty then. `curves` is what the picture shows,
+    `lines` its key with `note` below. The cautions are there wherever an explanation is named.
+    """
+
+    ask: str = ""
+    headline: str = ""
+    angle: str = ""
+    figures: tuple[Told, ...] = ()
+    curves: FaultCurves | None = field(default=None, compare=False)
+    zone_width_km: float | None = None
+    lines: tuple[ExplanationLine, ...] = ()
+    note: str = ""
+    because: tuple[str, ...] = ()
+    cautions: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
