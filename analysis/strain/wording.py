@@ -26,7 +26,7 @@ def with_reasons(check: FaultCheck, settings: ExplainSettings) -> FaultCheck:
 def headline(check: FaultCheck) -> str:
     """The one sentence to put first: can the two be told apart, and if not, what can tell."""
     if check.fold_fault_angle_deg is None:
-        return "A vertical hinge has no trend: no fold-fault angle."
+        return "The hinge has no trend yet that could be held against the fault."
     if check.likelihood_ratio is None:
         return "No transection yet: rotation and partitioning cannot be compared."
     if _neither_fits(check):
@@ -96,17 +96,17 @@ def _rotation(check: FaultCheck) -> Iterator[str]:
         text = "Shear turns folds towards the fault but never brings them to it: rotation needs endless shear"
         if least:
             width = check.fault.zone_width_km
-            along = f", {_two(least * width)} km along the fault" if width is not None else ""
-            text += f" (a shear strain of at least {_two(least)} within the errors{along})"
+            along = f", {two_digits(least * width)} km along the fault" if width is not None else ""
+            text += f" (a shear strain of at least {two_digits(least)} within the errors{along})"
         yield text + "."
         return
     low, high = check.gamma_range or (0.0, None)
-    needs = f"Rotation in simple shear needs a shear strain of {_two(rotation.gamma)} ({_spread(low, high)})"
+    needs = f"Rotation in simple shear needs a shear strain of {two_digits(rotation.gamma)} ({_spread(low, high)})"
     width = check.fault.zone_width_km
     if rotation.displacement_km is not None and width is not None:
         most = _spread((low or 0.0) * width, None if high is None else high * width, " km")
         needs += (
-            f": {_two(rotation.displacement_km)} km along the fault over a zone {width:g} km wide ({most})"
+            f": {two_digits(rotation.displacement_km)} km along the fault over a zone {width:g} km wide ({most})"
         )
     yield needs + "."
 
@@ -169,11 +169,11 @@ def _displacement(check: FaultCheck) -> str:
         return "Look to other evidence: the displacement of markers, lineations, the strain in the beds."
     if rotation.displacement_km is None:
         return (
-            f"What can tell is the displacement: rotation needs {_two(rotation.gamma)} times the width of"
+            f"What can tell is the displacement: rotation needs {two_digits(rotation.gamma)} times the width of"
             " the folded zone. Does the fault have it?"
         )
     return (
-        f"What can tell is the displacement: rotation needs {_two(rotation.displacement_km)} km along the"
+        f"What can tell is the displacement: rotation needs {two_digits(rotation.displacement_km)} km along the"
         " fault. Does it have that?"
     )
 
@@ -183,8 +183,8 @@ def _others(check: FaultCheck) -> Iterator[str]:
     if _neither_fits(check):
         if late.fits and late.gamma is not None and late.gamma_late is not None:
             yield (
-                f"Cleavage that began late fits: it would have recorded the last {_two(late.gamma_late)}"
-                f" of a shear strain of {_two(late.gamma)}."
+                f"Cleavage that began late fits: it would have recorded the last {two_digits(late.gamma_late)}"
+                f" of a shear strain of {two_digits(late.gamma)}."
             )
         if unpartitioned.fits and unpartitioned.convergence_deg is not None:
             yield f"Transpression with a convergence angle near {unpartitioned.convergence_deg:.0f}° fits."
@@ -213,7 +213,7 @@ def _turn(transection_deg: float) -> str:
 
 def _odds(ratio: float) -> str:
     odds = max(ratio, 1.0 / max(ratio, 1e-300))
-    return "more than 1000 to 1" if odds > 1000.0 else f"{_two(odds)} to 1"
+    return "more than 1000 to 1" if odds > 1000.0 else f"{two_digits(odds)} to 1"
 
 
 def _within_reach(check: FaultCheck) -> bool:
@@ -225,11 +225,11 @@ def _neither_fits(check: FaultCheck) -> bool:
 
 
 def _spread(low: float | None, high: float | None, measure: str = "") -> str:
-    least = _two(low or 0.0)
-    return f"{least}{measure} or more" if high is None else f"{least} to {_two(high)}{measure}"
+    least = two_digits(low or 0.0)
+    return f"{least}{measure} or more" if high is None else f"{least} to {two_digits(high)}{measure}"
 
 
-def _two(value: float) -> str:
+def two_digits(value: float) -> str:
     """Two significant digits, never as a power of ten."""
     rounded = float(f"{value:.2g}")
     return f"{rounded:.0f}" if abs(rounded) >= 10.0 else f"{rounded:g}" if abs(rounded) >= 0.001 else "0"
