@@ -23,6 +23,7 @@ class Driver:
         from kivy.core.window import Window
         from kivy.input.motionevent import MotionEvent
         from kivy.input.provider import MotionEventProvider
+        from kivy.lang.parser import global_idmap
 
         from fieldapp.app import HingewiseApp
 
@@ -53,6 +54,9 @@ class Driver:
         self.provider = Fingers()
         EventLoop.add_input_provider(self.provider)
         self.app = HingewiseApp(path, demo=demo, **app_values)
+        # The name `app` in .kv files holds on to the app that was running when it was last used, which may be
+        # the one of the test before, used once more while its widgets were taken away.
+        object.__setattr__(global_idmap["app"], "_obj", None)
         self.app._run_prepare()
         if EventLoop.status != "started":
             runTouchApp(embedded=True)
