@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import gc
 import os
+from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -257,8 +258,33 @@ class HingewiseApp(App):
         )
         self.attendant.start()
         self.has_sensors = self.attendant.has_sensors
-        if self.attendant.wants_seconds:
+        self._listen_each_second()
+        self.explain_position()
+
+    def _listen_each_second(self) -> None:
+        if self._seconds is None and self.attendant.wants_seconds:
             self._seconds = Clock.schedule_interval(self._second, 1.0)
+
+    def explain_position(self) -> None:
+        """Say once what the position is wanted for, before the device asks for it, and over no other sheet."""
+        wants = self.attendant is not None and self.attendant.wants_leave
+        if wants and not self.page.settings.position_explained and self.outline.sheet is None:
+            self.open_sheet("position")
+
+    @property
+    def wants_leave(self) -> bool:
+        """Whether the device's position could be used and has not been allowed."""
+        return self.attendant is not None and self.attendant.wants_leave
+
+    def answer_position(self, *, use: bool) -> None:
+        """Take the answer: let the device ask for its permission, or leave the position to be typed."""
+        self.close_sheets()
+        if not self.wants_leave:
+            return  # a touch on a sheet that scrolls may arrive twice
+        self.page.change_settings(replace(self.page.settings, position_explained=True))
+        if use and self.attendant is not None:
+            self.attendant.use_position()
+            self._listen_each_second()
 
     def _second(self, _dt: float) -> None:
         self.attendant.second()
@@ -324,7 +350,7 @@ class HingewiseApp(App):
         return HandOverLeaf()
 
     def open_sheet(self, name: str, **values: object) -> Sheet:
-        """Lay a sheet over the page: "settings", "place", "readings", "note", "number", "safety" or "help"."""
+        """Lay the sheet of this name, as in `sheets.SHEETS`, over the page."""
         from fieldapp.leaves.sheets import make_sheet
 
         return make_sheet(name, **values).open(self.outline)
@@ -343,12 +369,27 @@ class HingewiseApp(App):
 
     def share(self, path: Path) -> None:
         """Hand a file to the device's own sharing, on a phone or tablet; elsewhere the file stands where it is."""
-        from fieldapp.devices.choose import is_field_build
+        from fieldapp.devices.passing import share_file
 
-        if is_field_build():
-            from plyer import share
+        words = share_file(path)
+        if words:
+            self._tell_mishap(words)
 
-            share.share(path=str(path), title=path.name)
+    def choose_file(self, folder: Path, chosen: Callable[[Path], None]) -> bool:
+        """Let the device's own chooser bring a file into `folder`; False where the app looks round by itself."""
+        from fieldapp.devices.passing import can_choose, choose_file
+
+        if not can_choose():
+            return False
+
+        def done(path: Path | None, words: str) -> None:
+            if path is not None:
+                chosen(path)
+            elif words:
+                self._tell_mishap(words)
+
+        choose_file(folder, mainthread(done))
+        return True
 
     @property
     def outline_trouble(self) -> str:

@@ -61,10 +61,27 @@ class Attendant:
         """The session of a measurement."""
         return self._measuring
 
+    @property
+    def wants_leave(self) -> bool:
+        """Whether the device would ask for the position, which `use_position` lets it do."""
+        return (
+            not self._page.place.demo
+            and not self._receiver.is_running
+            and self._devices.position.status().is_usable
+            and self._devices.position.will_ask()
+        )
+
     def start(self) -> None:
-        """Begin to listen for positions, unless the notebook is the invented one: its places are invented too."""
-        if self._page.place.demo or not self._devices.position.status().is_usable:
+        """Begin to listen for positions, unless the notebook is the invented one: its places are invented too.
+
+        A device that has yet to ask for its permission is left alone until `use_position`.
+        """
+        if self._page.place.demo or not self._devices.position.status().is_usable or self.wants_leave:
             return
+        self._receiver.start()
+
+    def use_position(self) -> None:
+        """Begin to listen for positions; the device asks for its permission where it has not been given."""
         self._receiver.start()
 
     def stop(self) -> None:

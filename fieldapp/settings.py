@@ -42,6 +42,7 @@ class Settings:
     `margin_deg` is M, the transection that still counts as axial planar (0.5 to 30), `confidence` the share
     of folds whose interval holds the true transection (0.5 to below 1), `forecast_limit` the number of
     further readings beyond which the answer is that it cannot be settled here (10 to 10,000).
+    `position_explained` says that the page has told once what it wants the device's position for.
     """
 
     notation: PlaneNotation = PlaneNotation.STRIKE_DIP
@@ -53,6 +54,7 @@ class Settings:
     spoken_verdict: bool = False
     left_handed: bool = False
     appearance: Appearance = Appearance.SYSTEM
+    position_explained: bool = False
     observer: str = ""
     device: str = ""
 

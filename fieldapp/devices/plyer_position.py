@@ -47,6 +47,17 @@ class PlyerPosition:
         with self._lock:
             return self._status
 
+    def will_ask(self) -> bool:
+        """Whether Android has yet to ask; iOS asks in the words of the app's Info.plist, which explain it."""
+        if self._ios:
+            return False
+        try:
+            from android.permissions import Permission, check_permission  # noqa: PLC0415 (exists on Android only)
+
+            return not check_permission(Permission.ACCESS_FINE_LOCATION)
+        except Exception:  # noqa: BLE001 (as the module says)
+            return False
+
     def start(self) -> None:
         """Ask for the permission where it is needed, and begin; does nothing while running or asking."""
         with self._lock:

@@ -102,6 +102,9 @@ class PositionPort(Protocol):
     def status(self) -> Status:
         """How the port stands."""
 
+    def will_ask(self) -> bool:
+        """Whether `start` would make the system ask for the permission, so that it can be explained before."""
+
     def start(self) -> None:
         """Ask for the permission where it is needed, and begin."""
 

@@ -132,6 +132,10 @@ class ReplayPosition(_Replay):
         if not self._trace:
             self._status = Status(PortState.MISSING, "the trace has no positions: type the position")
 
+    def will_ask(self) -> bool:
+        """A trace needs no permission."""
+        return False
+
     def start(self) -> None:
         """Play from the beginning."""
         if self._trace and not self._running:

@@ -25,6 +25,10 @@ class UnavailablePosition(_Unavailable):
     def __init__(self) -> None:
         super().__init__("no position receiver on this machine: type the position")
 
+    def will_ask(self) -> bool:
+        """Nothing is asked."""
+        return False
+
     def start(self) -> None:
         """Do nothing."""
 

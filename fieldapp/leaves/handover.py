@@ -112,7 +112,12 @@ class HandOverLeaf(BoxLayout):
     # Take in
 
     def choose_file(self) -> None:
-        """Show the folder of hand-overs, to take in a file from there or from elsewhere."""
+        """Show the folder of hand-overs, to take in a file from there or from elsewhere.
+
+        A tablet shows its own chooser, since the app may not look round in its files.
+        """
+        if App.get_running_app().choose_file(self.target_folder, self.look_at):
+            return
         if self.folder is not None:
             self.folder = None
         else:

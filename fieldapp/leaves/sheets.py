@@ -32,6 +32,12 @@ SAFETY = (
     "A verdict is about geometry. It names no cause by itself.",
 )
 
+POSITION = (
+    "It is kept with each reading, and it gives the declination by which a magnetic reading is turned to true north.",
+    "It stays in your notebook and in the files you hand over. The app has no access to the network.",
+    "Without it you log all the same, with north set to true on your compass. The device asks you next.",
+)
+
 
 class TextLine(TextInput):
     """One line of text, typed with the system's keyboard."""
@@ -132,6 +138,10 @@ class PlaceSheet(Sheet):
         self._page = App.get_running_app().page
         self.chooser = PlaceChooser()
         self.ids.content.add_widget(self.chooser)
+        if App.get_running_app().wants_leave:
+            key = SheetKey(text="Use the device's position")
+            key.bind(on_release=lambda _key: App.get_running_app().answer_position(use=True))
+            self.ids.content.add_widget(key)
         self._fill()
 
     def _fill(self) -> None:
@@ -337,6 +347,20 @@ class SafetyKeys(BoxLayout):
     """The keys of the safety sheet."""
 
 
+class PositionSheet(Sheet):
+    """What the device's position is wanted for, before the device asks."""
+
+    def __init__(self, **kwargs: object) -> None:
+        super().__init__(title="May the page use your position?", **kwargs)
+        for text in POSITION:
+            self.ids.content.add_widget(SheetWords(text=text))
+        self.ids.content.add_widget(PositionKeys())
+
+
+class PositionKeys(BoxLayout):
+    """The two answers."""
+
+
 SHEETS = {
     "measure": MeasureSheet,
     "settings": SettingsSheet,
@@ -345,6 +369,7 @@ SHEETS = {
     "note": NoteSheet,
     "number": NumberSheet,
     "safety": SafetySheet,
+    "position": PositionSheet,
     "help": HelpSheet,
 }
 

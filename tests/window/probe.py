@@ -76,7 +76,7 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         page.set_overturned(overturned=True)
         look("Log, mending")
         page.clear()
-        for name in ("settings", "place", "readings", "note", "help"):
+        for name in ("settings", "place", "readings", "note", "position", "help"):
             app.open_sheet(name)
             look(f"sheet {name}")
             app.close_sheets()

@@ -69,10 +69,14 @@ def counting():
 
     class CountingPosition(UnavailablePosition):
         def __init__(self):
-            self._status, self.calls = Status(PortState.OFF), []
+            self._status, self.calls, self.asks = Status(PortState.OFF), [], False
+
+        def will_ask(self):
+            return self.asks
 
         def start(self):
             self.calls.append("start")
+            self.asks = False  # the system asks once
 
         def stop(self):
             self.calls.append("stop")
@@ -241,3 +245,67 @@ def test_stopping_twice_or_while_a_sheet_is_open_does_no_harm(open_app, tmp_path
     page = open_page(tmp_path / "notebook.db", clock=clock, dispatch=at_once)
     assert entry_of(page) == ("045", "")
     page.close()
+
+
+def test_the_position_is_explained_before_the_device_asks_and_only_once(open_app, counting):
+    """After the safety notes the page says what the position is for; nothing is asked before the answer is yes."""
+    position = counting.position
+    position.asks = True
+    driver = open_app(devices=counting, first_time=True)
+    driver.frames(3)
+    driver.tap("I will. Start reading")
+    driver.wait(lambda: driver.app.outline.sheet is not None and "position" in driver.app.outline.sheet.title)
+    assert position.calls == []
+    driver.tap("Use my position")
+    driver.wait(lambda: position.calls == ["start"])
+    assert driver.app.outline.sheet is None
+    driver.app.dispatch("on_pause")
+    driver.app.dispatch("on_resume")
+    assert driver.app.outline.sheet is None
+
+
+def test_no_is_taken_for_an_answer_and_can_be_changed(open_app, counting):
+    """Without the position nothing is asked again by itself; the sheet of the place has the key."""
+    position = counting.position
+    position.asks = True
+    driver = open_app(devices=counting)
+    driver.frames(3)
+    driver.tap("No, go on without")
+    driver.wait(lambda: driver.app.outline.sheet is None)
+    driver.app.dispatch("on_pause")
+    driver.app.dispatch("on_resume")
+    assert driver.app.outline.sheet is None
+    assert "start" not in position.calls
+    driver.app.open_sheet("place")
+    driver.frames(3)
+    driver.app.outline.sheet.ids.content.parent.scroll_y = 0.0
+    driver.frames(3)
+    driver.tap("Use the device's position")
+    driver.wait(lambda: "start" in position.calls)
+
+
+def test_a_file_from_the_devices_own_chooser_is_looked_at_before_it_is_taken_in(
+    driver, tmp_path, monkeypatch
+):
+    """What the chooser brings, on a thread of the system's, is previewed like any other file; trouble is told."""
+    import threading
+
+    from fieldapp.devices import passing
+
+    source = tmp_path / "colleague.csv"
+    source.write_text("feature,strike_deg,dip_deg\nbedding,045,30\n", encoding="utf-8")
+    answers = [(source, ""), (None, passing.NOT_READ)]
+
+    def choose_file(_folder, done):
+        threading.Thread(target=done, args=answers.pop(0)).start()
+
+    monkeypatch.setattr(passing, "can_choose", lambda: True)
+    monkeypatch.setattr(passing, "choose_file", choose_file)
+    driver.app.outline.show("Hand over")
+    leaf = driver.app.outline.leaf("Hand over")
+    leaf.choose_file()
+    driver.wait(lambda: "adds 1 readings" in leaf.preview_text)
+    assert leaf.folder is None
+    assert driver.app.page.standing == ()
+    leaf.choose_file()
+    driver.wait(lambda: driver.app.outline.trouble == passing.NOT_READ)

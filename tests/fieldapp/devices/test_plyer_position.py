@@ -43,6 +43,15 @@ def test_a_permission_given_before_is_not_asked_again(android, permissions):
     assert android.status().state is PortState.ON
 
 
+def test_whether_the_system_will_ask_is_known_before(android, permissions, clock):
+    """The page can explain itself before the question: it is told that there will be one, and asks nothing by it."""
+    assert android.will_ask()
+    permissions.granted = True
+    assert not android.will_ask()
+    assert permissions.questions == []
+    assert not PlyerPosition("ios", clock).will_ask()
+
+
 @pytest.mark.parametrize(
     ("answer", "state"), [([False, False], PortState.DENIED), ([], PortState.UNANSWERED)]
 )
