@@ -10,7 +10,7 @@ from analysis.fold import blocks
 from analysis.fold.advice import next_reading
 from analysis.fold.forecast import settle, split
 from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers
-from analysis.fold.transection import FEWEST_CLUSTERS, Transection
+from analysis.fold.transection import FEWEST_CLUSTERS, Transection, fit_cleavage_to_lines
 from analysis.fold.watch import (
     LINES_AT_FIRST_LOOK,
     PLANES_AT_FIRST_LOOK,
@@ -199,7 +199,8 @@ def _kept_back(
     blocked.append(blocks.outcrops_disagree(transection))
     if check.cleavage is None and lines is not None:
         steep = blocks.too_steep_for_lines(check.hinge.vector, lines.vector)
-        blocked.append(steep or blocks.flat_by_lines(transection))
+        alone = fit_cleavage_to_lines(sums.by_outcrop(Feature.INTERSECTION))
+        blocked.append(steep or blocks.flat_by_lines(alone))
     if planes is not None and lines is not None:
         angle, differ = blocks.planes_against_lines(planes, lines)
         if differ:

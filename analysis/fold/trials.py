@@ -16,6 +16,7 @@ from analysis.fold.watch import (
     hinge_is_clear,
     hinge_part_is_small,
     information_since_first_look,
+    lines_allow_steep,
     stream_progress,
     watch,
 )
@@ -96,6 +97,7 @@ class Estimates(NamedTuple):
     """What the readings held at each look of each fold say; shape (folds, looks)."""
 
     hinge: AxisFit
+    cleavage: AxisFit
     transection: Transection
     information: Floats
 
@@ -113,19 +115,18 @@ def estimate_drawn(drawn: Drawn, at: npt.NDArray[np.int64], mode: Mode = "planes
     information = information_since_first_look(
         found, stream_progress(at[:, 0], 0), stream_progress(n_planes, n_lines)
     )
-    return Estimates(hinge, found, information)
+    return Estimates(hinge, cleavage, found, information)
 
 
 def watch_drawn(
     drawn: Drawn, at: npt.NDArray[np.int64], settings: CheckSettings, mode: Mode = "planes"
 ) -> Trials:
     """Watch folds whose readings are drawn already, with looks at `at` (looks, 2) readings of both streams."""
-    hinge, found, information = estimate_drawn(drawn, at, mode)
+    hinge, cleavage, found, information = estimate_drawn(drawn, at, mode)
     off_girdle = np.degrees(hinge.scatter_rad[..., 0]) > GIRDLE_SCATTER_AT_MOST_DEG
     clear = hinge_is_clear(hinge) & hinge_part_is_small(found)
     if mode == "lines":
-        # Lines alone that make the cleavage flat deny what was taken for granted.
-        clear = clear & found.has_sense.astype(bool)
+        clear = clear & lines_allow_steep(cleavage)
     seen = watch(found, information, clear & ~off_girdle, settings)
     naive, naive_narrow = (
         student_multiplier(z, found.fixed_freedom) * np.sqrt(found.fixed_variance)
