@@ -121,7 +121,7 @@ def as_wheel(metadata: Message, wheel_file: str, names: set[tuple[str, int]]) ->
         name=metadata["Name"],
         version=metadata["Version"],
         pure=all(tag.endswith("-none-any") for tag in tags.get_all("Tag") or [""]),
-        requires_python=metadata["Requires-Python"] or "",
+        requires_python=metadata.get("Requires-Python", ""),
         requires=tuple(metadata.get_all("Requires-Dist") or ()),
         packages=frozenset(
             first if parts > 1 else first.removesuffix(".py")
