@@ -7,12 +7,17 @@ that those that only a device runs are seen too. And the app is run: the window 
 
 from __future__ import annotations
 
+import contextlib
+import importlib
+import importlib.util
 import json
 import os
 import subprocess
 import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
+
+from packaging.utils import canonicalize_name
 
 from packing.spec import HERE, ROOT, Finding
 from packing.staging import PACKAGES, file_of, imports_of, module_name
@@ -51,6 +56,20 @@ def source_of(module: str, staged: Collection[str], packages: Collection[str]) -
     return top in packages or top in ON_THE_DEVICE
 
 
+def is_in_wheel(dotted: str) -> bool:
+    """Whether a pure-Python package that is installed here has such a module, or such a name in a module."""
+    module, _, name = dotted.rpartition(".")
+    if not module:
+        return True
+    with contextlib.suppress(ModuleNotFoundError):
+        if importlib.util.find_spec(dotted) is not None:
+            return True
+    try:
+        return hasattr(importlib.import_module(module), name)
+    except ModuleNotFoundError:
+        return False
+
+
 def check_statements(staged: Staged, resolved: Resolved) -> list[Finding]:
     """Read every import statement of the staged tree; one inside a function counts like any other."""
     modules, findings = staged.modules(), []
@@ -61,9 +80,12 @@ def check_statements(staged: Staged, resolved: Resolved) -> list[Finding]:
             # "from a.b import c" gives a.b.c too: a name in a module, unless the project has such a module.
             is_name = imported.partition(".")[0] in PACKAGES and file_of(imported) is None
             if not is_name and not source_of(imported, modules, resolved.packages):
-                findings.append(
-                    Finding(CHECK, f"{name} line {line} imports {imported}, which would not be there")
-                )
+                text = f"{name} line {line} imports {imported}, which would not be there"
+                findings.append(Finding(CHECK, text))
+            brought_by = resolved.packages.get(imported.partition(".")[0], "")
+            if canonicalize_name(brought_by) in resolved.wheels and not is_in_wheel(imported):
+                text = f"{name} line {line} imports {imported}; {brought_by} has no such thing"
+                findings.append(Finding(CHECK, text))
     return findings
 
 

@@ -143,17 +143,28 @@ def test_an_import_that_no_device_has_is_found(line, staged, tmp_path):
     assert all("fieldapp/extra.py" in str(finding) for finding in findings)
 
 
+def test_a_part_that_a_requirement_does_not_have_is_found(staged, tmp_path):
+    """A name that a pure-Python requirement lacks is found in the text, though only a device would import it."""
+    more = shutil.copytree(staged.folder, tmp_path / "more")
+    line = "def f():\n    from plyer import gps, share\n"
+    (more / "fieldapp" / "extra.py").write_text(line, encoding="utf-8")
+    resolved = requirements.resolve(Spec(), no_index)
+    findings = imports.check_statements(staging.staged_at(more), resolved)
+    assert len(findings) == 1
+    assert "plyer.share; plyer has no such thing" in str(findings[0])
+
+
 def test_what_only_a_run_shows_is_found(staged, tmp_path):
     """An import and a file that the trace names and the tree lacks are findings; so is an empty trace."""
     resolved, report = requirements.resolve(Spec(), no_index), tmp_path / "trace.json"
     told = {
-        "imports": {"numpy": ["a"], "analysis.demo": ["fieldapp.outcrop"]},
+        "imports": {"numpy": ["a"], "analysis.report.net": ["fieldapp.outcrop"]},
         "files": ["fieldapp/leaves/log.kv", "a.kv"],
     }
     report.write_text(json.dumps(told), encoding="utf-8")
     texts = [str(finding) for finding in imports.check_trace(report, staged, resolved)]
     assert len(texts) == 2
-    assert "fieldapp.outcrop imported analysis.demo" in texts[0]
+    assert "fieldapp.outcrop imported analysis.report.net" in texts[0]
     assert "a.kv" in texts[1]
     report.write_text(json.dumps({"imports": {}, "files": []}), encoding="utf-8")
     assert "empty" in str(imports.check_trace(report, staged, resolved)[0])
