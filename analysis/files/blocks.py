@@ -395,7 +395,8 @@ def _looked_up(series: pd.Series[Any], column: Column, refused: Bools, delimiter
     unknown[-1] = True  # no cell at all
     for code, text in enumerate(texts):
         try:
-            table[code] = stored(cell_value(text, column, delimiter), column)
+            # The frame reader gives numbers beyond 64 bits as Python's own.
+            table[code] = stored(cell_value(str(text), column, delimiter), column)
         except ReadingError:
             unknown[code] = True
     refused |= unknown[codes]

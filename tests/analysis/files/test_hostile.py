@@ -223,3 +223,22 @@ def test_any_bytes_are_read_or_refused(read, content, with_header, block):
     again = read("".join(csv_text(table)))
     assert again.readings() == readings
     assert not again.faults
+
+
+@pytest.mark.parametrize("digits", ["3" + "5" * 34, "18446744073709551615", "9223372036854775808"])
+@pytest.mark.parametrize("column", ["samples", "revision", "altitude_m", "strike_deg"])
+def test_a_whole_number_of_any_length_spoils_its_own_row_only(read, column, digits):
+    """A column of whole numbers beyond 64 bits is refused row by row; found by the coverage-guided fuzzer."""
+    names = ["feature", "strike_deg", "dip_deg", "samples", "revision", "altitude_m"]
+    cells = {
+        "feature": "bedding",
+        "strike_deg": "45",
+        "dip_deg": "30",
+        "samples": "7",
+        "revision": "1",
+        "altitude_m": "3",
+    }
+    bad = ",".join(digits if name == column else cells[name] for name in names)
+    table = read(f"{','.join(names)}\n{bad}\n".encode())
+    assert len(table) == 0
+    assert [fault.column for fault in table.faults] == [column]
