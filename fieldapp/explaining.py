@@ -23,16 +23,14 @@ from fieldapp.states import ExplanationLine, FaultState, Told
 
 if TYPE_CHECKING:
     from analysis.fold.records import FoldCheck
+    from analysis.strain.curves import FaultCurves
     from analysis.strain.explanations import Explanation, FaultCheck
     from analysis.strain.observed import FoldPair
     from fieldapp.states import FaultInput
 
 __all__ = ["pair_of_check", "state_of"]
 
-AREAS = (
-    "Unpartitioned transpression and late cleavage cover an area each and fit more easily, so the likelihood ratio "
-    "leaves them out."
-)
+AREAS = "Both cover an area each and fit more easily, so the likelihood ratio leaves them out."
 _KINDS = ("rotation", "partitioned", "transpression", "late")
 
 
@@ -49,14 +47,16 @@ def state_of(entered: FaultInput, pair: FoldPair, check: FoldCheck) -> FaultStat
     told = explain(fault, pair, limits, fold=check.fold)
     if told.fold_fault_angle_deg is None:  # no trend: nothing to draw, and no explanation is named
         return FaultState(ask=" ".join(told.because))
+    curves = fault_curves(pair, fault, confidence=limits.confidence)
     return FaultState(
         headline=headline(told),
         angle=_angle(told),
         figures=(_ratio(told), _displacement(told)),
-        curves=fault_curves(pair, fault, confidence=limits.confidence),
+        curves=curves,
+        confidence=limits.confidence,
         zone_width_km=fault.zone_width_km,
         lines=_lines(told),
-        note=AREAS,
+        note=f"{_drawn(curves)} {AREAS}",
         because=told.because,
         cautions=told.cautions,
     )
@@ -75,16 +75,16 @@ def _ratio(told: FaultCheck) -> Told:
         return Told(name, "–", "comes with the first transection")
     favoured = "rotation" if ratio > 1.0 else "partitioned transpression"
     odds = max(ratio, 1.0 / max(ratio, 1e-300))
-    figure = "over 1000 : 1" if odds > 1000.0 else f"{two_digits(odds)} : 1"
+    figure = "over 1000" if odds > 1000.0 else two_digits(odds)
     if all(one.fits is False for one in told.explanations[:2]):
         but = ", but neither fits"
     elif told.can_be_told_apart:
         but = ""
-    elif figure == "1 : 1":
-        return Told(name, figure, "neither is favoured")
+    elif figure == "1":
+        return Told(name, figure, "to 1: neither is favoured")
     else:
         but = ", not decisive"
-    return Told(name, figure, f"for {favoured}{but}")
+    return Told(name, figure, f"to 1 for {favoured}{but}")
 
 
 def _displacement(told: FaultCheck) -> Told:
@@ -108,6 +108,16 @@ def _lines(told: FaultCheck) -> tuple[ExplanationLine, ...]:
     return tuple(
         ExplanationLine(kind, name[:1].upper() + name[1:], _words(kind, told.explanation(name)))
         for kind, name in zip(_KINDS, names, strict=True)
+    )
+
+
+def _drawn(curves: FaultCurves) -> str:
+    """Say which curves of the two areas are drawn."""
+    angles = " and ".join(f"{angle:g}°" for angle, _ in curves.transpression)
+    shares = " and ".join(f"{100.0 * share:g}%" for share, _ in curves.late)
+    return (
+        f"Transpression (T) is drawn for convergence angles of {angles}, late cleavage for {shares} of the shear"
+        " past when it began."
     )
 
 

@@ -351,6 +351,7 @@ class FaultState:
     angle: str = ""
     figures: tuple[Told, ...] = ()
     curves: FaultCurves | None = field(default=None, compare=False)
+    confidence: float = 0.95  # of the ellipse
     zone_width_km: float | None = None
     lines: tuple[ExplanationLine, ...] = ()
     note: str = ""

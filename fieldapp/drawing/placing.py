@@ -60,6 +60,65 @@ def place_beside(
     return best
 
 
+def place_along(
+    anchors: npt.NDArray[np.float64],
+    size: Sequence[float],
+    *,
+    gap: float,
+    taken: Sequence[Box],
+    points: npt.NDArray[np.float64],
+    bounds: Box,
+    rings: Sequence[float] = (1.0, 2.0, 3.5, 6.0, 10.0),
+) -> tuple[Box, tuple[float, float]]:
+    """Find the box of words of this size beside any of the anchors (n, 2) that covers least; and that anchor.
+
+    As `place_beside`, for words that name a line and may stand anywhere along it.
+    """
+    shares, spans = np.array(SIDES), np.array([size[0], size[1]], dtype=float)
+    away = (0.5 - shares) * 2.0 * gap
+    least, best, owner = np.inf, np.zeros(2), 0
+    for ring in rings:
+        farness = 0.3 * (ring - 1.0)
+        if farness >= least:  # nothing farther out can cost less
+            break
+        low = (anchors[:, np.newaxis, :] + ring * away - shares * spans).reshape(-1, 2)
+        cost = farness + np.tile(0.02 * np.arange(len(SIDES)), len(anchors))
+        cost += _covered(low, low + spans, taken=taken, points=points, bounds=bounds, apart=gap)
+        number = int(np.argmin(cost))
+        if cost[number] < least:
+            least, best, owner = float(cost[number]), low[number], number // len(SIDES)
+    x, y = (float(edge) for edge in best)
+    anchor = (float(anchors[owner][0]), float(anchors[owner][1]))
+    return (x, y, x + float(spans[0]), y + float(spans[1])), anchor
+
+
+def _covered(
+    low: npt.NDArray[np.float64],
+    high: npt.NDArray[np.float64],
+    *,
+    taken: Sequence[Box],
+    points: npt.NDArray[np.float64],
+    bounds: Box,
+    apart: float,
+) -> npt.NDArray[np.float64]:
+    """What boxes with these corners (n, 2) cost for the words and points they cover and for leaving the bounds."""
+    area = np.prod(high[0] - low[0])
+    cost = np.full(len(low), OUTSIDE_COST)
+    for box, weight in [*((each, WORDS_COST) for each in taken), (bounds, -OUTSIDE_COST)]:
+        # Words keep apart sideways, so that two labels in one line do not read as one.
+        room = apart if weight > 0.0 else 0.0
+        wide = np.minimum(high[:, 0] + room, box[2]) - np.maximum(low[:, 0] - room, box[0])
+        tall = np.minimum(high[:, 1], box[3]) - np.maximum(low[:, 1], box[1])
+        cost += weight * np.maximum(wide, 0.0) * np.maximum(tall, 0.0) / area
+    if len(points):
+        inside = np.ones((len(low), len(points)), dtype=bool)
+        for axis in (0, 1):
+            across = points[:, axis]
+            inside &= (across > low[:, axis, np.newaxis]) & (across < high[:, axis, np.newaxis])
+        cost += 0.6 * inside.sum(axis=1)
+    return cost
+
+
 def nice_step(span: float, most: int) -> float:
     """A step of 1, 2 or 5 times a power of ten that cuts a span into at most `most` parts."""
     rough = max(span, 1e-9) / max(most, 1)

@@ -106,19 +106,30 @@ def segments(starts: npt.ArrayLike, ends: npt.ArrayLike, width: float, *, soft: 
     return Triangles(vertices.reshape(-1, 4), indices.astype(np.uint16).ravel())
 
 
-def dashed(points: npt.ArrayLike, width: float, on: float, off: float) -> Triangles:
-    """Draw a dashed line; each dash is straight, as short ones are on any curve."""
+def dashed(points: npt.ArrayLike, width: float, on: float, off: float, start: float = 0.0) -> Triangles:
+    """Draw a dashed line, its first dash at `start`; each dash is straight, as short ones are on any curve."""
     places = np.asarray(points, dtype=float).reshape(-1, 2)
     if len(places) < FEWEST_POINTS:
         return NOTHING
     steps = np.diff(places, axis=0)
     along = np.concatenate([[0.0], np.cumsum(np.hypot(steps[:, 0], steps[:, 1]))])
-    starts = np.arange(0.0, along[-1], on + off)
+    starts = np.arange(start, along[-1], on + off)
     ends = np.minimum(starts + on, along[-1])
     first, last = (
         np.stack([np.interp(at, along, places[:, axis]) for axis in (0, 1)], axis=1) for at in (starts, ends)
     )
     return segments(first, last, width)
+
+
+def patterned(points: npt.ArrayLike, width: float, pattern: Sequence[float]) -> Triangles:
+    """Draw a line of dashes and gaps of these lengths in turn; a whole line where the pattern is empty."""
+    if not pattern:
+        return line(points, width)
+    starts, whole = np.cumsum([0.0, *pattern]), float(sum(pattern))
+    return joined(
+        dashed(points, width, on, whole - on, float(starts[2 * number]))
+        for number, on in enumerate(pattern[::2])
+    )
 
 
 def polygon(points: npt.ArrayLike) -> Triangles:

@@ -55,3 +55,39 @@ def test_words_keep_off_readings():
 def test_a_nice_step_cuts_into_no_more_parts(span, most, step):
     """Steps are 1, 2 or 5 times a power of ten and give at most that many parts."""
     assert placing.nice_step(span, most) == pytest.approx(step)
+
+
+def along(anchors, taken=(), points=NO_POINTS):
+    """Place words of 20 by 10 along a line."""
+    return placing.place_along(
+        np.array(anchors, dtype=float),
+        (20.0, 10.0),
+        gap=4.0,
+        taken=list(taken),
+        points=points,
+        bounds=BOUNDS,
+    )
+
+
+def test_words_of_a_line_go_where_the_line_is_free():
+    """Of two places along a line the one is taken that other words do not cover."""
+    box, anchor = along([(20, 50), (70, 50)], taken=[(0.0, 30.0, 60.0, 70.0)])
+    assert anchor == (70.0, 50.0)
+    assert placing.overlap(box, (0.0, 30.0, 60.0, 70.0)) == 0.0
+
+
+def test_words_of_a_line_go_farther_out_before_they_cover_much():
+    """With curves all round the anchor the words stand beyond them."""
+    points = np.array([(x, y) for x in range(20, 81, 3) for y in range(35, 66, 3)], dtype=float)
+    box, _ = along([(50, 50)], points=points)
+    assert not np.any(np.all((points > box[:2]) & (points < box[2:]), axis=1))
+    assert box[0] >= 0
+    assert box[3] <= 100
+
+
+def test_words_of_a_line_stay_in_the_picture():
+    """Along the very edge the words turn inwards."""
+    for anchor in [(0, 0), (100, 100), (0, 100), (100, 0)]:
+        box, _ = along([anchor])
+        assert min(box) >= 0
+        assert max(box) <= 100

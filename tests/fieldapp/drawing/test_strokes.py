@@ -97,3 +97,12 @@ def test_joined_meshes_keep_their_triangles():
     whole = strokes.joined([*parts, strokes.NOTHING])
     assert area(whole) == pytest.approx(sum(area(part) for part in parts))
     assert not strokes.joined([])
+
+
+def test_a_pattern_repeats_its_dashes_and_gaps():
+    """Dashes of 8 and 2 with gaps of 4 and 4 lie at 0 to 8, 12 to 14, 18 to 26; no pattern is a whole line."""
+    line = [(0, 0), (30, 0)]
+    mesh = strokes.patterned(line, 2.0, (8.0, 4.0, 2.0, 4.0))
+    ends = sorted({float(x) for x in mesh.vertices[:, 0]})
+    assert ends == pytest.approx([0.0, 8.0, 12.0, 14.0, 18.0, 26.0])
+    assert area(strokes.patterned(line, 2.0, ())) == pytest.approx(area(strokes.line(line, 2.0)))
