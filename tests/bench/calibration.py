@@ -278,7 +278,7 @@ def summarise(table: pd.DataFrame) -> None:
             say(
                 f"{name} {value}: missed {part['missed'].sum() / folds:.4f}, "
                 f"settled {part['settled'].sum() / folds:.3f}, "
-                f"looks kept back {part['looks_unclear'].sum() / part['looks'].sum():.3f} for the hinge and "
+                f"looks kept back {part['looks_unclear'].sum() / part['looks'].sum():.3f} for axes not clear and "
                 f"{part['looks_off_girdle'].sum() / part['looks'].sum():.4f} for the girdle, "
                 f"folds never looked at {part['never_looked'].sum() / folds:.4f}"
             )

@@ -53,7 +53,8 @@ def draw_errors(axes: Axes, table: pd.DataFrame, error: str, title: str) -> None
     for limit in (5.0, 7.0):
         axes.axhline(limit, color=LIGHT.muted, linewidth=0.9)
     axes.set_xlabel("cells in order of their error, %", fontsize=9.0, color=LIGHT.ink)
-    axes.legend(loc="lower right", fontsize=8.5, frameon=True, facecolor=LIGHT.card, edgecolor="none")
+    place = "upper left" if error == "false_axial_planar" else "lower right"
+    axes.legend(loc=place, fontsize=8.5, frameon=True, facecolor=LIGHT.card, edgecolor="none")
 
 
 def draw_readings(axes: Axes, table: pd.DataFrame) -> None:
@@ -84,7 +85,7 @@ def draw_calibration(table: pd.DataFrame, path: Path) -> None:
         sheet.words(0.4, HIGH_IN - 0.42, "A verdict that may be watched", 14.0, bold=True)
         folds = int(table["folds"].sum())
         about = (
-            f"{len(table)} cells, {folds:,} invented folds, a look after every reading to 60 a stream. "
+            f"{len(table):,} cells, {folds:,} invented folds, a look after every reading to 60 a stream. "
             "Lines at 5 and 7% of folds."
         )
         sheet.words(0.4, HIGH_IN - 0.68, about, 9.5, quiet=True)
