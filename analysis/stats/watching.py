@@ -13,7 +13,7 @@ settle, within ten times the information of the first look, and less of it later
     sqrt(a^2 + 0.3 (ln t)^2)
 
 With a known error it is left by 3.5% of paths up to 60 readings a stream and by 4.2% however long they are
-watched, and by less than 1 - confidence at any confidence (recursion over looks; tests/analysis/stats). It needs
+watched, and by less than 1 - confidence at any confidence (recursion over looks; tests/analysis/stats). It needs up to
 a tenth fewer readings. t is the information held now over the information at the first look; the standard error is
 an estimate, so the multiplier is widened to Student's t of the same tail (Wallace 1959). DEVELOPERS.md has the
 measurements that led to this boundary and what else was tried.
