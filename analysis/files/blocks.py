@@ -362,7 +362,7 @@ def _numbers(series: pd.Series[Any], column: Column, refused: Bools, delimiter: 
 
 def _categories(series: pd.Series[Any]) -> tuple[Array, list[str]]:
     # Not the category dtype of the frame reader, which would take 007 and 7 for one.
-    codes, texts = pd.factorize(series.array)
+    codes, texts = pd.factorize(series)
     return codes, list(texts)
 
 
