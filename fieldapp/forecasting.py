@@ -9,12 +9,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-import numpy as np
-
+from analysis.fold import ahead
 from analysis.fold.decision import add_forecast
-from analysis.fold.forecast import split
 from analysis.orient.features import Feature
-from analysis.stats.watching import watched_multiplier
 from fieldapp.states import ForecastPoint, FunnelState
 
 if TYPE_CHECKING:
@@ -43,34 +40,10 @@ def forecast_of(check: FoldCheck, version: int) -> Forecast:
 
 
 def interval_ahead(check: FoldCheck) -> tuple[ForecastPoint, ...]:
-    """The interval expected as readings are added at the present scatter, out to where it should settle.
-
-    Readings are split over the two streams as the forecast splits them; the transection is taken to stay
-    where it is.
-    """
-    numbers, more, settings = check.numbers, check.more_readings, check.settings
-    if numbers is None or more is None or more.total < 1:
-        return ()
-    streams = (
-        float(max(1, check.readings.of(Feature.BEDDING) + check.readings.of(Feature.HINGE))),
-        float(max(1, check.readings.of(Feature.CLEAVAGE) + check.readings.of(Feature.INTERSECTION))),
-    )
-    parts = (numbers.hinge_variance, numbers.cleavage_variance)
-    now = parts[0] + parts[1]
-    if not now > 0.0:
-        return ()
-    steps = np.unique(np.round(np.linspace(0.0, float(more.total), AHEAD_POINTS)))
-    first, second = split(steps, streams, parts)
-    later = parts[0] * streams[0] / (streams[0] + first) + parts[1] * streams[1] / (streams[1] + second)
-    freedom = numbers.freedom * (1.0 + steps / sum(streams))
-    half = watched_multiplier(numbers.information * now / later, freedom, settings.confidence) * np.sqrt(
-        numbers.variance * later / now
-    )
-    start = sum(check.readings.of(feature) for feature in Feature)
+    """The interval expected as readings are added at the present scatter, out to where it should settle."""
     return tuple(
-        ForecastPoint(start + int(step), numbers.delta_deg - float(h), numbers.delta_deg + float(h))
-        for step, h in zip(steps, half, strict=True)
-        if np.isfinite(h)
+        ForecastPoint(point.after, point.low_deg, point.high_deg)
+        for point in ahead.interval_ahead(check, AHEAD_POINTS)
     )
 
 
