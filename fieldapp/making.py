@@ -221,5 +221,3 @@ def _warnings(entry: Entry, north: North) -> tuple[str, ...]:
 
 def _same(one: Digits, other: Digits) -> bool:
     return (one.azimuth, one.inclination) == (other.azimuth, other.inclination)
-
-

@@ -232,6 +232,4 @@ def history_of(entries: Sequence[Entry], settings: CheckSettings, epoch: int) ->
 def _point(check: FoldCheck, readings: int) -> FunnelPoint:
     low, high = check.interval_deg if check.interval_deg is not None else (None, None)
     mean = None if check.intersection is None else check.intersection.axis.vector
-    return FunnelPoint(
-        readings, check.transection_deg, low, high, str(check.verdict), mean
-    )
+    return FunnelPoint(readings, check.transection_deg, low, high, str(check.verdict), mean)

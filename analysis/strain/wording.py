@@ -105,9 +105,7 @@ def _rotation(check: FaultCheck) -> Iterator[str]:
     width = check.fault.zone_width_km
     if rotation.displacement_km is not None and width is not None:
         most = _spread((low or 0.0) * width, None if high is None else high * width, " km")
-        needs += (
-            f": {two_digits(rotation.displacement_km)} km along the fault over a zone {width:g} km wide ({most})"
-        )
+        needs += f": {two_digits(rotation.displacement_km)} km along the fault over a zone {width:g} km wide ({most})"
     yield needs + "."
 
 

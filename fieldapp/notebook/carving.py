@@ -25,11 +25,7 @@ _WAL_HEADER_BYTES = 32
 _FRAME_HEADER_BYTES = 24
 _BEFORE_READING = 4  # seq, digest, origin, stored_at
 _COLUMNS = _BEFORE_READING + len(READING_COLUMNS)
-_REALS = frozenset(
-    place
-    for place, name in enumerate(READING_COLUMNS)
-    if name.endswith(("_deg", "_m"))
-)
+_REALS = frozenset(place for place, name in enumerate(READING_COLUMNS) if name.endswith(("_deg", "_m")))
 _INTEGER_BYTES = {1: 1, 2: 2, 3: 3, 4: 4, 5: 6, 6: 8}
 _LONGEST_PAYLOAD = 16_000_000
 _PAGE_SIZES = (4096, 1024, 2048, 8192, 16384, 32768, 65536, 512)

@@ -28,7 +28,6 @@ if TYPE_CHECKING:
     from analysis.files.reading import Reading
 
 
-
 @dataclass(frozen=True, slots=True)
 class TakeIn:
     """One file of a colleague's that was taken in: its name, when, how many revisions it brought."""
@@ -227,9 +226,7 @@ class Notebook:
         with self._writing() as db:
             now = self._now()
             number = int(
-                db.execute(
-                    "INSERT INTO take_ins (source, taken_at) VALUES (?, ?)", (source, now)
-                ).lastrowid
+                db.execute("INSERT INTO take_ins (source, taken_at) VALUES (?, ?)", (source, now)).lastrowid
                 or 0
             )
             brought = 0
@@ -263,9 +260,7 @@ class Notebook:
         if not rows:
             return None
         number, source, taken_at, brought = rows[0]
-        return TakeIn(
-            int(str(number)), str(source), datetime.fromisoformat(str(taken_at)), int(str(brought))
-        )
+        return TakeIn(int(str(number)), str(source), datetime.fromisoformat(str(taken_at)), int(str(brought)))
 
     def not_handed_over(self) -> list[Reading]:
         """Revisions seen that no hand-over has carried yet, in the order stored."""

@@ -204,7 +204,10 @@ class PageCore:
         self._tell(_AFTER_READING)
         if self._running.epoch != epoch:
             self._refresh_history()
-        if self._running.check.blocked or self._running.check.verdict in (Verdict.TRANSECTED, Verdict.AXIAL_PLANAR):
+        if self._running.check.blocked or self._running.check.verdict in (
+            Verdict.TRANSECTED,
+            Verdict.AXIAL_PLANAR,
+        ):
             self._say_verdict()
         self._seek_forecast()
         self._back_up_if_due()
@@ -328,4 +331,3 @@ def _opening_message(report: OpeningReport) -> Message | None:
             MessageKind.TROUBLE,
         )
     return None
-

@@ -119,7 +119,9 @@ class PageNorth(PageCore):
         corrected = 0
         for reading in self._not_corrected():
             found = self._find_north(
-                reading.north_reference, self._place_of(reading), (reading.recorded_at or self._clock()).date()
+                reading.north_reference,
+                self._place_of(reading),
+                (reading.recorded_at or self._clock()).date(),
             )
             if not found.is_true:
                 continue

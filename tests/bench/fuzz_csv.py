@@ -39,7 +39,8 @@ def main() -> None:
     """Run for so many seconds, by default an hour."""
     seconds = sys.argv[1] if len(sys.argv) > 1 else "3600"
     atheris.Setup(
-        [sys.argv[0], f"-max_total_time={seconds}", "-max_len=4096", "-timeout=30", "-rss_limit_mb=2048"], one_input
+        [sys.argv[0], f"-max_total_time={seconds}", "-max_len=4096", "-timeout=30", "-rss_limit_mb=2048"],
+        one_input,
     )
     atheris.Fuzz()
 

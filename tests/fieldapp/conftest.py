@@ -52,7 +52,9 @@ def make_reading(clock: SetClock) -> Callable[..., Reading]:
     def make(**fields: object) -> Reading:
         feature = Feature(fields.get("feature", "bedding"))
         attitude = (
-            {"strike_deg": 45.0, "dip_deg": 30.0} if feature.is_plane else {"trend_deg": 45.0, "plunge_deg": 10.0}
+            {"strike_deg": 45.0, "dip_deg": 30.0}
+            if feature.is_plane
+            else {"trend_deg": 45.0, "plunge_deg": 10.0}
         )
         return Reading(
             **{

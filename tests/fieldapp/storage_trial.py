@@ -66,7 +66,10 @@ def full(path):
 
 
 def read_only(path):
-    for module in ("analysis.files.csvfile", "analysis.files.join"):  # what is loaded when used, before the drop
+    for module in (
+        "analysis.files.csvfile",
+        "analysis.files.join",
+    ):  # what is loaded when used, before the drop
         __import__(module)
     if os.getuid() == 0:
         os.setgroups([])

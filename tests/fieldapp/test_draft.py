@@ -82,9 +82,7 @@ def test_any_keys_leave_a_place_that_agrees_with_the_text(keys):
     assert re.fullmatch(r"\d{0,3}|\d{3}\.\d?", digits.azimuth)
     assert re.fullmatch(r"\d{0,2}|\d{2}\.\d?", digits.inclination)
     assert digits.whole == bool(re.fullmatch(r"\d{2}(\.\d?)?", digits.inclination))
-    assert digits.azimuth_whole == bool(
-        digits.inclination or re.fullmatch(r"\d{3}(\.\d)?", digits.azimuth)
-    )
+    assert digits.azimuth_whole == bool(digits.inclination or re.fullmatch(r"\d{3}(\.\d)?", digits.azimuth))
 
 
 @given(st.text(alphabet="0123456789.", max_size=20))

@@ -233,7 +233,9 @@ def test_a_mend_under_way_outlives_the_process(page_at, tmp_path, kept):
     assert again._all[reading_id].dip_deg == 35.0
 
 
-@pytest.mark.parametrize(("text", "side"), [("045/30", "E"), ("045/30", "S"), ("060/30", "E"), ("030/30", "S")])
+@pytest.mark.parametrize(
+    ("text", "side"), [("045/30", "E"), ("045/30", "S"), ("060/30", "E"), ("030/30", "S")]
+)
 def test_a_neighbouring_side_is_kept_without_a_question(page, typed, side, text):
     """A side tapped next to the right one fits still: nothing is asked and nothing noted."""
     page.change_settings(replace(page.settings, north=NorthMode.TRUE))

@@ -116,9 +116,13 @@ def drafts(draw):
         note=draw(st.text(max_size=20)),
         overturned=draw(st.booleans()),
         mending=draw(st.sampled_from(["", "x"])),
-        north=draw(st.sampled_from([None, North(), North(reference="magnetic", correction_deg=-1.5, model="m")])),
+        north=draw(
+            st.sampled_from([None, North(), North(reference="magnetic", correction_deg=-1.5, model="m")])
+        ),
         sensed=draw(
-            st.sampled_from([None, Sensed(scatter_deg=1.0, samples=3, raw="r", warnings=(("field", "iron"),))])
+            st.sampled_from(
+                [None, Sensed(scatter_deg=1.0, samples=3, raw="r", warnings=(("field", "iron"),))]
+            )
         ),
     )
 
@@ -129,7 +133,9 @@ def test_a_draft_survives_storing(draft):
     assert EntryDraft.from_values(draft.to_values()) == draft
 
 
-@pytest.mark.parametrize("values", [{"feature": "granite"}, {"place": "nowhere"}, {"north": [1]}, {"sensed": [1]}])
+@pytest.mark.parametrize(
+    "values", [{"feature": "granite"}, {"place": "nowhere"}, {"north": [1]}, {"sensed": [1]}]
+)
 def test_a_spoilt_draft_is_an_empty_one(values):
     """What makes no sense does not keep the page from opening."""
     assert EntryDraft.from_values(values) == EntryDraft()

@@ -225,7 +225,9 @@ def test_an_index_gone_wrong_is_damage_too(full, clock):
     """An index that no longer agrees with its table is found at start, and every reading is recovered."""
     path, readings = full
     with closing(sqlite3.connect(path)) as db:
-        root = db.execute("SELECT rootpage FROM sqlite_master WHERE name LIKE 'sqlite_autoindex_revisions%'").fetchone()
+        root = db.execute(
+            "SELECT rootpage FROM sqlite_master WHERE name LIKE 'sqlite_autoindex_revisions%'"
+        ).fetchone()
     data = path.read_bytes()
     at = (root[0] - 1) * PAGE
     leaf = int.from_bytes(data[at + 8 : at + 12]) if data[at] == 0x02 else root[0]
