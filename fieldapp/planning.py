@@ -64,6 +64,7 @@ def plan_of(
         return PlanState((), unplaced, hinge)
     centre = places[current] if current in places else next(iter(places.values()))
     attitudes = _attitudes(neighbours)
+    overturned = _overturned(neighbours)
     shown = tuple(
         PlanOutcrop(
             name,
@@ -72,6 +73,7 @@ def plan_of(
             attitudes.get((name, "bedding")),
             attitudes.get((name, "cleavage")),
             attitudes.get((name, "lines")),
+            name in overturned,
         )
         for name in names
         if name in places
@@ -87,6 +89,15 @@ def _attitudes(neighbours: Sequence[Neighbour]) -> Mapping[tuple[str, str], tupl
     return {key: _middle_attitude(np.stack(rows), plane=key[1] != "lines") for key, rows in axes.items()}
 
 
+def _overturned(neighbours: Sequence[Neighbour]) -> set[str]:
+    """Outcrops where more than half of the bedding was read as overturned, as the report draws it too."""
+    marks: dict[str, list[bool]] = {}
+    for n in neighbours:
+        if str(n.feature) == "bedding":
+            marks.setdefault(n.outcrop, []).append(n.reading.overturned)
+    return {name for name, turned in marks.items() if sum(turned) * 2 > len(turned)}
+
+
 def _middle_attitude(axes: Floats, *, plane: bool) -> tuple[float, float]:
     """Centre of the main cluster: where both limbs stand in an outcrop, their mean would be no bed at all."""
     centre, _ = robust_centre(axes)
@@ -100,5 +111,3 @@ def _middle(places: Sequence[tuple[float, float]]) -> tuple[float, float]:
     about = (rows[:, 1] - rows[0, 1] + 180.0) % 360.0 - 180.0
     longitude = float(rows[0, 1] + np.median(about))
     return float(np.median(rows[:, 0])), (longitude + 180.0) % 360.0 - 180.0
-
-

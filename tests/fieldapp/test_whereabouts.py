@@ -140,6 +140,22 @@ def test_the_plan_lays_outcrops_out_in_metres(page, clock, kept):
     assert page.plan.unplaced == ("C",)
 
 
+def test_the_plan_tells_overturned_beds(page, clock, typed):
+    """An outcrop is drawn as overturned where more than half of its bedding was read so, as in the report."""
+    page.position_changed(PositionFix(latitude_deg=54.0, longitude_deg=-2.0, at=clock()))
+    for outcrop, marks in (("MG-01", (True, True, False)), ("MG-02", (True, False))):
+        page.choose_outcrop(outcrop)
+        for overturned in marks:
+            page.choose_feature(BEDDING)
+            page.set_overturned(overturned=overturned)
+            typed(page, "045/30")
+            assert page.keep()
+    assert {outcrop.name: outcrop.overturned for outcrop in page.plan.outcrops} == {
+        "MG-01": True,
+        "MG-02": False,
+    }
+
+
 def test_a_late_correction_that_turns_a_strike_off_its_side_is_kept_as_seen(page, clock, typed):
     """A side that fitted the compass and just misses true north stays, and the record says so."""
     typed(page, "075/30", "E")  # dips 165 from magnetic north, 75 degrees from east: within the 80 that fit
