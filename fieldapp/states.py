@@ -116,11 +116,15 @@ class Sign(StrEnum):
 
 @dataclass(frozen=True, slots=True)
 class StripState:
-    """The verdict strip: sign, sentence (first line), figures (second line, '' where there are none yet)."""
+    """The verdict strip: sign, sentence (first line), figures (second line, '' where there are none yet).
+
+    `short_figures` says the same figures for a narrow strip.
+    """
 
     sign: Sign
     headline: str
     figures: str = ""
+    short_figures: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -232,7 +236,7 @@ class PlanOutcrop:
     """One outcrop on the plan: metres east and north of the current one, mean attitudes where there are any.
 
     `bedding` and `cleavage` are (strike_deg, dip_deg) of the mean plane, `lines` is (trend_deg, plunge_deg)
-    of the mean intersection or hinge line read there.
+    of the mean intersection or hinge line read there. `overturned` where most of the bedding read there is.
     """
 
     name: str
@@ -242,6 +246,7 @@ class PlanOutcrop:
     bedding: tuple[float, float] | None
     cleavage: tuple[float, float] | None
     lines: tuple[float, float] | None
+    overturned: bool = False
 
 
 @dataclass(frozen=True, slots=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING
 
 from analysis.fold.records import Verdict
@@ -29,4 +30,18 @@ def sign_of(check: FoldCheck) -> Sign:
 
 def strip_of(check: FoldCheck) -> StripState:
     """The strip of a check: two lines and a sign."""
-    return StripState(sign_of(check), headline(check), figure_line(check))
+    figures = figure_line(check)
+    return StripState(sign_of(check), headline(check), figures, shortened(figures))
+
+
+def shortened(figures: str) -> str:
+    """Say the figures for a narrow strip: what is angle and what is interval stays, the rest is known there.
+
+    Lines without figures, such as what a verdict still lacks, stay as they are.
+    """
+    if "between" not in figures:
+        return figures
+    short = figures.removeprefix("cleavage ").replace(" of the hinge", "", 1).replace(" off the hinge", "", 1)
+    # Where the interval holds 0, signs say the sense: clockwise is positive, as on the funnel.
+    short = re.sub(r"between (\S+) anticlockwise and (\S+) clockwise", "−\\1 to +\\2", short)  # noqa: RUF001
+    return re.sub(r", at (\S+) confidence$", r" (\1)", short)

@@ -64,9 +64,14 @@ class EqualAreaNet(Widget):
     # Geometry
 
     @property
+    def head_px(self) -> float:
+        """Room for the N above the net and the readings that lie on the rim below it, in pixels."""
+        return sp(self.words_sp) * 1.35 + dp(6)
+
+    @property
     def radius(self) -> float:
         """Radius of the net in pixels; room is left for the N above it."""
-        return max(min(self.width, self.height - sp(self.words_sp) * 2.2) / 2.0 - dp(7), 1.0)
+        return max(min(self.width, self.height - self.head_px) / 2.0 - dp(7), 1.0)
 
     @property
     def middle(self) -> tuple[float, float]:
@@ -75,7 +80,7 @@ class EqualAreaNet(Widget):
 
     @property
     def _tall(self) -> float:
-        return 2.0 * self.radius + dp(14) + sp(self.words_sp) * 2.2
+        return 2.0 * self.radius + dp(14) + self.head_px
 
     def to_page(self, v: np.ndarray) -> np.ndarray:
         """Places (n, 2) in pixels of vectors (n, 3) of any sign."""
@@ -117,7 +122,11 @@ class EqualAreaNet(Widget):
         add_mesh(group, theme.rule, cross)
         words = PAINTS.words("N", sp(self.words_sp), bold=True)
         self.words_boxes["N"] = add_words(
-            group, words, theme.ink, self.middle[0] - words.width / 2, self.middle[1] + radius + dp(2)
+            group,
+            words,
+            theme.ink,
+            self.middle[0] - words.width / 2,
+            self.middle[1] + radius + dp(self.marker_dp * 0.5 + 1.0),
         )
         self._drawn_frame = True
 

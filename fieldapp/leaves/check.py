@@ -7,7 +7,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from kivy.app import App
-from kivy.metrics import dp, sp
+from kivy.metrics import dp
 from kivy.properties import BooleanProperty, ListProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
@@ -18,6 +18,7 @@ from fieldapp.drawing.net import EqualAreaNet
 from fieldapp.drawing.plan import PlanSketch
 from fieldapp.leaves import load_kv, scenes
 from fieldapp.leaves.parts import Choice
+from fieldapp.look.form import TOUCH_DP
 from fieldapp.states import Change
 
 if TYPE_CHECKING:
@@ -194,7 +195,8 @@ class CheckLeaf(FloatLayout):
         box = self._picture_box
         box.clear_widgets()
         self.pictures.size_hint_y, self.legend.size_hint_y = None, None
-        self.pictures.height = dp(max(self.form.line_dp(self.form.small_sp) + 14, 40))
+        least = 40.0 if self.form.low else TOUCH_DP
+        self.pictures.height = dp(max(self.form.line_dp(self.form.small_sp) + 14.0, least))
         self.legend.height = dp(self.form.line_dp(self.form.small_sp) + 6)
         if self.form.low:
             box.add_widget(self.net if self.picture == "net" else self.plan)
@@ -252,10 +254,10 @@ class CheckLeaf(FloatLayout):
         edge, gap = dp(form.edge_dp), dp(form.gap_dp)
         column = BoxLayout(orientation="vertical", padding=(edge, gap, edge, gap), spacing=gap)
         self._picture_box.size_hint_y = self.funnel.size_hint_y = None
-        extra = self.pictures.height + self.legend.height + sp(form.small_sp) * 2.2 + 2 * gap
+        extra = self.pictures.height + self.legend.height + self.net.head_px + 2 * gap
         across = dp(form.width_dp) - 2 * edge
-        # On a tablet the words below the picture stay on the screen without scrolling.
-        most = dp(form.log_height_dp) * 0.52 if form.large else across + extra
+        # On a tablet the words below the picture stay on the screen without scrolling, on a phone the picture does.
+        most = dp(form.log_height_dp) * 0.52 if form.large else dp(form.log_height_dp) - 2 * gap
         self._picture_box.height = min(across + extra, most)
         self.funnel.height = (
             dp(form.log_height_dp) * 0.23 if form.large else dp(max(form.width_dp * 0.62, 220))

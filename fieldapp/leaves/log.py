@@ -214,9 +214,11 @@ class LogLeaf(BoxLayout):
         mending = self.page.entry.mending
         for chip, line in zip(chips, (*lines, *[None] * (len(chips) - len(lines))), strict=True):
             _fill_chip(chip, line, mending)
+            if line is not None and self.form.recent_columns == 1:
+                chip.text = f"{line.text}  {line.feature.value}"
 
     def _recent_columns(self) -> int:
-        return max(int(self.form.log_width_dp / (195.0 if self.form.large else 170.0)), 2)
+        return self.form.recent_columns
 
     def _recent_rows(self) -> int:
         spare = self._spare_dp()
@@ -286,7 +288,7 @@ class LogLeaf(BoxLayout):
                 self.add_widget(widget)
             if form.shows_recent:
                 self.add_widget(self.recent_row)
-            else:
+            elif self._spare_dp() > form.gap_dp:
                 self.add_widget(Widget())
         self._show_pad()
         if self.page is not None:

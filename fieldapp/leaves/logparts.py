@@ -5,7 +5,7 @@
 from __future__ import annotations
 
 from kivy.app import App
-from kivy.properties import BooleanProperty, StringProperty
+from kivy.properties import BooleanProperty, NumericProperty, StringProperty
 from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.utils import get_hex_from_color
@@ -50,6 +50,7 @@ class RecentChip(BoxLayout):
     reading_id = StringProperty("")
     text = StringProperty("")
     shape = StringProperty("dot")
+    key_width = NumericProperty(48)
     struck_out = BooleanProperty(False)
     being_mended = BooleanProperty(False)
 

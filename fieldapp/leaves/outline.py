@@ -150,7 +150,7 @@ class Outline(FloatLayout):
             strip = self.page.strip
             self.ids.strip.sign = strip.sign.value
             self.ids.strip.headline = strip.headline
-            self.ids.strip.figures = self._shortened(strip.figures)
+            self.ids.strip.figures = strip.short_figures if self._narrow else strip.figures
         if change & Change.PLACE:
             self._mark_demo()
         for name in self._behind:
@@ -162,11 +162,9 @@ class Outline(FloatLayout):
             if isinstance(child, Sheet) and hasattr(child, "refresh"):
                 child.refresh(change)
 
-    def _shortened(self, figures: str) -> str:
-        """On a narrow strip the line says its angle and interval without repeating what they are between."""
-        if self.form is None or self.form.width_dp >= 560.0:
-            return figures
-        return figures.removeprefix("cleavage ").replace(" of the hinge", "", 1)
+    @property
+    def _narrow(self) -> bool:
+        return self.form is not None and self.form.width_dp < 560.0
 
     def _bring_up_to_date(self) -> None:
         for name in self.names_shown:

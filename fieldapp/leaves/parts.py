@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING
 
 from kivy.properties import (
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
     from kivy.uix.widget import Widget
 
 SHRINK = 0.93
+TAG = re.compile(r"\[[^]]*]")  # of markup
 LEAST_SHARE = 0.5
 
 
@@ -68,13 +70,12 @@ class Words(Label):
         if self.fit == "line" or self.text_size[0] is None:
             return True
         # A word wider than the line would be cut in two.
-        if self.markup:
-            return True
+        text = TAG.sub("", self.text) if self.markup else self.text
         room = self.text_size[0] - self.padding[0] - self.padding[2]
         if self.fit == "one":
             lines = self._label._cached_lines  # noqa: SLF001 - Kivy tells nowhere else whether it wrapped
-            return self._label.get_extents(self.text)[0] <= room - 1 and len(lines) <= 1
-        return all(self._label.get_extents(word)[0] <= room + 1 for word in self.text.split())
+            return self._label.get_extents(text)[0] <= room - 1 and len(lines) <= 1
+        return all(self._label.get_extents(word)[0] <= room + 1 for word in text.split())
 
 
 class Key(ButtonBehavior, Words):

@@ -100,10 +100,10 @@ def plan_scene(plan: PlanState) -> PlanScene:
     outcrops = []
     for outcrop in plan.outcrops:
         planes = [
-            PlanPlane(feature, *attitude)
-            for feature, attitude in (
-                (Feature.BEDDING, outcrop.bedding),
-                (Feature.CLEAVAGE, outcrop.cleavage),
+            PlanPlane(feature, *attitude, overturned)
+            for feature, attitude, overturned in (
+                (Feature.BEDDING, outcrop.bedding, outcrop.overturned),
+                (Feature.CLEAVAGE, outcrop.cleavage, False),
             )
             if attitude is not None
         ]
@@ -137,7 +137,10 @@ def intersection_source(check: FoldCheck) -> str:
     """How many lines the mean intersection comes from."""
     if check.intersection is None:
         return f"{check.readings.intersection} read"
-    return f"{check.intersection.measured} read, {check.intersection.computed} computed"
+    read, computed = check.intersection.measured, check.intersection.computed
+    if not computed:
+        return f"from {read} lines"
+    return f"{read} read, {computed} computed" if read else f"from {computed} computed"
 
 
 def next_words(check: FoldCheck) -> tuple[str, str]:

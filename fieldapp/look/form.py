@@ -9,8 +9,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 GOOD_KEY_DP = 88.0  # 14 mm
+TOUCH_DP = 48.0  # the smallest thing to touch beside the pad, each way where there is room, 7.6 mm
 FAIR_KEY_DP = 70.0  # below this the direction grid gives its room to the keys and takes turns with them
-LEAST_WITH_RECENT_DP = 46.0  # where keys would be lower than this, the row of past readings gives its room
+LEAST_WITH_RECENT_DP = 44.0  # where keys would be lower than this, the row of past readings gives its room
 LEAST_SPLIT_DP = (960.0, 560.0)  # Log and Check side by side from here on
 LOW_DP = 480.0  # lower than this and wider than high: a phone on its side
 LINE = 1.26  # height of a line of type, as a share of its size
@@ -114,8 +115,8 @@ class Form:
 
     @property
     def figure_lines(self) -> float:
-        """Lines for the figures below the sentence: two on a phone whose type was made larger."""
-        return 2.0 if self.font_scale > 1.15 and self.width_dp < 400.0 else 1.0
+        """Lines for the figures below the sentence: two where long ones would be set too small, on a phone on end."""
+        return 2.0 if self.font_scale > 1.45 and self.width_dp < 400.0 else 1.0
 
     @property
     def tabs_dp(self) -> float:
@@ -125,7 +126,8 @@ class Form:
     @property
     def place_dp(self) -> float:
         """The row that says where we stand."""
-        return max(self.line_dp(self.body_sp) + 10.0, 34.0 if self.low else 40.0)
+        lines = self.line_dp(self.body_sp) + (self.line_dp(self.small_sp) if self.narrow else 10.0)
+        return max(lines, 44.0)
 
     @property
     def feature_dp(self) -> float:
@@ -136,12 +138,19 @@ class Form:
     @property
     def check_dp(self) -> float:
         """The words of the entry check: two lines."""
-        return max(self.line_dp(self.small_sp, 2.0) + 8.0, 44.0)
+        return max(self.line_dp(self.small_sp, 2.0) + 8.0, TOUCH_DP)
 
     @property
     def recent_dp(self) -> float:
         """One row of past readings."""
-        return max(self.line_dp(self.small_sp) + 16.0, 46.0 if self.large else 40.0)
+        return max(self.line_dp(self.small_sp) + 16.0, TOUCH_DP)
+
+    @property
+    def recent_columns(self) -> int:
+        """Past readings in a row, each with its keys; the last one alone on the narrowest phones."""
+        words = 9.0 * 0.58 * self.small_sp * self.font_scale  # "045/30 SE"
+        least = 2.0 * TOUCH_DP + 28.0 + words
+        return max(int((self.log_width_dp - 2.0 * self.edge_dp + self.gap_dp) / (least + self.gap_dp)), 1)
 
     @property
     def log_width_dp(self) -> float:

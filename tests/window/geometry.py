@@ -6,6 +6,7 @@ from __future__ import annotations
 
 SLACK_PX = 1.5
 LEAST_TYPE_DP = 9.5  # smaller words than this are not read on an outcrop
+LEAST_TOUCH_DP = 44.0  # 7 mm; what a finger finds that looks for it (common practice, no source)
 
 
 def shown(widget):
@@ -44,6 +45,7 @@ def faults(top) -> list[str]:
             if outside and parent.get_root_window() is not parent:
                 place = f"{type(parent).__name__} {parent.pos} {parent.size}"
                 found.append(f"{name} at {widget.pos} {widget.size} leaves its {place}")
+        found += touch_faults(widget)
         if isinstance(widget, Label) and widget.text:
             wide, high = widget.texture_size
             if wide > widget.width + SLACK_PX or high > widget.height + SLACK_PX:
@@ -58,6 +60,19 @@ def faults(top) -> list[str]:
         if boxes:
             found += words_faults(widget, boxes)
     return found
+
+
+def touch_faults(widget) -> list[str]:
+    """List a key with a sign that is too small to touch; tests of the form hold the keys of the pad."""
+    from kivy.metrics import Metrics
+
+    from fieldapp.leaves.keys import DirectionGrid, KeyPad
+    from fieldapp.leaves.parts import SignKey
+
+    if not isinstance(widget, SignKey) or isinstance(widget.parent, KeyPad | DirectionGrid):
+        return []
+    least = min(widget.width, widget.height) / Metrics.density
+    return [f"the key {widget.sign!r} is {least:.0f} dp small"] if least < LEAST_TOUCH_DP - 0.1 else []
 
 
 def words_faults(widget, boxes) -> list[str]:
