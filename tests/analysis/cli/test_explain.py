@@ -1,0 +1,117 @@
+"""hingewise explain: the keys it gives, the cautions it never leaves out, and what it does without a hinge."""
+
+from __future__ import annotations
+
+import json
+
+import pytest
+
+from analysis.demo import demo_readings
+from analysis.files.csvfile import write_readings
+from analysis.strain.cautions import CAUTIONS
+
+# Issue 6, item 3.
+KEYS = {
+    "fold", "fold_fault_angle_deg", "fold_fault_se_deg", "transection_deg", "se_deg", "explanations",
+    "likelihood_ratio", "separation_se", "readings_to_separate", "can_be_told_apart", "because", "cautions",
+}  # fmt: skip
+EXPLANATION_KEYS = {"name", "gamma", "displacement_km", "predicted_transection_deg", "loglik"}
+
+
+@pytest.fixture(scope="module")
+def mossgarth(tmp_path_factory):
+    """Write the invented folds beside the Tarrow Fault."""
+    path = tmp_path_factory.mktemp("explain") / "mossgarth.csv"
+    write_readings(path, demo_readings())
+    return path
+
+
+@pytest.fixture
+def told(run, mossgarth):
+    """Give the answers for the three folds, by name."""
+    result = run(
+        "explain", mossgarth, "--fault-strike", 52, "--sense", "sinistral", "--zone-width-km", 2, "--json"
+    )
+    assert result.exit_code == 0, result.output
+    return {one["fold"]: one for one in json.loads(result.stdout)}
+
+
+def test_json_has_the_keys_of_the_brief_and_no_others(told):
+    """Each fold is one object with exactly the keys asked for, each explanation too."""
+    assert set(told) == {"Mossgarth fold", "Low Mossgarth fold", "Mossgarth Edge fold"}
+    for one in told.values():
+        assert set(one) == KEYS
+        assert [set(each) for each in one["explanations"]] == [EXPLANATION_KEYS] * 4
+        assert isinstance(one["can_be_told_apart"], bool)
+        assert one["readings_to_separate"] is None or isinstance(one["readings_to_separate"], int)
+        assert one["because"]
+        assert one["cautions"] == list(CAUTIONS)
+
+
+def test_the_figures_are_those_of_the_method(told):
+    """Shear strain is cot(angle) - 1, displacement that times the width, predicted transection as METHOD section 6."""
+    one = told["Low Mossgarth fold"]
+    angle = one["fold_fault_angle_deg"]
+    assert 0.0 < angle < 10.0  # the demo: hinge 057, fault 052
+    rotation, partitioned = one["explanations"][:2]
+    # METHOD section 6: at 5 degrees from the fault gamma is 10.4 and the transection 0.43 degrees.
+    assert rotation["gamma"] == pytest.approx(10.4, rel=0.2)
+    assert rotation["predicted_transection_deg"] == pytest.approx(0.43, abs=0.15)
+    assert rotation["displacement_km"] == pytest.approx(2.0 * rotation["gamma"], rel=1e-5)
+    assert partitioned["predicted_transection_deg"] == 0.0
+    assert partitioned["gamma"] is None
+    assert one["can_be_told_apart"] is False
+    assert one["readings_to_separate"] is None
+
+
+def test_the_words_carry_sentence_reasons_and_cautions(run, mossgarth, told):
+    """As text every fold has its sentence, its explanations, the reasons in order and all cautions."""
+    result = run("explain", mossgarth, "--fault-strike", 52, "--sense", "sinistral", "--zone-width-km", 2)
+    assert result.exit_code == 0
+    for name, one in told.items():
+        block = result.stdout.split(f"{name}\n")[1].split("\n\n\n")[0]
+        places = [block.index(sentence) for sentence in [*one["because"], *CAUTIONS]]
+        assert places == sorted(places)
+    assert result.stdout.count(CAUTIONS[0]) == len(told)
+
+
+@pytest.mark.parametrize("options", [(), ("--sense", "dextral"), ("--json",)])
+def test_cautions_stand_wherever_an_explanation_is_named(run, mossgarth, options):
+    """Without sense and width, for a dextral fault, as text and as JSON."""
+    result = run("explain", mossgarth, "--fault-strike", 100, "--fold", "Mossgarth fold", *options)
+    assert result.exit_code == 0
+    assert "rotation in simple shear" in result.stdout.lower()
+    for caution in CAUTIONS:
+        assert caution in result.stdout
+
+
+def test_a_fold_without_a_hinge_is_named_and_left_out(run, tmp_path):
+    """Cleavage alone has no hinge: the fold is named on the error stream, and the array is empty."""
+    path = tmp_path / "cleavage.csv"
+    rows = ["Bare,1,cleavage,45,80,,", "Bare,1,cleavage,47,82,,"]
+    path.write_text(
+        "fold,outcrop,feature,strike_deg,dip_deg,trend_deg,plunge_deg\n" + "\n".join(rows) + "\n",
+        encoding="utf-8",
+    )
+    result = run("explain", path, "--fault-strike", 52, "--json")
+    assert result.exit_code == 0
+    assert json.loads(result.stdout) == []
+    assert "Bare: no hinge yet" in result.stderr
+
+
+@pytest.mark.parametrize(
+    ("options", "words"),
+    [
+        (("--fault-strike", 400), "fault strike"),
+        (("--fault-strike", 52, "--zone-width-km", 0), "zone width"),
+        (("--fault-strike", 52, "--sense", "left"), "sense"),
+        ((), "--fault-strike"),
+    ],
+)
+def test_a_fault_that_is_none_is_refused_in_one_line(run, mossgarth, options, words):
+    """A strike beyond 360, a zone of no width, an unknown sense and no strike at all are told plainly."""
+    result = run("explain", mossgarth, *options)
+    assert result.exit_code == 2
+    assert result.stdout == ""
+    (line,) = result.stderr.splitlines()
+    assert words in line
