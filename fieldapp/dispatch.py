@@ -43,6 +43,8 @@ class ThreadDispatch:
         """Run `work` on the executor; see Dispatch."""
 
         def ended(future: Future[T]) -> None:
+            if future.cancelled():  # the app is closing; nobody waits for it any more
+                return
             error = future.exception()
             if isinstance(error, Exception):
                 self._hop(lambda: failed(error))

@@ -335,6 +335,21 @@ def test_work_runs_elsewhere_and_comes_back_on_the_users_thread():
     assert where != [threading.current_thread()]
 
 
+def test_work_given_up_when_the_app_closes_says_nothing(caplog):
+    """Work that was still waiting is dropped without a value, an error or a line in the log."""
+    hops, begun, go_on = Queue(), threading.Event(), threading.Event()
+    executor = ThreadPoolExecutor(1)
+    dispatch = ThreadDispatch(executor, hops.put)
+    executor.submit(lambda: (begun.set(), go_on.wait(10)))
+    assert begun.wait(10)
+    dispatch(lambda: 42, print, print)
+    executor.shutdown(wait=False, cancel_futures=True)
+    go_on.set()
+    executor.shutdown()
+    assert hops.empty()
+    assert caplog.text == ""
+
+
 def test_at_once_runs_on_the_spot():
     """The plain dispatch gives value or error at once."""
     got, failed = [], []
