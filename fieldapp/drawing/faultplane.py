@@ -125,7 +125,7 @@ class FaultPlane(Widget):
     def _measure(self) -> None:
         line = self._line()
         gutter = max(PAINTS.words(text, sp(self.words_sp)).width for text in ("−20°", "+20°")) + dp(8)
-        upper = 2.2 * line if self._needs_title() is not None else 1.15 * line
+        upper = 2.2 * line if self._needs_title() is not None else 1.5 * line
         self._box = (gutter, 2.2 * line, self.width - dp(8), self.height - upper)
 
     def _needs_title(self) -> str | None:
@@ -260,7 +260,7 @@ class FaultPlane(Widget):
         room = (left + dp(3), bottom + dp(1), right - dp(2), top - dp(1))
         long = right - left >= LONG_WORDS * size
         drawn = {
-            curve.label: np.concatenate([spaced(part, dp(7)) for part in self.curves_drawn[curve.label]])
+            curve.label: np.concatenate([spaced(part, dp(5)) for part in self.curves_drawn[curve.label]])
             for curve in scene.curves
             if self.curves_drawn[curve.label]
         }

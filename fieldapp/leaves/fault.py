@@ -28,6 +28,7 @@ if TYPE_CHECKING:
     from fieldapp.states import FaultState
 
 SENSES = (("sinistral", "Sinistral"), ("dextral", "Dextral"), ("unknown", "Unknown"))
+BESIDE_LINES = 11.0  # lines of small type that the picture needs; on a lower page it stands among the words
 SPEAKING = (
     "headline",
     "angle",
@@ -189,7 +190,8 @@ class FaultLeaf(BoxLayout):
         if form is None or self._state is None:
             return
         parts, state = self._parts, self._state
-        shown, beside = state.curves is not None, form.split or form.low
+        shown = state.curves is not None
+        beside = form.split or (form.low and form.log_height_dp >= form.line_dp(form.small_sp, BESIDE_LINES))
         column, picture, side = parts["column"], parts["picture"], parts["side"]
         for widget in (self.plane, side):
             if widget.parent is not None:
@@ -200,7 +202,7 @@ class FaultLeaf(BoxLayout):
             self.add_widget(side)
         elif shown:
             picture.add_widget(self.plane)
-            picture.height = dp(form.log_height_dp * 0.42 if form.large else max(form.width_dp * 0.92, 300.0))
+            picture.height = dp(self._picture_dp(form))
         silent = {parts["ask"]} if shown else {parts[name] for name in SPEAKING}
         if beside:
             silent.add(picture)
@@ -209,6 +211,13 @@ class FaultLeaf(BoxLayout):
             column.clear_widgets()
             for part in kept:
                 column.add_widget(part)
+
+    @staticmethod
+    def _picture_dp(form: Form) -> float:
+        """Height of the picture where it stands among the words."""
+        if form.low:
+            return form.line_dp(form.small_sp, BESIDE_LINES)
+        return form.log_height_dp * 0.42 if form.large else max(form.width_dp * 0.92, 300.0)
 
     # Typing
 
