@@ -130,5 +130,5 @@ class PlaceRow(ButtonBehavior, BoxLayout):
         self.outcrop = place.outcrop_title
         # A phone on its side shows no bar that marks the demo.
         marked = place.demo and App.get_running_app().form.low
-        self.fold = f"Demo, invented: {place.fold_title}" if marked else place.fold_title
+        self.fold = f"Demo: {place.fold_title}" if marked else place.fold_title
         self.position = place.position_text or "no position"

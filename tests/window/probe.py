@@ -117,7 +117,6 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
             look(f"Fault, demo, {fold_name}")
         app.page.set_fault(replace(app.page.fault, strike_deg=110.0, zone_width_m=None, sense="dextral"))
         look("Fault, demo, dextral and of no known width")
-        app.page.choose_fold(app.page.place.folds[0])
         outline.show("Log")
         outline.tell_trouble("Something went wrong on the screen. Your readings are safe.")
         look("Log, demo and a mishap told")
