@@ -33,7 +33,7 @@ def t_tail(t: float, freedom: float) -> float:
 def t_quantile(probability: float, freedom: float) -> float:
     """Quantile of Student's t, for probability in (0, 1) and any positive degrees of freedom.
 
-    Starts from Wallace's (1959) normal approximation and mends it by Newton's method on the logarithm of the
+    Starts from Wallace's (1959) normal approximation and mends it by steps of second order on the logarithm of the
     tail, which is nearly straight in the logarithm of t. Raises SettingError outside that range.
     """
     if not (0.0 < probability < 1.0 and freedom > 0.0):
@@ -54,8 +54,11 @@ def t_quantile(probability: float, freedom: float) -> float:
         have = max(t_tail(t, freedom), _TINY)
         slope = math.exp(density - 0.5 * (freedom + 1.0) * math.log1p(t * t / freedom)) * t / have
         step = math.log(have / tail) / slope
+        bend = 1.0 - (freedom + 1.0) * t * t / (freedom + t * t) + slope
+        if abs(step) < 0.1:
+            step *= 1.0 - 0.5 * step * bend
         t *= math.exp(max(-2.0, min(2.0, step)))
-        if abs(step) < 1e-12:
+        if abs(step) < 1e-4:  # each step is off by about the cube of it
             break
     return math.copysign(t, probability - 0.5)
 
