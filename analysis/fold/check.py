@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
 from analysis.fold.decision import decide
+from analysis.fold.fits import FoldFits, fit_one_fold
 from analysis.fold.intersection import computed_lines, limb_lines, side_of_outcrops
 from analysis.fold.limbs import Limbs, find_limbs, sides
 from analysis.fold.records import (
@@ -19,18 +21,11 @@ from analysis.fold.records import (
     SideEstimate,
 )
 from analysis.fold.settings import CheckSettings
-from analysis.fold.transection import (
-    Transection,
-    fit_cleavage,
-    fit_cleavage_to_lines,
-    fit_hinge,
-    fit_lines,
-    transection,
-)
 from analysis.orient.features import Feature
 from analysis.orient.vectors import lower_hemisphere
-from analysis.stats.axes import USUAL_SCATTER_DEG, AxisFit, confidence_ellipse
+from analysis.stats.axes import ALONG, USUAL_SCATTER_DEG, AxisFit, confidence_ellipse, fit_axis
 from analysis.stats.moments import COUNT
+from analysis.stats.sums import FEATURES
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -39,15 +34,9 @@ if TYPE_CHECKING:
     from analysis.stats.sums import RunningSums
 
 DEFAULT: Final = CheckSettings()
-
-
-class _Rows(NamedTuple):
-    """Moments (outcrops, 24) by feature."""
-
-    bedding: Floats
-    cleavage: Floats
-    intersection: Floats
-    hinge: Floats
+_BEDDING, _CLEAVAGE, _LINES = (
+    FEATURES.index(f) for f in (Feature.BEDDING, Feature.CLEAVAGE, Feature.INTERSECTION)
+)
 
 
 class _Beds(NamedTuple):
@@ -72,42 +61,44 @@ def check_fold(
     that passes the limit. Without, it takes about a millisecond; `analysis.fold.decision.add_forecast` adds
     the rest later.
     """
-    counts = Counts(
-        bedding=sums.count(Feature.BEDDING),
-        cleavage=sums.count(Feature.CLEAVAGE),
-        intersection=sums.count(Feature.INTERSECTION),
-        hinge=sums.count(Feature.HINGE),
-        outcrops=sums.outcrops_read,
-    )
-    rows = _Rows(*(sums.by_outcrop(feature) for feature in Feature))
-    hinge = _hinge(rows, counts, settings)
-    pole = None
-    if counts.cleavage:
-        pole = _estimate(fit_cleavage(rows.cleavage, rows.intersection), "planes", settings)
+    counts = _counts(sums.rows)
+    fits = fit_one_fold(sums.rows, counts)
+    hinge, pole = _estimates(fits, counts, settings)
     beds = None if hinge is None or not counts.bedding else _beds(sums, hinge.fit, pole)
-    lines = fit_lines(rows.intersection) if counts.intersection else None
-    planes = None
-    if pole is not None:
-        # Where lines were read too, the planes by themselves are held against the lines.
-        planes = pole.fit if lines is None else fit_cleavage(rows.cleavage)
-    found, by_planes, by_lines = _transections(rows, hinge, pole, planes)
     check = FoldCheck(
         fold=fold,
         settings=settings,
         readings=counts,
         hinge=hinge,
         cleavage=pole,
-        intersection=_mean_intersection(rows, lines, hinge, pole, beds, settings),
+        intersection=_mean_intersection(sums.rows, fits.lines, hinge, pole, beds, settings),
         limbs=None if beds is None else beds.limbs,
-        limb_lines=_limb_lines(rows, beds, pole),
+        limb_lines=_limb_lines(sums.rows, beds, pole),
         estimates=tuple(
             SideEstimate(source, float(t.delta_deg), float(t.fixed_variance) ** 0.5)
-            for source, t in (("planes", by_planes), ("lines", by_lines))
+            for source, t in (("planes", fits.by_planes), ("lines", fits.by_lines))
             if t is not None and np.isfinite(t.fixed_variance)
         ),
     )
-    return decide(
-        check, sums, found, _warnings(rows, check, beds, lines), planes=planes, lines=lines, forecast=forecast
+    warnings = _warnings(sums.rows, check, beds, fits.lines)
+    return decide(check, sums, fits, warnings, forecast=forecast)
+
+
+def _counts(rows: Floats) -> Counts:
+    held = rows[..., COUNT]
+    outcrops = np.count_nonzero(held.sum(axis=1) > 0.5)
+    bedding, cleavage, intersection, hinge = (round(count) for count in held.sum(axis=0).tolist())
+    return Counts(bedding, cleavage, intersection, hinge, int(outcrops))
+
+
+def _estimates(
+    fits: FoldFits, counts: Counts, settings: CheckSettings
+) -> tuple[AxisEstimate | None, AxisEstimate | None]:
+    """Hinge and cleavage pole with their ellipses."""
+    source = "both" if counts.bedding and counts.hinge else "bedding" if counts.bedding else "hinge lines"
+    return (
+        None if fits.hinge is None else _estimate(fits.hinge, source, settings),
+        None if fits.cleavage is None else _estimate(fits.cleavage, "planes", settings),
     )
 
 
@@ -117,16 +108,6 @@ def _estimate(fit: AxisFit, source: str, settings: CheckSettings) -> AxisEstimat
         e = confidence_ellipse(fit, settings.confidence)
         ellipse = EllipseDeg(float(e.major_deg), float(e.minor_deg), e.major_axis, e.minor_axis)
     return AxisEstimate(lower_hemisphere(fit.vector), source, ellipse, fit)
-
-
-def _hinge(rows: _Rows, counts: Counts, settings: CheckSettings) -> AxisEstimate | None:
-    if counts.bedding < 2 and not counts.hinge:
-        return None
-    fit = fit_hinge(rows.bedding, rows.hinge)
-    if not np.isfinite(fit.even_covariance).all() and not counts.hinge:
-        return None  # bedding all alike: every direction in the bed could be the hinge
-    source = "both" if counts.bedding and counts.hinge else "bedding" if counts.bedding else "hinge lines"
-    return _estimate(fit, source, settings)
 
 
 def _beds(sums: RunningSums, hinge: AxisFit, pole: AxisEstimate | None) -> _Beds:
@@ -139,7 +120,7 @@ def _beds(sums: RunningSums, hinge: AxisFit, pole: AxisEstimate | None) -> _Beds
 
 
 def _mean_intersection(
-    rows: _Rows,
+    rows: Floats,
     measured: AxisFit | None,
     hinge: AxisEstimate | None,
     pole: AxisEstimate | None,
@@ -153,45 +134,33 @@ def _mean_intersection(
     """
     fit, computed = measured, 0
     if hinge is not None and pole is not None and beds is not None:
-        bare = np.where(rows.intersection[:, COUNT, np.newaxis] > 0.5, 0.0, rows.cleavage)
-        scatter = np.array([hinge.fit.scatter_rad[0], pole.fit.scatter_rad[0], np.radians(USUAL_SCATTER_DEG)])
+        lines = rows[:, _LINES]
+        bare = np.where(lines[:, COUNT, np.newaxis] > 0.5, 0.0, rows[:, _CLEAVAGE])
+        scatter = (
+            hinge.fit.scatter_rad[_BEDDING],
+            pole.fit.scatter_rad[_CLEAVAGE],
+            math.radians(USUAL_SCATTER_DEG),
+        )
         extra = computed_lines(beds.cells, beds.owner, beds.side, bare, scatter)
         computed = len(extra)
         if computed:
-            fit = fit_lines(np.concatenate([rows.intersection, extra]))
+            fit = fit_axis(np.concatenate([lines, extra]), ALONG)
     if fit is None:
         return None
     count = 0 if measured is None else round(float(measured.readings))
     return MeanIntersection(_estimate(fit, "lines", settings), count, computed)
 
 
-def _limb_lines(rows: _Rows, beds: _Beds | None, pole: AxisEstimate | None) -> tuple[LimbLine, ...]:
+def _limb_lines(rows: Floats, beds: _Beds | None, pole: AxisEstimate | None) -> tuple[LimbLine, ...]:
     if beds is None or beds.limbs is None or pole is None:
         return ()
-    return limb_lines(beds.limbs, pole.vector, rows.intersection, beds.outcrop_side)
+    return limb_lines(beds.limbs, pole.vector, rows[:, _LINES], beds.outcrop_side)
 
 
-def _transections(
-    rows: _Rows, hinge: AxisEstimate | None, pole: AxisEstimate | None, planes: AxisFit | None
-) -> tuple[Transection | None, Transection | None, Transection | None]:
-    """Transection from all there is, from cleavage planes alone, and from measured lines alone."""
-    if hinge is None:
-        return None, None, None
-    found = by_planes = by_lines = None
-    if rows.intersection[:, COUNT].any():
-        alone = fit_cleavage_to_lines(rows.intersection)
-        found = by_lines = transection(hinge.fit, alone, (rows.bedding, rows.hinge, rows.intersection))
-    if pole is not None and planes is not None:
-        found = by_planes = transection(hinge.fit, pole.fit, rows)
-        if planes is not pole.fit:
-            by_planes = transection(hinge.fit, planes, (rows.bedding, rows.hinge, rows.cleavage))
-    return found, by_planes, by_lines
-
-
-def _warnings(rows: _Rows, check: FoldCheck, beds: _Beds | None, lines: AxisFit | None) -> list[str]:
+def _warnings(rows: Floats, check: FoldCheck, beds: _Beds | None, lines: AxisFit | None) -> list[str]:
     warnings = []
     if lines is not None and beds is not None and beds.limbs is not None:
-        read = beds.outcrop_side[rows.intersection[:, COUNT] > 0.5]
+        read = beds.outcrop_side[rows[:, _LINES, COUNT] > 0.5]
         if len(set(read.tolist()) - {-1}) == 1 and (read >= 0).all():
             limb = beds.limbs.both[int(read[0])].name
             warnings.append(

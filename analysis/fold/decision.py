@@ -10,7 +10,7 @@ from analysis.fold import blocks
 from analysis.fold.advice import next_reading
 from analysis.fold.forecast import settle, split
 from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers
-from analysis.fold.transection import FEWEST_CLUSTERS, Transection, fit_cleavage_to_lines
+from analysis.fold.transection import FEWEST_CLUSTERS
 from analysis.fold.watch import (
     LINES_AT_FIRST_LOOK,
     PLANES_AT_FIRST_LOOK,
@@ -24,26 +24,22 @@ from analysis.orient.features import Feature
 from analysis.stats.quantiles import t_quantile
 
 if TYPE_CHECKING:
+    from analysis.fold.fits import FoldFits
     from analysis.fold.settings import CheckSettings
-    from analysis.stats.axes import AxisFit
+    from analysis.fold.transection import Transection
     from analysis.stats.sums import RunningSums
 
 
 def decide(
     check: FoldCheck,
     sums: RunningSums,
-    transection: Transection | None,
+    fits: FoldFits,
     warnings: list[str],
     *,
-    planes: AxisFit | None,
-    lines: AxisFit | None,
     forecast: bool,
 ) -> FoldCheck:
-    """Complete a check with its figures, its verdict and, if asked, its forecast.
-
-    `planes` and `lines` are the fits of cleavage planes and of intersection lines each by themselves.
-    """
-    counts, settings = check.readings, check.settings
+    """Complete a check with its figures, its verdict and, if asked, its forecast."""
+    counts, settings, transection = check.readings, check.settings, fits.transection
     waiting = [s for s in (blocks.missing_for_hinge(counts), blocks.missing_for_cleavage(counts)) if s]
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
         angle = {} if transection is None or check.hinge is None else _angle(transection)
@@ -52,7 +48,7 @@ def decide(
 
     clear = bool(hinge_is_clear(check.hinge.fit))
     cluster = blocks.one_cluster(check.hinge.fit, check.limbs)
-    waits, blocked, notes = _kept_back(check, sums, transection, planes, lines)
+    waits, blocked, notes = _kept_back(check, sums, transection, fits)
     waiting += waits
     progress = (
         stream_progress(counts.bedding, counts.hinge),
@@ -180,8 +176,7 @@ def _kept_back(
     check: FoldCheck,
     sums: RunningSums,
     transection: Transection,
-    planes: AxisFit | None,
-    lines: AxisFit | None,
+    fits: FoldFits,
 ) -> tuple[list[str], list[str], list[str]]:
     """Sentences on what to wait for, what blocks, and what else to mind."""
     assert check.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
@@ -197,16 +192,15 @@ def _kept_back(
             waits.append(large)
         blocked.append(blocks.not_cylindrical(check.hinge.fit, counts))
     blocked.append(blocks.outcrops_disagree(transection))
-    if check.cleavage is None and lines is not None:
-        steep = blocks.too_steep_for_lines(check.hinge.vector, lines.vector)
-        alone = fit_cleavage_to_lines(sums.by_outcrop(Feature.INTERSECTION))
-        blocked.append(steep or blocks.flat_by_lines(alone))
-    if planes is not None and lines is not None:
-        angle, differ = blocks.planes_against_lines(planes, lines)
+    if fits.cleavage is None and fits.lines is not None and fits.steep is not None:
+        steep = blocks.too_steep_for_lines(check.hinge.vector, fits.lines.vector)
+        blocked.append(steep or blocks.flat_by_lines(fits.steep))
+    if fits.planes is not None and fits.lines is not None:
+        angle, differ = blocks.planes_against_lines(fits.planes, fits.lines)
         if differ:
             blocked.append(
                 "Cleavage planes and intersection lines disagree: the mean line leaves the mean plane by "
-                f"{degrees(angle)}, more than their errors allow. {blocks.lines_furthest_off(planes, sums)}"
+                f"{degrees(angle)}, more than their errors allow. {blocks.lines_furthest_off(fits.planes, sums)}"
             )
     if not transection.has_sense:
         notes.append(

@@ -14,6 +14,8 @@ from analysis.stats.axes import eigen
 from analysis.stats.moments import COUNT, WIDTH, moments, tensor
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     import numpy.typing as npt
 
     from analysis.fold.limbs import Limbs
@@ -28,7 +30,7 @@ def computed_lines(
     owner: npt.NDArray[np.int64],
     side: npt.NDArray[np.int64],
     cleavage: Floats,
-    scatter_rad: Floats,
+    scatter_rad: Sequence[float],
 ) -> Floats:
     """Moments, (lines, 24), of the lines in which bedding and cleavage meet, outcrop by outcrop and limb by limb.
 
@@ -44,20 +46,22 @@ def computed_lines(
     cleavage
         Moments (outcrops, 24) of cleavage poles.
     scatter_rad
-        (3,), standard deviations of one bedding pole, one cleavage pole and one measured line.
+        Standard deviations of one bedding pole, one cleavage pole and one measured line.
 
     """
     cleaved_here = cleavage[owner, COUNT] > 0.5
     if not cleaved_here.any():
         return np.zeros((0, WIDTH))
     beds, places = _summed(cells[cleaved_here], (owner * 2 + side)[cleaved_here])
-    cleaved = cleavage[places // 2]
-    poles = eigen(tensor(np.stack([beds, cleaved])))[1][..., 0]
-    lines = cross(poles[0], poles[1])
+    outcrops = places // 2
+    first = np.diff(outcrops, prepend=-1) > 0  # they ascend, so each comes once or twice running
+    cleaved, at = cleavage[outcrops[first]], np.cumsum(first) - 1
+    poles = eigen(tensor(np.concatenate([beds, cleaved])))[1][..., 0]
+    lines = cross(poles[: len(beds)], poles[len(beds) :][at])
     sine = np.linalg.norm(lines, axis=-1)
     clear = sine >= _SINE_AT_LEAST
     bed_variance = scatter_rad[0] ** 2 / beds[clear, COUNT]
-    cleavage_variance = scatter_rad[1] ** 2 / cleaved[clear, COUNT]
+    cleavage_variance = scatter_rad[1] ** 2 / cleaved[at[clear], COUNT]
     weight = 2.0 * scatter_rad[2] ** 2 * sine[clear] ** 2 / (bed_variance + cleavage_variance)
     return moments(lines[clear] / sine[clear, np.newaxis], weight)
 

@@ -11,7 +11,7 @@ import numpy as np
 from analysis.orient.attitudes import Plane
 from analysis.orient.vectors import lower_hemisphere
 from analysis.stats.axes import eigen
-from analysis.stats.moments import COUNT, tensor
+from analysis.stats.moments import COUNT, TENSOR, product_pairs, tensor
 
 if TYPE_CHECKING:
     import numpy.typing as npt
@@ -65,7 +65,7 @@ def sides(cells: Floats, across: Floats) -> npt.NDArray[np.int64]:
     `across` (3, 2) are two directions at right angles to the hinge. Angles about the hinge are doubled, since
     poles are axes; the cloud of doubled angles is cut across its longest extent.
     """
-    doubled = _doubled_angles(tensor(cells), across)
+    doubled = _doubled_angles(cells, across)
     counts = cells[:, COUNT]
     away = doubled / counts[:, np.newaxis] - doubled.sum(axis=0) / counts.sum()
     _, vectors = np.linalg.eigh((away * counts[:, np.newaxis]).T @ away)
@@ -89,9 +89,9 @@ def find_limbs(
         return None
     sums = np.stack([cells[side == k].sum(axis=0) for k in (0, 1)])
     moment = tensor(sums)
-    doubled = _doubled_angles(moment, across)
+    doubled = _doubled_angles(sums, across)
     radius = np.linalg.norm(doubled, axis=-1)
-    about_hinge = np.einsum("...ij,ik,jk->...", moment, across, across)
+    about_hinge = np.trace(across.T @ moment @ across, axis1=-2, axis2=-1)
     gathered = np.clip(radius / np.maximum(about_hinge, 1e-300), 1e-9, 1.0)
     spread = 0.5 * np.degrees(np.sqrt(-2.0 * np.log(gathered)))
     angles = np.arctan2(doubled[:, 1], doubled[:, 0])
@@ -133,7 +133,8 @@ def _bisected(poles: Floats, cleavage: Floats | None) -> tuple[float, Plane]:
     return 180.0 - between, Plane.from_pole(upright)
 
 
-def _doubled_angles(moment: Floats, across: Floats) -> Floats:
+def _doubled_angles(rows: Floats, across: Floats) -> Floats:
     """Sum of (cos 2a, sin 2a) r^2, shape (..., 2), over axes at angle a about the hinge and r off it."""
-    plane = across.T @ moment @ across
-    return np.stack([plane[..., 0, 0] - plane[..., 1, 1], 2.0 * plane[..., 0, 1]], axis=-1)
+    x, y = across.T
+    cosine = product_pairs(x, x) - product_pairs(y, y)
+    return np.asarray(rows[..., TENSOR] @ np.stack([cosine, 2.0 * product_pairs(x, y)], axis=-1))

@@ -12,9 +12,10 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
-from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge
+from analysis.fold.transection import FoldAxis, fit_fold
 from analysis.orient.features import Feature
 from analysis.stats.moments import WIDTH, row_of_tensor
+from analysis.stats.sums import FEATURES
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -63,21 +64,22 @@ def find_outliers(readings: Mapping[Feature, Floats]) -> tuple[Outlier, ...]:
 def _far_off(
     readings: Mapping[Feature, Floats], kept: Mapping[Feature, npt.NDArray[np.bool_]]
 ) -> list[Outlier]:
-    rows = {
-        feature: _summed(readings[feature][kept[feature]]) if feature in readings else _none()
-        for feature in Feature
-    }
-    bedding, hinge_lines = rows[Feature.BEDDING], rows[Feature.HINGE]
-    planes, lines = rows[Feature.CLEAVAGE], rows[Feature.INTERSECTION]
+    axes = {feature: readings[feature][kept[feature]] for feature in FEATURES if feature in readings}
+    count = {feature: len(axes.get(feature, ())) for feature in FEATURES}
+    # An axis is fitted to tensors; the fourth moments, which give its error, are not asked for here.
+    rows = np.zeros((1, len(FEATURES), WIDTH))
+    for code, feature in enumerate(FEATURES):
+        if count[feature]:
+            rows[0, code] = row_of_tensor(count[feature], axes[feature].T @ axes[feature])
+    cleavage = FoldAxis.CLEAVAGE if count[Feature.CLEAVAGE] else FoldAxis.STEEP
+    hinge, pole = fit_fold(rows, (FoldAxis.HINGE, cleavage)).vector
     result: list[Outlier] = []
-    if bedding[0, 0] >= 2.0 or hinge_lines[0, 0] >= 1.0:
-        hinge = fit_hinge(bedding, hinge_lines).vector
+    if count[Feature.BEDDING] >= 2 or count[Feature.HINGE]:
         result += _beyond(readings, kept, Feature.BEDDING, hinge, off_axis=False)
         result += _beyond(readings, kept, Feature.HINGE, hinge, off_axis=True)
-    if planes[0, 0] >= 1.0 or lines[0, 0] >= 1.0:
-        fit = fit_cleavage(planes, lines) if planes[0, 0] >= 1.0 else fit_cleavage_to_lines(lines)
-        result += _beyond(readings, kept, Feature.CLEAVAGE, fit.vector, off_axis=True)
-        result += _beyond(readings, kept, Feature.INTERSECTION, fit.vector, off_axis=False)
+    if count[Feature.CLEAVAGE] or count[Feature.INTERSECTION]:
+        result += _beyond(readings, kept, Feature.CLEAVAGE, pole, off_axis=True)
+        result += _beyond(readings, kept, Feature.INTERSECTION, pole, off_axis=False)
     return result
 
 
@@ -104,12 +106,3 @@ def _beyond(
     )
     allowed = max(by_chance, _AT_LEAST) * scatter
     return [Outlier(feature, int(k), float(off[k]), allowed) for k in np.flatnonzero(off > allowed)]
-
-
-def _summed(axes: Floats) -> Floats:
-    # An axis is fitted to tensors; the fourth moments, which give its error, are not asked for here.
-    return row_of_tensor(len(axes), axes.T @ axes)[np.newaxis]
-
-
-def _none() -> Floats:
-    return np.zeros((1, WIDTH))

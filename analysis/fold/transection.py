@@ -7,15 +7,19 @@ shape (...); variances are in degrees squared.
 
 from __future__ import annotations
 
+import math
+from enum import IntEnum
 from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
 from analysis.orient.vectors import DOWN, cross
-from analysis.stats.axes import AxisFit, Stream, fit_axis
-from analysis.stats.moments import COUNT, WIDTH, moments
+from analysis.stats.axes import ACROSS, ALONG, UNUSED, AxisFit, KnownAxis, fit_axes
+from analysis.stats.moments import moments
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     import numpy.typing as npt
 
     from analysis.orient.vectors import Floats
@@ -68,6 +72,10 @@ class Transection(NamedTuple):
     fixed_freedom: Floats
     steady_freedom: Floats
 
+    def of(self, which: int) -> Transection:
+        """Take one of several, along the first axis of the leading shape."""
+        return Transection(*(field[which] for field in self))
+
     @property
     def fixed_variance(self) -> Floats:
         """Variance, (...), of one look at readings that are independent."""
@@ -107,49 +115,59 @@ class Transection(NamedTuple):
         return np.where(clustered, np.minimum(mixed, self.steady_freedom), self.steady_freedom)
 
 
-def fit_hinge(bedding: Floats, hinge_lines: Floats) -> AxisFit:
-    """Fit the hinge to moments (..., outcrops, 24) of bedding poles and of hinge lines.
+class FoldAxis(IntEnum):
+    """The axes that the readings of a fold give."""
 
-    The pi-axis of the bedding poles, the mean of the hinge lines, or both weighted by their scatter.
+    HINGE = 0  # from bedding, whose poles lie across it, and from hinge lines
+    CLEAVAGE = 1  # its pole, from cleavage planes, and from intersection lines, which lie across it
+    PLANES = 2  # the cleavage pole from cleavage planes alone
+    STEEP = 3  # the cleavage pole from intersection lines alone, taking cleavage to be steep; see `fit_fold`
+    LINES = 4  # the mean of intersection lines
+
+
+# What bedding, cleavage, intersection lines, hinge lines and the vertical are to each.
+_ROLES: Final = np.array(
+    [
+        [ACROSS, UNUSED, UNUSED, ALONG, UNUSED],
+        [UNUSED, ALONG, ACROSS, UNUSED, UNUSED],
+        [UNUSED, ALONG, UNUSED, UNUSED, UNUSED],
+        [UNUSED, UNUSED, ACROSS, UNUSED, ACROSS],
+        [UNUSED, UNUSED, ALONG, UNUSED, UNUSED],
+    ]
+)
+
+
+def fit_fold(rows: Floats, axes: Sequence[FoldAxis]) -> AxisFit:
+    """Fit some axes of a fold at once.
+
+    Cleavage from intersection lines alone is taken to be steep. The lines lie in it; that it is steep goes in as
+    one line known beforehand, the vertical, which lies in it within STEEP_WITHIN_DEG. Lines from both limbs of a
+    transected fold spread along the cleavage and outweigh that; where they do not spread, the result is the
+    vertical plane through their mean, and for a horizontal hinge the transection is the angle between mean line and
+    hinge in plan.
+
+    Parameters
+    ----------
+    rows
+        Moments, (..., outcrops, features, 24): bedding, cleavage, intersection lines, and hinge lines, which may
+        be left out.
+    axes
+        The axes wanted.
+
+    Returns
+    -------
+    The fits, their leading shape (axes, ...); each with streams in the order of the features.
+
     """
-    return fit_axis([Stream(bedding, along=False), Stream(hinge_lines, along=True)])
+    roles = _ROLES[list(axes)]
+    steep = None
+    if FoldAxis.STEEP in axes:
+        steep = KnownAxis(_VERTICAL, roles[:, -1], math.radians(STEEP_WITHIN_DEG))
+    return fit_axes(rows, roles[:, : rows.shape[-2]], steep)
 
 
-def fit_cleavage(planes: Floats, intersections: Floats | None = None) -> AxisFit:
-    """Fit the cleavage pole to moments (..., outcrops, 24) of cleavage poles, and of intersection lines."""
-    streams = [Stream(planes, along=True)]
-    if intersections is not None:
-        streams.append(Stream(intersections, along=False))
-    return fit_axis(streams)
-
-
-def fit_lines(lines: Floats) -> AxisFit:
-    """Fit the mean of lines to their moments (..., outcrops, 24)."""
-    return fit_axis([Stream(lines, along=True)])
-
-
-def fit_cleavage_to_lines(intersections: Floats) -> AxisFit:
-    """Fit the cleavage pole to moments (..., outcrops, 24) of intersection lines alone, taking cleavage to be steep.
-
-    The lines lie in the cleavage; that it is steep goes in as one line known beforehand, the vertical, which
-    lies in it within STEEP_WITHIN_DEG. Lines from both limbs of a transected fold spread along the cleavage and
-    outweigh that; where they do not spread, the result is the vertical plane through their mean, and for a
-    horizontal hinge the transection is the angle between mean line and hinge in plan.
-    """
-    vertical = np.broadcast_to(_VERTICAL, (*intersections.shape[:-2], 1, WIDTH))
-    return fit_axis(
-        [
-            Stream(intersections, along=False),
-            Stream(vertical, along=False, scatter_rad=float(np.radians(STEEP_WITHIN_DEG))),
-        ]
-    )
-
-
-def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> Transection:
-    """Transection from the fits of hinge and cleavage pole.
-
-    `rows` are the moments (..., outcrops, 24) of all readings that went in, bedding first.
-    """
+def transection(hinge: AxisFit, cleavage: AxisFit) -> Transection:
+    """Transection from the fits of hinge and cleavage pole, whose leading shapes broadcast."""
     pole = cleavage.vector
     sine = np.sum(hinge.vector * pole, axis=-1)
     turning = np.sum(cross(hinge.vector, pole) * -DOWN, axis=-1)
@@ -157,31 +175,23 @@ def transection(hinge: AxisFit, cleavage: AxisFit, rows: tuple[Floats, ...]) -> 
     clockwise = np.where(sine * turning >= 0.0, 1.0, -1.0)
     size = np.degrees(np.arcsin(np.minimum(np.abs(sine), 1.0)))
     scale = _DEGREES_SQUARED / np.maximum(1.0 - sine * sine, 1e-12)
-    hinge_pull = np.einsum("...ij,...i->...j", hinge.across, pole)
-    cleavage_pull = np.einsum("...ij,...i->...j", cleavage.across, hinge.vector)
+    # What a turn of either axis across itself does to the sine, (..., 1, 2).
+    hinge_pull = pole[..., np.newaxis, :] @ hinge.across
+    cleavage_pull = hinge.vector[..., np.newaxis, :] @ cleavage.across
 
-    with np.errstate(invalid="ignore"):
-        parts = [
-            _quadratic(hinge_pull, hinge.covariance) * scale,
-            _quadratic(cleavage_pull, cleavage.covariance) * scale,
-            _quadratic(hinge_pull, hinge.even_covariance) * scale,
-            _quadratic(cleavage_pull, cleavage.even_covariance) * scale,
-        ]
-    of_hinge, of_cleavage, even_hinge, even_cleavage = (
-        # Infinite times zero is not known; a tiny negative is rounding where there is no scatter.
-        np.where(np.isnan(part), np.inf, np.maximum(part, 0.0))
-        for part in parts
+    of_hinge, even_hinge = (_along(hinge_pull, c) * scale for c in (hinge.covariance, hinge.even_covariance))
+    of_cleavage, even_cleavage = (
+        _along(cleavage_pull, c) * scale for c in (cleavage.covariance, cleavage.even_covariance)
     )
     steady_hinge, steady_cleavage = np.maximum(of_hinge, even_hinge), np.maximum(of_cleavage, even_cleavage)
 
-    held = sum(row[..., COUNT] for row in rows)
-    outcrops = np.count_nonzero(np.asarray(held) > 0.5, axis=-1).astype(float)
-    pull = np.einsum("...oj,...j->...o", hinge.influence, hinge_pull)
-    pull = pull + np.einsum("...oj,...j->...o", cleavage.influence, cleavage_pull)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        between = np.sum(pull * pull, axis=-1) * scale * outcrops / outcrop_freedom(outcrops)
-    girdle = np.any(rows[0][..., COUNT] > 0.5, axis=-1)
-    spare_hinge, spare_cleavage = hinge.readings - np.where(girdle, 2.0, 1.0), cleavage.readings - 1.0
+    outcrops = np.count_nonzero(hinge.outcrop_readings + cleavage.outcrop_readings > 0.5, axis=-1).astype(
+        float
+    )
+    pull = np.sum(hinge.influence * hinge_pull + cleavage.influence * cleavage_pull, axis=-1)
+    between = np.sum(pull * pull, axis=-1) * scale * outcrops / outcrop_freedom(outcrops)
+    spare_hinge = hinge.readings - np.where(hinge.readings_across > 0.5, 2.0, 1.0)
+    spare_cleavage = cleavage.readings - 1.0
     fixed = np.where(
         np.minimum(spare_hinge, spare_cleavage) > 0.0,
         _satterthwaite(of_hinge, spare_hinge, of_cleavage, spare_cleavage),
@@ -206,8 +216,12 @@ def outcrop_freedom(outcrops: Floats) -> Floats:
     return np.maximum(outcrops - 2.0, 0.5)
 
 
-def _quadratic(vector: Floats, matrix: Floats) -> Floats:
-    return np.asarray(np.einsum("...i,...ij,...j->...", vector, matrix, vector))
+def _along(pull: Floats, covariance: Floats) -> Floats:
+    """Variance, (...), along a pull (..., 1, 2)."""
+    with np.errstate(invalid="ignore"):
+        part = np.sum((pull @ covariance) * pull, axis=(-2, -1))
+    # Infinite times zero is not known; a tiny negative is rounding where there is no scatter.
+    return np.where(np.isnan(part), np.inf, np.maximum(part, 0.0))
 
 
 def _satterthwaite(first: Floats, first_freedom: Floats, second: Floats, second_freedom: Floats) -> Floats:

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Literal, NamedTuple
 
 import numpy as np
 
-from analysis.fold.transection import fit_cleavage, fit_cleavage_to_lines, fit_hinge, transection
+from analysis.fold.transection import FoldAxis, fit_fold, transection
 from analysis.fold.watch import (
     GIRDLE_SCATTER_AT_MOST_DEG,
     hinge_is_clear,
@@ -108,10 +108,11 @@ def estimate_drawn(drawn: Drawn, at: npt.NDArray[np.int64], mode: Mode = "planes
     none = np.zeros_like(bedding)
     planes = none if mode == "lines" else _by_look(drawn.cleavage, drawn.outcrop, at[:, 1])
     lines = none if mode == "planes" else _by_look(drawn.lines, drawn.outcrop, at[:, 1])
-    hinge = fit_hinge(bedding, none)
-    cleavage = fit_cleavage_to_lines(lines) if mode == "lines" else fit_cleavage(planes, lines)
-    found = transection(hinge, cleavage, (bedding, planes, lines))
-    n_planes, n_lines = (rows[..., COUNT].sum(axis=-1) for rows in (planes, lines))
+    rows = np.stack([bedding, planes, lines], axis=-2)
+    fits = fit_fold(rows, (FoldAxis.HINGE, FoldAxis.STEEP if mode == "lines" else FoldAxis.CLEAVAGE))
+    hinge, cleavage = fits.of(0), fits.of(1)
+    found = transection(hinge, cleavage)
+    n_planes, n_lines = (part[..., COUNT].sum(axis=-1) for part in (planes, lines))
     information = information_since_first_look(
         found, stream_progress(at[:, 0], 0), stream_progress(n_planes, n_lines)
     )

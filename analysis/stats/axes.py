@@ -8,7 +8,8 @@ where T_f is a stream's orientation tensor and w_f its weight: +1/variance for a
 sought, -1/variance for axes at right angles to it. Bedding poles lie at right angles to the hinge and hinge
 lines along it; cleavage poles lie along the cleavage pole and intersection lines at right angles to it.
 
-Everything broadcasts: a leading shape (...) stands for any number of folds or moments in time.
+Everything broadcasts: a leading shape (...) stands for any number of folds or moments in time. Several axes may be
+fitted to the same readings at once, each with its own view of what a stream is to it.
 """
 
 from __future__ import annotations
@@ -18,11 +19,11 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 import numpy as np
 
-from analysis.stats.moments import COUNT, fourth, product_pairs, tensor
+from analysis.stats.moments import COUNT, FOURTH, TENSOR, WIDTH, fourth_of, product_pairs, tensor_of
 from analysis.stats.quantiles import f2_quantile
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    import numpy.typing as npt
 
     from analysis.orient.vectors import Floats
 
@@ -37,26 +38,32 @@ _USUAL_VARIANCE: Final = math.radians(USUAL_SCATTER_DEG) ** 2
 _ROUNDING_VARIANCE: Final = math.radians(ROUNDING_DEG) ** 2
 # Eigenvalues closer than this share of all that was summed are one value: the axis is undetermined.
 _SAME_EIGENVALUE: Final = 1e-12
+_EVEN: Final = np.eye(2)
 
 
-class Stream(NamedTuple):
-    """Readings that bear on one axis.
+# What a stream of readings is to an axis: its own axes lie along it, or at right angles to it, or say nothing of it.
+ALONG: Final = 1.0
+ACROSS: Final = -1.0
+UNUSED: Final = 0.0
+
+
+class KnownAxis(NamedTuple):
+    """An axis known beforehand, which goes into fits as one more stream, of one reading, read at no outcrop.
 
     Attributes
     ----------
-    rows
-        Moments, (..., outcrops, 24).
-    along
-        Whether its axes lie along the axis sought; else they lie at right angles to it.
+    row
+        Its moments, (24,).
+    roles
+        (fits,), what it is to each axis sought: ALONG, ACROSS or UNUSED.
     scatter_rad
-        Standard deviation of one axis in one direction, radians, where it is known beforehand; None where the
-        readings tell it.
+        How well it is known: standard deviation in one direction, radians.
 
     """
 
-    rows: Floats
-    along: bool
-    scatter_rad: float | None = None
+    row: Floats
+    roles: Floats
+    scatter_rad: float
 
 
 class AxisFit(NamedTuple):
@@ -79,10 +86,12 @@ class AxisFit(NamedTuple):
     eigenvalues
         (..., 3), of M, descending: the axis' own first.
     scatter_rad
-        (..., streams), standard deviation of one reading about the fit, in one direction; streams as given,
-        without those that hold no reading.
+        (..., streams), standard deviation of one reading about the fit, in one direction; streams as given, an
+        axis known beforehand last; nan where a stream holds nothing that bears on the axis.
+    outcrop_readings
+        (..., outcrops), number of readings that bear on the axis.
     readings
-        (...), number of readings.
+        (...), number of all readings that do, with an axis known beforehand.
     freedom
         (...), degrees of freedom of the scatter: one residual for a reading at right angles to the axis, two
         for a reading along it, less two.
@@ -96,8 +105,19 @@ class AxisFit(NamedTuple):
     influence: Floats
     eigenvalues: Floats
     scatter_rad: Floats
+    outcrop_readings: Floats
     readings: Floats
     freedom: Floats
+
+    def of(self, which: int | slice) -> AxisFit:
+        """Take one of several fits, or some of them: along the first axis of the leading shape."""
+        return AxisFit(*(field[which] for field in self))
+
+    @property
+    def readings_across(self) -> Floats:
+        """Number, (...), of readings at right angles to the axis, such as the poles of a girdle."""
+        # A reading along the axis shows two residuals, one across it shows one.
+        return np.asarray(2.0 * self.readings - self.freedom - 2.0)
 
     @property
     def less_certain_se_rad(self) -> Floats:
@@ -127,118 +147,139 @@ def _variance(squares: Floats, freedom: Floats) -> Floats:
     return np.asarray(np.maximum(helped, _ROUNDING_VARIANCE))
 
 
-def _weight(stream: Stream, moment: Floats, count: Floats) -> Floats:
-    """Weight in M of a stream that is fitted with others: +-1/variance about its own axis."""
-    along = stream.along
-    if stream.scatter_rad is not None:
-        return np.full(count.shape, (1.0 if along else -1.0) / stream.scatter_rad**2)
-    values: Floats = np.asarray(np.linalg.eigvalsh(moment), dtype=float)
-    squares = values[..., 0] + values[..., 1] if along else values[..., 0]
-    freedom = 2.0 * count - 2.0 if along else count - 2.0
-    return (1.0 if along else -1.0) / _variance(squares, freedom)
+class _Held:
+    """Streams summed over outcrops, (..., streams, 24), as fits with these roles, (fits, ..., streams), hold them."""
+
+    def __init__(self, role: Floats, totals: Floats, known_variance: float | None) -> None:
+        self._role, self._known_variance = role, known_variance
+        self._along = role == ALONG
+        self.counts, self.tensors = totals[..., COUNT], totals[..., TENSOR]
+        self.used = np.where(role == UNUSED, 0.0, self.counts)
+        self.residuals = self.used * (1.0 + self._along)
+        # The last stream, where an axis is known beforehand.
+        self.is_known = np.arange(role.shape[-1]) == (-1 if known_variance is None else role.shape[-1] - 1)
+
+    def weights(self) -> Floats:
+        """Weights in M: +-1/variance of each stream about its own axis, or +-1 where no other stream helps."""
+        sign = np.where(self.used > 0.0, self._role, 0.0)
+        alone = np.count_nonzero(sign, axis=-1) <= 1
+        if alone.all():
+            return sign
+        own: Floats = np.asarray(np.linalg.eigvalsh(tensor_of(self.tensors)), dtype=float)
+        squares = own[..., 0] + np.where(self._along, own[..., 1], 0.0)
+        return np.where(alone[..., np.newaxis], sign, sign / self._known_or(squares, self.residuals - 2.0))
+
+    def variances(self, along_axis: Floats, freedom: Floats) -> Floats:
+        """Variance of one reading about the fits, which share their degrees of freedom among the streams."""
+        squares = np.where(self._along, np.sum(self.tensors[..., :3], axis=-1) - along_axis, along_axis)
+        share = np.maximum(freedom, 0.0) / np.maximum(freedom + 2.0, 1.0)
+        return self._known_or(squares, self.residuals * share[..., np.newaxis])
+
+    def even_meat(self, weight: Floats, along_axis: Floats, across: Floats) -> Floats:
+        """Middle of the sandwich, (fits, ..., 2, 2), if readings scatter evenly; `weight` is w^2 times variance."""
+        of_poles = tensor_of(_mixed(np.where(self._along, 0.0, weight), self.tensors))
+        of_lines = np.sum(np.where(self._along, weight * along_axis, 0.0), axis=-1)
+        even = across.swapaxes(-1, -2) @ of_poles @ across + of_lines[..., np.newaxis, np.newaxis] * _EVEN
+        return np.asarray(even)
+
+    def _known_or(self, squares: Floats, freedom: Floats) -> Floats:
+        variance = _variance(squares, freedom)
+        return (
+            variance
+            if self._known_variance is None
+            else np.where(self.is_known, self._known_variance, variance)
+        )
 
 
-def fit_axis(streams: Sequence[Stream]) -> AxisFit:
-    """Fit the axis of largest eigenvalue of M; see the module's docstring.
+def _mixed(weight: Floats, parts: Floats) -> Floats:
+    """Sum over streams, (fits, ..., W), of weight (fits, ..., streams) times parts (..., streams, W)."""
+    return (weight[..., np.newaxis, :] @ parts)[..., 0, :]
+
+
+def _reach(values: Floats, size: Floats) -> Floats:
+    """One over the distance, (..., 2), of the first eigenvalue from the others; infinite where they are one value."""
+    gaps = values[..., :1] - values[..., 1:]
+    apart = gaps > _SAME_EIGENVALUE * size[..., np.newaxis]
+    return np.where(apart, 1.0 / np.where(apart, gaps, 1.0), np.inf)
+
+
+def fit_axes(rows: Floats, roles: npt.ArrayLike, known: KnownAxis | None = None) -> AxisFit:
+    """Fit axes of largest eigenvalue of M, several at once to the same readings; see the module's docstring.
 
     The covariance of an eigenvector u_c is sum w^2 (u_j.x)(u_k.x)(u_c.x)^2 / [(m_c - m_j)(m_c - m_k)], m the
     eigenvalues of M (Tyler 1981; Prentice 1984; Fisher, Lewis & Embleton 1987 ch. 6, from memory), here with
-    n/(n - 1). With readings in several streams each is weighted by the scatter about its own axis; streams
-    without any reading are left out.
+    n/(n - 1). With readings in several streams each is weighted by the scatter about its own axis.
+
+    Parameters
+    ----------
+    rows
+        Moments, (..., outcrops, streams, 24).
+    roles
+        (fits, streams), what each stream is to each axis sought: ALONG, ACROSS or UNUSED.
+    known
+        An axis known beforehand, if there is one.
+
+    Returns
+    -------
+    The fits, their leading shape (fits, ...).
+
     """
-    streams = [stream for stream in streams if stream.rows[..., COUNT].any()] or list(streams[:1])
-    totals = [stream.rows.sum(axis=-2) for stream in streams]
-    tensors = [tensor(total) for total in totals]
-    counts = [total[..., COUNT] for total in totals]
-    if len(streams) > 1:
-        weights = [_weight(stream, t, n) for stream, t, n in zip(streams, tensors, counts, strict=True)]
-    else:
-        weights = [
-            np.full(n.shape, 1.0 if stream.along else -1.0) for n, stream in zip(counts, streams, strict=True)
-        ]
+    role, totals = np.asarray(roles, dtype=float), rows.sum(axis=-3)
+    measured, known_variance = role.shape[-1], None
+    if known is not None:
+        role = np.concatenate([role, np.reshape(known.roles, (-1, 1))], axis=-1)
+        row = np.broadcast_to(known.row, (*totals.shape[:-2], 1, WIDTH))
+        totals, known_variance = np.concatenate([totals, row], axis=-2), known.scatter_rad**2
+    role = role.reshape(len(role), *(1,) * (totals.ndim - 2), -1)
+    held = _Held(role, totals, known_variance)
 
-    pulled = sum(w[..., np.newaxis, np.newaxis] * t for w, t in zip(weights, tensors, strict=True))
-    values, vectors = eigen(np.asarray(pulled))
+    weight = held.weights()
+    values, vectors = eigen(tensor_of(_mixed(weight, held.tensors)))
     axis, across = vectors[..., 0], vectors[..., 1:]
-    gaps = values[..., :1] - values[..., 1:]
-    size = np.asarray(sum(np.abs(w) * n for w, n in zip(weights, counts, strict=True)))
-    apart = gaps > _SAME_EIGENVALUE * size[..., np.newaxis]
-    reach = np.where(apart, 1.0 / np.where(apart, gaps, 1.0), np.inf)
-    reach_squared = reach[..., :, np.newaxis] * reach[..., np.newaxis, :]
+    turned = across.swapaxes(-1, -2)
+    reach = _reach(values, np.sum(np.abs(weight) * held.counts, axis=-1))
 
-    residuals = [n * (2.0 if stream.along else 1.0) for n, stream in zip(counts, streams, strict=True)]
-    all_residuals = np.asarray(sum(residuals))
-    freedom = all_residuals - 2.0
-    share = np.maximum(freedom, 0.0) / np.maximum(all_residuals, 1.0)
-    parts = [
-        _stream_part(stream, total, moment, weight, residual * share, axis, across)
-        for stream, total, moment, weight, residual in zip(
-            streams, totals, tensors, weights, residuals, strict=True
-        )
-    ]
+    freedom = np.sum(held.residuals, axis=-1) - 2.0
+    along_axis = (held.tensors @ product_pairs(axis, axis)[..., np.newaxis])[..., 0]
+    variance = held.variances(along_axis, freedom)
+    squared = weight * weight
+    even_meat = held.even_meat(squared * variance, along_axis, across)
+    pairs = product_pairs(turned, axis[..., np.newaxis, :])
+    meat = pairs @ fourth_of(_mixed(squared[..., :measured], totals[..., :measured, FOURTH]))
+    meat = meat @ pairs.swapaxes(-1, -2)
+    if known is not None:
+        # It has shown no residual; its error is what it was said to be.
+        meat += held.even_meat(squared * variance * held.is_known, along_axis, across)
 
-    count = np.asarray(sum(counts))
-    determined = (count > 1.0)[..., np.newaxis, np.newaxis] & np.isfinite(reach_squared)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        unbiased = (count / (count - 1.0))[..., np.newaxis, np.newaxis]
-        covariance = np.where(determined, unbiased * sum(part.meat for part in parts) * reach_squared, np.inf)
-        even_covariance = np.where(determined, sum(part.even_meat for part in parts) * reach_squared, np.inf)
-        finite_reach = np.where(np.isfinite(reach), reach, 0.0)
+    # What streams pull by, at each outcrop, in one product: (outcrops, streams * 6) times (streams * 6, 2).
+    pulls = weight[..., :measured, np.newaxis, np.newaxis] * pairs.swapaxes(-1, -2)[..., np.newaxis, :, :]
+    pulls = pulls.reshape(*pulls.shape[:-3], -1, 2)
+    by_outcrop = rows[..., TENSOR].reshape(*rows.shape[:-2], -1) @ pulls
+    bears = (role[..., :measured] != UNUSED).astype(float)[..., np.newaxis]
+
+    count = np.sum(held.used, axis=-1)
+    determined = np.isfinite(reach) & (count > 1.0)[..., np.newaxis]
+    both = determined[..., :, np.newaxis] & determined[..., np.newaxis, :]
+    reach = np.where(determined, reach, 0.0)
+    bend = reach[..., :, np.newaxis] * reach[..., np.newaxis, :]
+    unbiased = (count / np.maximum(count - 1.0, 1.0))[..., np.newaxis, np.newaxis]
     return AxisFit(
         vector=axis,
         across=across,
-        covariance=covariance,
-        even_covariance=even_covariance,
-        influence=np.asarray(sum(part.pull for part in parts)) * finite_reach[..., np.newaxis, :],
+        covariance=np.where(both, unbiased * meat * bend, np.inf),
+        even_covariance=np.where(both, even_meat * bend, np.inf),
+        influence=by_outcrop * reach[..., np.newaxis, :],
         eigenvalues=values,
-        scatter_rad=np.stack([part.scatter_rad for part in parts], axis=-1),
+        scatter_rad=np.sqrt(np.where(held.used > 0.0, variance, np.nan)),
+        outcrop_readings=(rows[..., COUNT] @ bears)[..., 0],
         readings=count,
         freedom=freedom,
     )
 
 
-class _Part(NamedTuple):
-    """What one stream adds to the errors of a fit; `meat` is the middle of the sandwich."""
-
-    scatter_rad: Floats
-    meat: Floats
-    even_meat: Floats
-    pull: Floats
-
-
-def _stream_part(
-    stream: Stream,
-    total: Floats,
-    moment: Floats,
-    weight: Floats,
-    freedom: Floats,
-    axis: Floats,
-    across: Floats,
-) -> _Part:
-    turned = across.swapaxes(-1, -2)
-    along_axis = np.einsum("...i,...ij,...j->...", axis, moment, axis)
-    if stream.along:
-        squares = np.trace(moment, axis1=-2, axis2=-1) - along_axis
-        spread = along_axis[..., np.newaxis, np.newaxis] * np.eye(2)
-    else:
-        squares = along_axis
-        spread = turned @ moment @ across
-    squared = (weight * weight)[..., np.newaxis, np.newaxis]
-    if stream.scatter_rad is not None:
-        # What is known beforehand has shown no residual; its error is what it was said to be. It belongs to
-        # no outcrop, so it pulls for none.
-        scatter = np.full(squares.shape, stream.scatter_rad)
-        even = squared * stream.scatter_rad**2 * spread
-        return _Part(scatter, even, even, np.zeros((1, 2)))
-    variance = _variance(squares, freedom)
-    pairs = product_pairs(turned, axis[..., np.newaxis, :])
-    by_outcrop = tensor(stream.rows) @ axis[..., np.newaxis, :, np.newaxis]
-    return _Part(
-        scatter_rad=np.sqrt(variance),
-        meat=squared * (pairs @ fourth(total) @ pairs.swapaxes(-1, -2)),
-        even_meat=squared * variance[..., np.newaxis, np.newaxis] * spread,
-        pull=weight[..., np.newaxis, np.newaxis] * (turned[..., np.newaxis, :, :] @ by_outcrop)[..., 0],
-    )
+def fit_axis(rows: Floats, role: float) -> AxisFit:
+    """Fit one axis to one stream: moments (..., outcrops, 24) of axes that lie ALONG it or ACROSS it."""
+    return fit_axes(rows[..., np.newaxis, :], [[role]]).of(0)
 
 
 class Ellipse(NamedTuple):

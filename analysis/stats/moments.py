@@ -24,8 +24,8 @@ if TYPE_CHECKING:
 COUNT: Final = 0
 WEIGHT: Final = 1
 WEIGHT_SQUARED: Final = 2
-_TENSOR: Final = slice(3, 9)
-_FOURTH: Final = slice(9, 24)
+TENSOR: Final = slice(3, 9)
+FOURTH: Final = slice(9, 24)
 WIDTH: Final = 24
 
 _ONE: Final = 1.0
@@ -39,7 +39,6 @@ _PAIR_I, _PAIR_J = (np.array([pair[k] for pair in _PAIRS]) for k in (0, 1))
 _QUAD_FROM: Final = np.array([np.argwhere(k == _QUAD_AT)[0] for k in range(15)])
 # The same from the first column of a row on.
 _TENSOR_AT: Final = _PAIR_AT + 3
-_FOURTH_AT: Final = _QUAD_AT + 9
 # A symmetric product u v, written in the order of _PAIRS, counts its off-diagonal terms twice.
 _TWICE: Final = np.array([1.0, 1.0, 1.0, 2.0, 2.0, 2.0])
 
@@ -53,11 +52,11 @@ def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = _ONE) -> Floats:
     rows[..., COUNT] = 1.0
     rows[..., WEIGHT] = w
     rows[..., WEIGHT_SQUARED] = w * w
-    rows[..., _TENSOR] = pairs
-    np.multiply(pairs[..., _QUAD_FROM[:, 0]], pairs[..., _QUAD_FROM[:, 1]], out=rows[..., _FOURTH])
+    rows[..., TENSOR] = pairs
+    np.multiply(pairs[..., _QUAD_FROM[:, 0]], pairs[..., _QUAD_FROM[:, 1]], out=rows[..., FOURTH])
     if weights is not _ONE:
-        rows[..., _TENSOR] *= w[..., np.newaxis]
-        rows[..., _FOURTH] *= (w * w)[..., np.newaxis]
+        rows[..., TENSOR] *= w[..., np.newaxis]
+        rows[..., FOURTH] *= (w * w)[..., np.newaxis]
     return rows
 
 
@@ -65,7 +64,7 @@ def row_of_tensor(count: float, tensor_sum: Floats) -> Floats:
     """One row, shape (24,), of so many axes of weight 1 with this sum of x x^T, (3, 3); its fourth moments are 0."""
     row = np.zeros(WIDTH)
     row[[COUNT, WEIGHT, WEIGHT_SQUARED]] = count
-    row[_TENSOR] = tensor_sum[_PAIR_I, _PAIR_J]
+    row[TENSOR] = tensor_sum[_PAIR_I, _PAIR_J]
     return row
 
 
@@ -74,13 +73,18 @@ def tensor(rows: Floats) -> Floats:
     return rows[..., _TENSOR_AT]
 
 
-def fourth(rows: Floats) -> Floats:
-    """Fourth moments, shape (..., 6, 6), between the six products of two components."""
-    return rows[..., _FOURTH_AT]
+def tensor_of(six: Floats) -> Floats:
+    """Symmetric matrix, shape (..., 3, 3), of the six numbers, (..., 6), that a row keeps of it."""
+    return six[..., _PAIR_AT]
+
+
+def fourth_of(fifteen: Floats) -> Floats:
+    """Fourth moments, shape (..., 6, 6), between the six products of two components, of the fifteen kept in a row."""
+    return fifteen[..., _QUAD_AT]
 
 
 def product_pairs(u: Floats, v: Floats) -> Floats:
-    """Coefficients, shape (..., 6), that read sum w (u.x)(v.x) ... out of `fourth` and `tensor` rows."""
+    """Coefficients, shape (..., 6), that read sum w (u.x)(v.x) ... out of TENSOR columns and `fourth_of`."""
     mixed = 0.5 * (u[..., _PAIR_I] * v[..., _PAIR_J] + u[..., _PAIR_J] * v[..., _PAIR_I])
     return np.asarray(mixed * _TWICE)
 
@@ -93,8 +97,8 @@ def scaled(rows: Floats, weight: npt.ArrayLike) -> Floats:
             rows[..., :1],
             rows[..., 1:2] * w,
             rows[..., 2:3] * w * w,
-            rows[..., _TENSOR] * w,
-            rows[..., _FOURTH] * w * w,
+            rows[..., TENSOR] * w,
+            rows[..., FOURTH] * w * w,
         ],
         axis=-1,
     )

@@ -197,6 +197,11 @@ class RunningSums:
         """Number of outcrops that hold a reading now."""
         return int(np.count_nonzero(self._rows[..., COUNT].sum(axis=1) > 0.5))
 
+    @property
+    def rows(self) -> Floats:
+        """Moments, shape (outcrops, features, 24), of all features in the order of `FEATURES`."""
+        return self._rows
+
     def by_outcrop(self, feature: Feature) -> Floats:
         """Moments, shape (outcrops, 24), of one feature."""
         return self._rows[:, _CODE[feature]]

@@ -10,7 +10,7 @@ import pytest
 from scipy import stats
 
 from analysis.orient.vectors import line_vector, pole_vector, trend_plunge_deg
-from analysis.stats.axes import Stream, confidence_ellipse, eigen, fit_axis
+from analysis.stats.axes import ACROSS, ALONG, confidence_ellipse, eigen, fit_axis
 from analysis.stats.descriptors import fisher_mean
 from analysis.stats.moments import moments, tensor
 from analysis.stats.quantiles import t_quantile
@@ -105,9 +105,7 @@ def test_mean_of_horizontal_axes_is_that_of_doubled_angles(text, count, mean_deg
     azimuths = np.array(text.split(), dtype=float)
     assert len(azimuths) == count
     lines = line_vector(azimuths, np.zeros(count))
-    trend, plunge = trend_plunge_deg(
-        fit_axis([Stream(moments(lines).sum(axis=0)[np.newaxis], along=True)]).vector
-    )
+    trend, plunge = trend_plunge_deg(fit_axis(moments(lines).sum(axis=0)[np.newaxis], ALONG).vector)
     assert float(plunge) == pytest.approx(0.0, abs=1e-6)
     assert float(trend) % 180.0 == pytest.approx(mean_deg, abs=5e-4)
     assert stats.circmean(azimuths, high=180.0) == pytest.approx(float(trend) % 180.0, abs=1e-6)
@@ -116,7 +114,7 @@ def test_mean_of_horizontal_axes_is_that_of_doubled_angles(text, count, mean_deg
 def coverages(axes, truth, *, along):
     """Shares of simulated samples (samples, n, 3) whose F and chi-square ellipses hold the true axis."""
     n = axes.shape[1]
-    fit = fit_axis([Stream(moments(axes).sum(axis=1)[:, np.newaxis], along=along)])
+    fit = fit_axis(moments(axes).sum(axis=1)[:, np.newaxis], ALONG if along else ACROSS)
     ellipse = confidence_ellipse(fit)
     forward = np.sum(fit.vector * truth, axis=-1)
     parts = [np.sum(axis * truth, axis=-1) / forward for axis in (ellipse.major_axis, ellipse.minor_axis)]

@@ -13,12 +13,13 @@ from analysis.fold.blocks import (
 )
 from analysis.fold.check import check_fold
 from analysis.fold.records import Counts, Verdict
-from analysis.fold.transection import fit_cleavage, fit_hinge, fit_lines, transection
+from analysis.fold.transection import FoldAxis, transection
 from analysis.fold.watch import girdle_by_chance
 from analysis.orient.vectors import line_vector, pole_vector
 from analysis.stats.moments import moments
 from analysis.stats.sums import RunningSums
 from analysis.stats.synthetic import FoldDesign, draw
+from tests.fitting import fitted, fitted_cleavage, fitted_hinge
 
 
 def counts(bedding=0, cleavage=0, intersection=0, hinge=0):
@@ -106,14 +107,14 @@ def test_the_chance_of_a_girdle_is_what_it_says():
     poles = np.array([0.0, 0.0, 1.0]) + 0.05 * rng.standard_normal((2000, 8, 3))
     poles /= np.linalg.norm(poles, axis=-1, keepdims=True)
     rows = moments(poles).sum(axis=1)[:, np.newaxis]
-    chance = girdle_by_chance(fit_hinge(rows, np.zeros_like(rows)))
+    chance = girdle_by_chance(fitted_hinge(rows))
     for level in (0.01, 0.1, 0.5):
         # Three standard errors of a share of 2000.
         assert np.mean(chance <= level) == pytest.approx(level, abs=3.0 * np.sqrt(level / 2000.0))
     limbs = moments(pole_vector([0.0, 180.0] * 4, [44.0, 45.0, 46.0, 47.0] * 2)).sum(axis=0)[np.newaxis]
-    assert float(girdle_by_chance(fit_hinge(limbs, np.zeros_like(limbs)))) < 1e-6
+    assert float(girdle_by_chance(fitted_hinge(limbs))) < 1e-6
     lines = moments(line_vector([10.0, 12.0], [5.0, 6.0])).sum(axis=0)[np.newaxis]
-    assert float(girdle_by_chance(fit_hinge(np.zeros_like(lines), lines))) == 0.0
+    assert float(girdle_by_chance(fitted(FoldAxis.HINGE, hinge=lines))) == 0.0
 
 
 def test_a_plane_fold_has_no_hinge(make_sums):
@@ -151,9 +152,7 @@ def drawn_transections(variation, outcrops, folds, seed=2):
     drawn = draw(design, 8 * outcrops, folds, np.random.default_rng(seed))
     for k in range(folds):
         bedding, cleavage = by_outcrop(drawn.bedding[k], outcrops), by_outcrop(drawn.cleavage[k], outcrops)
-        yield transection(
-            fit_hinge(bedding, np.zeros_like(bedding)), fit_cleavage(cleavage), (bedding, cleavage)
-        )
+        yield transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
 
 
 def test_outcrops_of_one_fold_rarely_seem_to_differ():
@@ -199,8 +198,8 @@ def test_lines_in_the_cleavage_rarely_seem_to_contradict_it():
     drawn = draw(FoldDesign(transection_deg=8.0), 15, 200, np.random.default_rng(3))
     found = 0
     for k in range(200):
-        planes = fit_cleavage(moments(drawn.cleavage[k]).sum(axis=0)[np.newaxis])
-        lines = fit_lines(moments(drawn.lines[k]).sum(axis=0)[np.newaxis])
+        planes = fitted_cleavage(moments(drawn.cleavage[k]).sum(axis=0)[np.newaxis])
+        lines = fitted(FoldAxis.LINES, lines=moments(drawn.lines[k]).sum(axis=0)[np.newaxis])
         found += planes_against_lines(planes, lines)[1]
     assert found <= 4
 

@@ -6,10 +6,10 @@ import numpy as np
 import pytest
 
 from analysis.fold.limbs import find_limbs, sides
-from analysis.fold.transection import fit_hinge
 from analysis.orient.features import Feature
 from analysis.orient.vectors import pole_vector
 from analysis.stats.sums import RunningSums
+from tests.fitting import fitted_hinge
 
 
 def limbs_of(planes, cleavage=None):
@@ -19,7 +19,7 @@ def limbs_of(planes, cleavage=None):
         sums.add(Feature.BEDDING, "A", pole_vector(strike, dip))
     rows = sums.by_outcrop(Feature.BEDDING)
     cells, _ = sums.bedding_cells()
-    across = fit_hinge(rows, np.zeros_like(rows)).across
+    across = fitted_hinge(rows).across
     pole = None if cleavage is None else pole_vector(*cleavage)
     return find_limbs(cells, sides(cells, across), across, pole)
 

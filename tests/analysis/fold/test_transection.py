@@ -9,19 +9,11 @@ from hypothesis import strategies as st
 from scipy.spatial.transform import Rotation
 
 from analysis.fold.profile import profile_transection_deg
-from analysis.fold.transection import (
-    FEWEST_CLUSTERS,
-    fit_cleavage,
-    fit_cleavage_to_lines,
-    fit_hinge,
-    outcrop_freedom,
-    transection,
-)
+from analysis.fold.transection import FEWEST_CLUSTERS, outcrop_freedom, transection
 from analysis.orient.vectors import axis_angle_deg, line_vector, pole_vector
 from analysis.stats.moments import moments
 from analysis.stats.synthetic import FoldDesign, draw
-
-NONE = np.zeros((1, 24))
+from tests.fitting import fitted_cleavage, fitted_hinge, fitted_steep
 
 
 def rows(axes):
@@ -42,7 +34,7 @@ def angle(hinge_line, strike, dip):
     side = np.cross(hinge, [0.0, 0.0, 1.0])
     side = side / np.linalg.norm(side) if np.linalg.norm(side) > 1e-9 else np.array([1.0, 0.0, 0.0])
     bedding, cleavage = rows(limbs_about(hinge, side)), rows([pole_vector(strike, dip)] * 6)
-    return transection(fit_hinge(bedding, NONE), fit_cleavage(cleavage), (bedding, cleavage))
+    return transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
 
 
 @pytest.mark.parametrize("trend", [0.0, 45.0, 90.0, 135.0, 180.0, 225.0, 270.0, 315.0, 359.999])
@@ -99,9 +91,7 @@ def test_the_variance_is_that_of_repeated_folds():
     drawn = draw(design, 40, 3000, np.random.default_rng(9))
     bedding = moments(drawn.bedding).sum(axis=1)[:, np.newaxis]
     cleavage = moments(drawn.cleavage).sum(axis=1)[:, np.newaxis]
-    found = transection(
-        fit_hinge(bedding, np.zeros_like(bedding)), fit_cleavage(cleavage), (bedding, cleavage)
-    )
+    found = transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
     # 3000 draws give the variance within 2.6%, the formula is of first order.
     assert found.fixed_variance.mean() == pytest.approx(found.delta_deg.var(), rel=0.08)
     assert np.allclose(found.fixed_variance, found.hinge_variance + found.cleavage_variance)
@@ -114,9 +104,7 @@ def test_degrees_of_freedom_lie_between_those_of_the_parts():
     drawn = draw(FoldDesign(), 12, 50, np.random.default_rng(3))
     bedding = moments(drawn.bedding).sum(axis=1)[:, np.newaxis]
     cleavage = moments(drawn.cleavage).sum(axis=1)[:, np.newaxis]
-    found = transection(
-        fit_hinge(bedding, np.zeros_like(bedding)), fit_cleavage(cleavage), (bedding, cleavage)
-    )
+    found = transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
     assert np.all(found.fixed_freedom >= 10.0 - 1e-9)
     assert np.all(found.fixed_freedom <= 21.0 + 1e-9)
 
@@ -126,7 +114,7 @@ def test_too_few_readings_leave_no_degrees_of_freedom(counts):
     """Readings that fit exactly because there are too few give 0 degrees of freedom or an infinite variance."""
     drawn = draw(FoldDesign(), 6, 1, np.random.default_rng(4))
     bedding, cleavage = rows(drawn.bedding[0][: counts[0]]), rows(drawn.cleavage[0][: counts[1]])
-    found = transection(fit_hinge(bedding, NONE), fit_cleavage(cleavage), (bedding, cleavage))
+    found = transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
     assert float(found.fixed_freedom) == 0.0
     assert not np.iscomplexobj(found.fixed_variance)
     assert float(found.fixed_variance) >= 0.0
@@ -140,9 +128,7 @@ def test_outcrops_that_differ_raise_the_variance():
     drawn = draw(design, 80, 1, np.random.default_rng(6))
     bedding = moments(drawn.bedding[0].reshape(10, 8, 3)).sum(axis=0)
     cleavage = moments(drawn.cleavage[0].reshape(10, 8, 3)).sum(axis=0)
-    found = transection(
-        fit_hinge(bedding, np.zeros_like(bedding)), fit_cleavage(cleavage), (bedding, cleavage)
-    )
+    found = transection(fitted_hinge(bedding), fitted_cleavage(cleavage))
     assert float(found.outcrops) == 8.0
     assert bool(found.by_outcrop)
     assert float(found.variance) == float(found.outcrop_variance) > float(found.reading_variance)
@@ -166,7 +152,7 @@ def test_lines_from_both_limbs_give_the_cleavage_by_themselves(turn):
     )
     drawn = draw(design, 60, 1, np.random.default_rng(7))
     bedding, lines = rows(drawn.bedding[0]), rows(drawn.lines[0])
-    found = transection(fit_hinge(bedding, NONE), fit_cleavage_to_lines(lines), (bedding, NONE, lines))
+    found = transection(fitted_hinge(bedding), fitted_steep(lines))
     assert float(found.delta_deg) == pytest.approx(turn, abs=0.5)
 
 
@@ -174,11 +160,9 @@ def test_lines_along_a_horizontal_hinge_take_cleavage_to_be_steep():
     """Equal horizontal lines 6 degrees off a horizontal hinge give 6 degrees in plan, vertical cleavage assumed."""
     hinge = rows(limbs_about(line_vector(0.0, 0.0), np.array([0.0, 1.0, 0.0])))
     lines = rows([line_vector(6.0, 0.0)] * 5)
-    fit = fit_cleavage_to_lines(lines)
+    fit = fitted_steep(lines)
     assert abs(float(fit.vector[2])) < 1e-9
-    assert float(transection(fit_hinge(hinge, NONE), fit, (hinge, lines)).delta_deg) == pytest.approx(
-        6.0, abs=1e-6
-    )
+    assert float(transection(fitted_hinge(hinge), fit).delta_deg) == pytest.approx(6.0, abs=1e-6)
 
 
 def test_profile_transection_broadcasts_and_is_independent_of_the_axial_one():

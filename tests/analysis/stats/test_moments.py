@@ -11,10 +11,11 @@ from hypothesis.extra import numpy as hnp
 from analysis.orient.vectors import line_vector
 from analysis.stats.moments import (
     COUNT,
+    FOURTH,
     WEIGHT,
     WEIGHT_SQUARED,
     WIDTH,
-    fourth,
+    fourth_of,
     moments,
     product_pairs,
     scaled,
@@ -44,7 +45,7 @@ def test_fourth_moments_give_sums_of_four_projections(axes, directions, weight):
     """Two coefficient rows around the fourth moments give sum w^2 (a.x)(b.x)(c.x)(d.x), computed directly."""
     rows = moments(axes, weight).sum(axis=0)
     a, b, c, d = directions
-    ours = product_pairs(a, b) @ fourth(rows) @ product_pairs(c, d)
+    ours = product_pairs(a, b) @ fourth_of(rows[..., FOURTH]) @ product_pairs(c, d)
     direct = np.sum(weight**2 * (axes @ a) * (axes @ b) * (axes @ c) * (axes @ d))
     assert ours == pytest.approx(direct, abs=1e-9)
 
