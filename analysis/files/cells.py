@@ -1,8 +1,9 @@
-"""One cell of a file of readings: its text made into a value, and back, guarded against formulas.
+"""One cell of a file of readings: its text made into a value, and back, guarded against spreadsheets.
 
-A spreadsheet runs a cell that starts with = + - @ tab or CR as a formula. Such text is written with an
-apostrophe before it; text that starts with apostrophes and then one of these gets one more, so that reading,
-which takes one away, always gives back what was written.
+A spreadsheet runs a cell that starts with = + - @ tab or CR as a formula, and writes text that looks like a
+number or a date its own way (`analysis.files.taken`). Such text is written with an apostrophe before it; text
+that starts with apostrophes and is such text after them gets one more, so that reading, which takes one away,
+always gives back what was written.
 """
 
 from __future__ import annotations
@@ -21,11 +22,11 @@ from analysis.files.reading import (
     checked_whole,
     checked_word,
 )
+from analysis.files.taken import TRUE_WORDS, taken_for_another
 
 CellValue = str | float | int | bool | datetime | tuple[str, ...] | None
 
-_RUNS = re.compile(r"'*[=+\-@\t\r\n]")
-_GUARDED = re.compile(r"'+[=+\-@\t\r\n]")
+_RUNS = re.compile(r"[=+\-@\t\r\n]")
 _NEEDS_QUOTES = re.compile(r"[\",;\r\n\t]|^\s|\s$")
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
 _COMMA = re.compile(r"[+-]?[0-9]*,[0-9]+(?:[eE][+-]?[0-9]{1,3})?")
@@ -34,13 +35,18 @@ _YES, _NO = ("yes", "y", "true", "1"), ("no", "n", "false", "0")
 
 
 def guarded(text: str) -> str:
-    """Put an apostrophe before text that a spreadsheet would run."""
-    return f"'{text}" if _RUNS.match(text) else text
+    """Put an apostrophe before text that a spreadsheet would run or write its own way."""
+    return f"'{text}" if _needs_guard(text) else text
 
 
 def unguarded(text: str) -> str:
     """Take the apostrophe away again."""
-    return text[1:] if text.startswith("'") and _GUARDED.match(text) else text
+    return text[1:] if text.startswith("'") and _needs_guard(text) else text
+
+
+def _needs_guard(text: str) -> bool:
+    bare = text.lstrip("'")
+    return bool(_RUNS.match(bare)) or taken_for_another(bare)
 
 
 def quoted(text: str) -> str:
@@ -118,7 +124,9 @@ def _yes_no(text: str, column: Column) -> bool:
 
 def _word(text: str, column: Column) -> str:
     by_fold = {word.lower(): word for word in column.words}
-    word = by_fold.get(text.lower(), text)
+    if "true" in by_fold:
+        by_fold |= dict.fromkeys(TRUE_WORDS, "true")  # which a spreadsheet says in its own language
+    word = by_fold.get(text.casefold(), text)
     if column.name == "feature" and not word:
         raise ReadingError("nothing", where=column.name, expected=column.expected)
     try:

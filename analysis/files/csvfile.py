@@ -35,6 +35,9 @@ Progress = Callable[[float], None]
 
 _MAX_WORKERS = 4  # threads; parsing leaves Python's lock to others most of the time
 _WRITE_ROWS = 20_000  # rows turned to text at once
+# Cells that never need quotes or an apostrophe. It would make text of a negative number, which is a number to
+# every spreadsheet, and stand before each true of north_reference, which is read whatever becomes of it.
+_UNQUOTED = (Kind.NUMBER, Kind.WHOLE, Kind.YES_NO, Kind.TIME, Kind.WORD)
 
 
 def read_table(*sources: Source, strict: bool = False, progress: Progress | None = None) -> ReadingTable:
@@ -156,8 +159,7 @@ def _texts(table: ReadingTable) -> Iterator[tuple[int, str]]:
 def _cells(table: ReadingTable, name: str, rows: slice) -> Iterable[str]:
     texts = table.cell_texts(name, rows)
     column = BY_NAME.get(name)
-    # A negative number is a number to every spreadsheet; an apostrophe would make it text.
-    return texts if column is not None and column.kind in (Kind.NUMBER, Kind.WHOLE) else map(quoted, texts)
+    return texts if column is not None and column.kind in _UNQUOTED else map(quoted, texts)
 
 
 def _name(source: Source) -> str:

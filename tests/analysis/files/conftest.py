@@ -14,12 +14,12 @@ from analysis.files.reading import Reading, quadrant_fits
 
 # Everything a file can hold, with the characters that hurt drawn often.
 NASTY = st.sampled_from(
-    ["=1+1", "'", "''=", '"', ",", ";", "\t", "\r", "\n", "\r\n", "+", "-", "@", " ", "é", "ß"]
+    ["=1+1", "'", "''=", '"', ",", ";", "\t", "\r", "\n", "\r\n", "+", "-", "@", " ", "é", "ß", "007", "1/2"]
 )
 ANY_TEXT = st.text(st.characters(exclude_categories=["Cs"], exclude_characters="\0"), max_size=12)
 TEXT = st.lists(NASTY | ANY_TEXT, max_size=4).map("".join)
 NAME = st.lists(
-    st.sampled_from(["=", "'", '"', ",", ";", "+", "-", "@", " ", "é"])
+    st.sampled_from(["=", "'", '"', ",", ";", "+", "-", "@", " ", "é", "007", "1E5", "Sep"])
     | st.text(st.characters(exclude_categories=["Cs", "Cc", "Zl", "Zp"]), max_size=8),
     max_size=4,
 ).map(lambda parts: "".join(parts)[:60])
