@@ -19,7 +19,7 @@ from analysis.errors import CsvError, ReadingError
 from analysis.files.cells import cell_value, unguarded
 from analysis.files.columns import BY_NAME, DIP_DIRECTION, MAX_NAME, MAX_TEXT, QUADRANTS, Column, Kind
 from analysis.files.header import column_named
-from analysis.files.reading import QUADRANT_FITS_DEG, Reading
+from analysis.files.reading import QUADRANT_FITS_DEG, Reading, with_plain_line_ends
 from analysis.files.rows import NO_ID, SAME_STRIKE_DEG, judge_row
 
 if TYPE_CHECKING:
@@ -140,7 +140,8 @@ class BlockReader:
         """Make columns of the good rows; raises CsvError where a file begins with nothing but bad rows."""
         doubtful = self._not_plain(records)
         frame = self._frame(_blanked(records, doubtful, self.header.line_end), records, doubtful)
-        block, refused = self._columns_of(frame, plain=b"'" not in records.text)
+        plain = b"'" not in records.text and (b"\r" not in records.text or b'"' not in records.text)
+        block, refused = self._columns_of(frame, plain=plain)
         block.lines = records.lines.astype(np.int32)
         doubtful |= refused | _unsure(block.columns)
         faults = self._judge(records, block, doubtful) if doubtful.any() else []
@@ -299,7 +300,7 @@ def _blanked(records: Records, rows: Bools, line_end: bytes) -> bytes:
 def _texts(series: pd.Series[Any], *, plain: bool) -> Array:
     values: Array = series.to_numpy(dtype=object)
     if not plain:
-        values = np.array([unguarded(text) for text in values.tolist()], dtype=object)
+        values = np.array([with_plain_line_ends(unguarded(text)) for text in values.tolist()], dtype=object)
     return values
 
 

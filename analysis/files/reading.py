@@ -1,8 +1,8 @@
 """The reading: a frozen record that cannot hold an impossible one.
 
 Attributes have the names and units of the columns of a file of readings (`analysis.files.columns`).
-Numbers are kept to the decimals that are written, times to the millisecond in UTC, so that a reading written
-and read back is equal to itself. Loads no pandas: the app imports this.
+Numbers are kept to the decimals that are written, times to the millisecond in UTC, line ends as LF, so that a
+reading written and read back is equal to itself. Loads no pandas: the app imports this.
 """
 
 from __future__ import annotations
@@ -311,7 +311,7 @@ def checked_name(value: object, where: str) -> str:
 
 
 def checked_text(value: object, where: str) -> str:
-    """Text that can be written to a file, or ReadingError."""
+    """Text that can be written to a file, with line ends LF, or ReadingError."""
     if not isinstance(value, str):
         raise ReadingError(f"{value!r} is no text", where=where, expected="text")
     if len(value) > MAX_TEXT:
@@ -320,7 +320,12 @@ def checked_text(value: object, where: str) -> str:
         )
     if "\0" in value or not (value.isascii() or _encodable(value)):
         raise ReadingError("a character that no file can hold", where=where, expected="text without NUL")
-    return str(value)
+    return with_plain_line_ends(str(value))
+
+
+def with_plain_line_ends(text: str) -> str:
+    """Text with LF for CRLF and CR, as spreadsheets and editors turn one into the other on their own."""
+    return text.replace("\r\n", "\n").replace("\r", "\n") if "\r" in text else text
 
 
 def checked_number(value: object, column: Column) -> float | None:

@@ -115,7 +115,7 @@ def test_numbers_have_fixed_decimals():
         ("-1", "'-1"),
         ("@x", "'@x"),
         ("\tx", '"\'\tx"'),
-        ("\rx", '"\'\rx"'),
+        ("\nx", '"\'\nx"'),
         ("'=1", "''=1"),
         ("''+", "'''+"),
         ("'tis wet", "'tis wet"),
@@ -200,7 +200,7 @@ def test_line_numbers_count_the_lines_in_notes(read):
         table = read(text)
         assert [fault.line for fault in table.faults] == [6, 10]
         assert [table.place(row) for row in range(len(table))] == [("stream", 2), ("stream", 8)]
-        assert table.readings()[0].note == f"one{ending}two{ending}{ending}four"
+        assert table.readings()[0].note == "one\ntwo\n\nfour"
 
 
 @pytest.mark.parametrize("block", [1, 7, 64, 1000])

@@ -107,3 +107,13 @@ def test_false_is_no_north(read):
     """The other truth value is refused, for no north is meant by it."""
     (fault,) = read("feature,trend_deg,plunge_deg,north_reference\nhinge,1,2,FALSCH\n").faults
     assert fault.column == "north_reference"
+
+
+@pytest.mark.parametrize("ending", ["\n", "\r\n"])
+@pytest.mark.parametrize("inside", ["\n", "\r\n", "\r"])
+def test_line_ends_in_a_cell_are_one_and_the_same(read, ending, inside):
+    """A note of two lines is the same note whichever line ends a program wrote."""
+    rows = ["feature,trend_deg,plunge_deg,note,more", f'hinge,1,2,"a{inside}b","c{inside}d"', "hinge,1,2,x,y"]
+    first, second = read(ending.join([*rows, ""]))
+    assert (first.note, first.other["more"], second.note) == ("a\nb", "c\nd", "x")
+    assert hinge(note=f"a{inside}b", other={"m": f"c{inside}d"}) == hinge(note="a\nb", other={"m": "c\nd"})
