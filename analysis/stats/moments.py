@@ -60,6 +60,24 @@ def moments(vectors: npt.ArrayLike, weights: npt.ArrayLike = _ONE) -> Floats:
     return rows
 
 
+def summed_moments(axes: Floats, starts: npt.NDArray[np.integer]) -> Floats:
+    """Sums of rows of moments, shape (K, 24), of runs of axes of weight 1, without making the rows.
+
+    `axes` is (3, N), components first; run k goes from `starts[k]` to the next start, and none is empty.
+    """
+    rows = np.empty((WIDTH, len(starts)))
+    rows[: TENSOR.start] = np.diff(starts, append=axes.shape[1])
+    pairs = np.empty((len(_PAIRS), axes.shape[1]))
+    for pair, (i, j), row in zip(pairs, _PAIRS, rows[TENSOR], strict=True):
+        np.multiply(axes[i], axes[j], out=pair)
+        np.add.reduceat(pair, starts, out=row)
+    quad = np.empty(axes.shape[1])
+    for (p, q), row in zip(_QUAD_FROM.tolist(), rows[FOURTH], strict=True):
+        np.multiply(pairs[p], pairs[q], out=quad)
+        np.add.reduceat(quad, starts, out=row)
+    return np.ascontiguousarray(rows.T)
+
+
 def row_of_tensor(count: float, tensor_sum: Floats) -> Floats:
     """One row, shape (24,), of so many axes of weight 1 with this sum of x x^T, (3, 3); its fourth moments are 0."""
     row = np.zeros(WIDTH)

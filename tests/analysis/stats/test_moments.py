@@ -19,6 +19,7 @@ from analysis.stats.moments import (
     moments,
     product_pairs,
     scaled,
+    summed_moments,
     tensor,
 )
 
@@ -38,6 +39,14 @@ def test_tensor_is_the_sum_of_outer_products(axes, weight):
     assert rows[WEIGHT] == pytest.approx(weight * len(axes))
     assert rows[WEIGHT_SQUARED] == pytest.approx(weight**2 * len(axes))
     assert np.allclose(tensor(rows), weight * axes.T @ axes, atol=EXACT * weight)
+
+
+@given(st.lists(AXES, min_size=1, max_size=5))
+def test_sums_of_runs_are_the_sums_of_their_rows(runs):
+    """Runs of axes summed without making the rows give the sums of the rows of moments."""
+    ends = np.cumsum([len(run) for run in runs])
+    found = summed_moments(np.concatenate(runs).T, ends - [len(run) for run in runs])
+    assert found == pytest.approx(np.array([moments(run).sum(axis=0) for run in runs]), abs=EXACT)
 
 
 @given(AXES, hnp.arrays(float, (4, 3), elements=st.floats(-1, 1)), st.floats(0.1, 10.0))
