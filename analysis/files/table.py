@@ -17,8 +17,8 @@ from analysis.files import standing
 from analysis.files.blocks import Array, Bools, Coded, dtype_of, is_coded, stored
 from analysis.files.columns import BY_NAME, COLUMNS, CONTENT_NAMES, FEATURES, Column, Kind
 from analysis.files.reading import Reading, cell_text, content_part, id_of_content
-from analysis.orient import vectors
 from analysis.orient.features import Feature
+from analysis.orient.manyvectors import axis_vectors
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Iterator, Sequence
@@ -26,9 +26,9 @@ if TYPE_CHECKING:
     from analysis.files.blocks import Block
     from analysis.files.faults import RowFault
     from analysis.files.standing import Conflict
+    from analysis.orient.vectors import Floats
 
 FEATURE_ORDER: tuple[Feature, ...] = tuple(Feature(name) for name in FEATURES)
-_VECTOR_ROWS = 2**16  # rows whose vectors are computed at once, to keep memory small
 _ID_ROWS = 20_000  # rows whose ids are made at once, likewise
 
 Ints = npt.NDArray[np.int32]
@@ -71,7 +71,7 @@ class ReadingTable:
     def __init__(self, columns: Columns, rows: npt.NDArray[np.intp] | None = None) -> None:
         self._columns = columns
         self._rows = rows
-        self._vectors: vectors.Floats | None = None
+        self._vectors: Floats | None = None
         self._rows_by_fold: dict[str, npt.NDArray[np.intp]] | None = None
 
     @classmethod
@@ -163,20 +163,15 @@ class ReadingTable:
         return self.column("struck_out")
 
     @property
-    def vectors(self) -> vectors.Floats:
+    def vectors(self) -> Floats:
         """Downward unit vectors, shape (N, 3): poles of planes, and lines; north, east, down."""
         if self._vectors is None:
-            made = np.empty((len(self), 3))
             plane = self.feature < 2
-            strike, dip, trend, plunge = (
-                self.column(name) for name in ("strike_deg", "dip_deg", "trend_deg", "plunge_deg")
+            made = axis_vectors(
+                plane,
+                np.where(plane, self.column("strike_deg"), self.column("trend_deg")),
+                np.where(plane, self.column("dip_deg"), self.column("plunge_deg")),
             )
-            for start in range(0, len(self), _VECTOR_ROWS):
-                part = slice(start, start + _VECTOR_ROWS)
-                made[part] = vectors.line_vector(
-                    np.where(plane[part], strike[part] - 90.0, trend[part]),
-                    np.where(plane[part], 90.0 - dip[part], plunge[part]),
-                )
             made.flags.writeable = False
             self._vectors = made
         return self._vectors
