@@ -300,7 +300,11 @@ def _blanked(records: Records, rows: Bools, line_end: bytes) -> bytes:
 def _texts(series: pd.Series[Any], *, plain: bool) -> Array:
     values: Array = series.to_numpy(dtype=object)
     if not plain:
-        values = np.array([with_plain_line_ends(unguarded(text)) for text in values.tolist()], dtype=object)
+        texts = [
+            with_plain_line_ends(unguarded(text)) if text[:1] == "'" or "\r" in text else text
+            for text in values.tolist()
+        ]
+        values = np.array(texts, dtype=object)
     return values
 
 

@@ -20,7 +20,7 @@ from typing import TYPE_CHECKING, BinaryIO, cast
 
 from analysis.errors import CsvError
 from analysis.files.atomic import whole_file
-from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless
+from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless, is_coded
 from analysis.files.cells import quoted
 from analysis.files.columns import BY_NAME, NAMES, Kind
 from analysis.files.faults import FaultLog, RowFault
@@ -159,7 +159,12 @@ def _texts(table: ReadingTable) -> Iterator[tuple[int, str]]:
 def _cells(table: ReadingTable, name: str, rows: slice) -> Iterable[str]:
     texts = table.cell_texts(name, rows)
     column = BY_NAME.get(name)
-    return texts if column is not None and column.kind in _UNQUOTED else map(quoted, texts)
+    if column is not None and column.kind in _UNQUOTED:
+        return texts
+    if column is not None and is_coded(column):  # few different texts: each is looked at once
+        cells = {text: quoted(text) for text in set(texts)}
+        return map(cells.__getitem__, texts)
+    return map(quoted, texts)
 
 
 def _name(source: Source) -> str:
