@@ -89,6 +89,13 @@ def parse_header(file: str, line: bytes, *, first_line: int, line_end: bytes) ->
             mend=_SAVE_AS,
         ) from None
     delimiter, cells = _best_cells(text)
+    if delimiter == "," and text.rstrip().endswith(";"):
+        raise CsvError(
+            "all cells of a row stand in the first column",
+            where=file,
+            expected="a column for each name",
+            mend="Hand the readings over again, and open that file with the comma as the mark that parts cells.",
+        )
     if len(cells) > MAX_COLUMNS:
         raise CsvError(
             f"the header has {len(cells)} columns",

@@ -57,6 +57,8 @@ def _split(record: bytes, header: Header, *, malformed: bool, cut_off: bool) -> 
     except csv.Error as error:
         raise CsvError(f"{error} in {shown(text)}", expected="one reading a line") from None
     wanted = len(header.names)
+    if len(cells) == 1:
+        cells = _out_of_one_cell(cells[0], header.delimiter)
     if len(cells) > wanted and any(cells[wanted:]):
         raise CsvError(
             f"{len(cells)} cells",
@@ -70,6 +72,18 @@ def _split(record: bytes, header: Header, *, malformed: bool, cut_off: bool) -> 
             mend="The file was cut off: hand it over again.",
         )
     return cells[:wanted] + [""] * (wanted - len(cells))
+
+
+def _out_of_one_cell(cell: str, delimiter: str) -> list[str]:
+    """Cut a row that a spreadsheet took for one cell: it puts quotes round those rows that hold quotes."""
+    try:
+        return next(csv.reader([cell], delimiter=delimiter, strict=True), [])
+    except csv.Error:  # a text of several lines, cut after the first
+        raise CsvError(
+            f"a row in one cell, and a quote left open in it, in {shown(cell)}",
+            expected="one reading a line",
+            mend="Hand the readings over again, and open that file with the comma as what parts its cells.",
+        ) from None
 
 
 def _judge_cells(cells: dict[str, str], header: Header, line: int) -> Reading | list[RowFault]:
