@@ -194,10 +194,12 @@ def _trend_plunge_deg(vector: Floats) -> tuple[float, float]:
     length = math.hypot(north, east, down)
     if not (math.isfinite(length) and length > 0.0):
         vectors.unit(vector)  # raises, in the words that arrays get
-    if down < 0.0 or (down == 0.0 and (east < 0.0 or (east == 0.0 and north < 0.0))):
+    rounding = vectors.ROUNDING * length
+    level, along_north = abs(down) <= rounding, abs(east) <= rounding
+    if (down if not level else north if along_north else east) < 0.0:
         north, east, down = -north, -east, -down
+    plunge = math.degrees(math.atan2(max(down, 0.0), math.hypot(north, east)))
     # Adding zero turns -0.0 into 0.0, which atan2 would read as the opposite direction.
-    plunge = math.degrees(math.atan2(down + 0.0, math.hypot(north, east)))
     return _wrapped_deg(math.degrees(math.atan2(east + 0.0, north + 0.0))), plunge
 
 

@@ -7,6 +7,8 @@ structural geology; Allmendinger, Cardozo & Fisher (2012), Structural Geology Al
 
 from __future__ import annotations
 
+from typing import Final
+
 import numpy as np
 import numpy.typing as npt
 
@@ -14,6 +16,7 @@ from analysis.errors import AttitudeError
 
 Floats = npt.NDArray[np.float64]
 DOWN: Floats = np.array([0.0, 0.0, 1.0])
+ROUNDING: Final = 1e-14  # of a component of a unit vector that should be zero
 _NEXT, _AFTER = np.array([1, 2, 0]), np.array([2, 0, 1])
 
 
@@ -56,10 +59,15 @@ def unit(vector: npt.ArrayLike) -> Floats:
 
 
 def lower_hemisphere(vector: npt.ArrayLike) -> Floats:
-    """Turn axes, shape (..., 3), so that they point down; horizontal ones point into 0 <= azimuth < 180."""
+    """Turn unit axes, shape (..., 3), so that they point down; horizontal ones point into 0 <= azimuth < 180.
+
+    What is left by rounding of a sine that should be zero counts as zero, so that one axis has one direction however
+    it was reckoned.
+    """
     v = np.asarray(vector, dtype=float)
     north, east, down = v[..., 0], v[..., 1], v[..., 2]
-    up = (down < 0.0) | ((down == 0.0) & ((east < 0.0) | ((east == 0.0) & (north < 0.0))))
+    level, along_north = np.abs(down) <= ROUNDING, np.abs(east) <= ROUNDING
+    up = np.where(level, np.where(along_north, north < 0.0, east < 0.0), down < 0.0)
     # Adding zero turns -0.0 into 0.0, which arctan2 would read as the opposite direction.
     return np.where(up[..., np.newaxis], -v, v) + 0.0
 
@@ -67,7 +75,7 @@ def lower_hemisphere(vector: npt.ArrayLike) -> Floats:
 def trend_plunge_deg(vector: npt.ArrayLike) -> tuple[Floats, Floats]:
     """Trend and plunge, in degrees, of axes with shape (..., 3), taken in the lower hemisphere."""
     v = lower_hemisphere(vector)
-    plunge = np.degrees(np.arctan2(v[..., 2], np.hypot(v[..., 0], v[..., 1])))
+    plunge = np.degrees(np.arctan2(np.maximum(v[..., 2], 0.0), np.hypot(v[..., 0], v[..., 1])))
     trend = wrap_azimuth_deg(np.degrees(np.arctan2(v[..., 1], v[..., 0])))
     return trend, plunge
 

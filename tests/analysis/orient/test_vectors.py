@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 
 from analysis.errors import AttitudeError
 from analysis.orient import vectors
+from analysis.orient.attitudes import Line
 
 AZIMUTHS = st.floats(0.0, 360.0)
 INCLINATIONS = st.floats(0.0, 90.0)
@@ -92,6 +93,19 @@ def test_an_axis_and_its_opposite_are_one_line_and_one_place(axis):
 )
 def test_horizontal_axes_trend_below_180(vector, trend):
     assert vectors.trend_plunge_deg(vector) == (trend, 0)
+
+
+@pytest.mark.parametrize("trend", [0.0, 30.0, 90.0, 150.0, 180.0, 210.0, 270.0, 330.0])
+@pytest.mark.parametrize("rounding", [-2e-16, 0.0, 2e-16])
+def test_rounding_does_not_turn_a_horizontal_axis_round(trend, rounding):
+    """What rounding leaves of a zero plunge, or of a zero in the east, decides no direction."""
+    axis = np.add(vectors.line_vector(trend, 0.0), [0.0, 0.0, rounding])
+    found = vectors.trend_plunge_deg(axis)
+    assert found[0] == pytest.approx(trend % 180.0, abs=1e-9)
+    assert 0.0 <= found[1] < 1e-12
+    assert Line.from_vector(axis).trend_deg == pytest.approx(trend % 180.0, abs=1e-9)
+    place = vectors.equal_area_xy(axis)
+    assert np.allclose(place, vectors.equal_area_xy(vectors.line_vector(trend % 180.0, 0.0)), atol=1e-12)
 
 
 def test_a_vertical_axis_plunges_90_whichever_way_it_points():
