@@ -13,6 +13,7 @@ import numpy as np
 
 from analysis.errors import AttitudeError
 from analysis.orient.features import Feature
+from analysis.orient.vectors import ROUNDING
 from analysis.stats.moments import COUNT, WIDTH, moments, summed_moments
 
 if TYPE_CHECKING:
@@ -42,9 +43,8 @@ def cell_of(vectors: npt.ArrayLike) -> npt.NDArray[np.int64]:
     north, east, down = v[..., 0], v[..., 1], v[..., 2]
     # The sign of the end in the lower hemisphere, as `lower_hemisphere` has it, but without a copy of the axes.
     # An axis and its opposite come to the same three numbers, to the last bit; adding zero makes -0.0 one of them.
-    flat = down == 0.0
-    up = (down < 0.0) | (flat & ((east < 0.0) | ((east == 0.0) & (north < 0.0))))
-    sign = 1.0 - 2.0 * up
+    level, along_north = np.abs(down) <= ROUNDING, np.abs(east) <= ROUNDING
+    sign = 1.0 - 2.0 * np.where(level, np.where(along_north, north < 0.0, east < 0.0), down < 0.0)
     plunge = np.degrees(np.arcsin(np.minimum(np.abs(down), 1.0)))
     band = np.minimum((plunge / (90.0 / _BANDS)).astype(np.int64), _BANDS - 1)
     turn = np.arctan2(east * sign + 0.0, north * sign + 0.0) / (2.0 * np.pi)
@@ -126,12 +126,13 @@ class RunningSums:
         kinds = len(FEATURES)
         for start in range(0, len(vectors), _CHUNK):
             part = slice(start, start + _CHUNK)
+            axes = vectors[part].T.copy()
             codes = np.asarray(feature_codes[part], dtype=np.int64)
             slots = slot_of[np.asarray(outcrop_codes[part], dtype=np.int64)]
             beds = np.flatnonzero(codes == _BEDDING)
             keys = (slots * kinds + codes) * CELLS
-            keys[beds] += cell_of(vectors[part][beds])
-            held, sums = _moments_by_key(vectors[part], keys, len(self._rows) * kinds * CELLS)
+            keys[beds] += cell_of(axes[:, beds].T)
+            held, sums = _moments_by_key(axes, keys, len(self._rows) * kinds * CELLS)
             groups, starts = np.unique(held // CELLS, return_index=True)
             self._rows.reshape(-1, WIDTH)[groups] += np.add.reduceat(sums, starts)
             of_beds = held // CELLS % kinds == _BEDDING
@@ -261,15 +262,18 @@ def _compact(keys: npt.NDArray[np.int64], size: int) -> tuple[npt.NDArray[np.int
 
 
 def _moments_by_key(
-    vectors: Floats, keys: npt.NDArray[np.int64], size: int
+    axes: Floats, keys: npt.NDArray[np.int64], size: int
 ) -> tuple[npt.NDArray[np.int64], Floats]:
-    """Keys that occur, ascending, and the sums of the moments, (K, 24), of the at most `_CHUNK` axes under each."""
+    """Keys that occur, ascending, and the sums of the moments, (K, 24), of the axes, (3, N), under each.
+
+    N is at most `_CHUNK`.
+    """
     held, places = _compact(keys, size)
     # Axes of one key come to lie side by side and are summed as a run. Places of so few fit 16 bits, which are
     # sorted the fastest.
     order = np.argsort(places.astype(np.uint16), kind="stable")
     counts = np.bincount(places, minlength=len(held))
-    return held, summed_moments(np.take(vectors.T.copy(), order, axis=1), np.cumsum(counts) - counts)
+    return held, summed_moments(np.take(axes, order, axis=1), np.cumsum(counts) - counts)
 
 
 def grouped(rows: Floats, keys: npt.NDArray[np.integer], size: int) -> Floats:
