@@ -45,7 +45,7 @@ ROOMS = {
     "stats": Room({"orient"}, {"numpy"}),
     "fold": Room({"orient", "stats"}, {"numpy"}),
     "strain": Room({"orient", "stats", "fold"}, {"numpy"}),
-    "files": Room({"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio"}),
+    "files": Room({"orient"}, {"numpy", "pandas"}, {"geopandas", "pyogrio", "pyarrow"}),
     "survey": Room(FIELD_ROOMS | {"files"}, {"numpy", "pandas"}, {"dask", "distributed", "pyarrow"}),
     "report": Room(EVERY_ROOM, {"numpy", "pandas"}, {"matplotlib", "jinja2", "fpdf"}),
     "demo": Room({"orient", "stats", "files"}, {"numpy"}),

@@ -119,13 +119,14 @@ def progress(label: str) -> Iterator[Callable[[float], None]]:
 
 def read_files(files: tuple[Path, ...], *, strict: bool, say_conflicts: bool = True) -> ReadingTable:
     """Read files into a table; rows that are left out are named on standard error."""
+    from analysis.files.arrowed import parse_clean  # noqa: PLC0415 - as below
     from analysis.files.csvfile import read_table  # noqa: PLC0415 - pandas is loaded only when files are read
 
     if sum(path.stat().st_size for path in files if path.is_file()) >= _SHOW_PROGRESS_FROM_BYTES:
         with progress("reading") as show:
-            table = read_table(*files, strict=strict, progress=show)
+            table = read_table(*files, strict=strict, progress=show, clean_parser=parse_clean)
     else:
-        table = read_table(*files, strict=strict)
+        table = read_table(*files, strict=strict, clean_parser=parse_clean)
     for fault in table.faults[:_FAULTS_SHOWN]:
         click.echo(f"left out: {fault}", err=True)
     if table.faulty_rows:
@@ -176,10 +177,12 @@ def sums_of_table(table: ReadingTable) -> RunningSums:
 
 def axes_by_feature(table: ReadingTable) -> dict[Feature, np.ndarray[Any, np.dtype[np.float64]]]:
     """Axes (n, 3) of a table by feature, each in the order of the table."""
-    codes = table.feature.astype(np.int8)
-    ordered = table.vectors[np.argsort(codes, kind="stable")]
-    ends = np.cumsum(np.bincount(codes, minlength=len(FEATURES)))
-    return dict(zip(FEATURES, np.split(ordered, ends[:-1]), strict=True))
+    codes, axes = table.feature, table.vectors
+    if (codes[1:] < codes[:-1]).any():
+        codes, axes = codes[order := np.argsort(codes.astype(np.int8), kind="stable")], axes[order]
+    return dict(
+        zip(FEATURES, np.split(axes, np.searchsorted(codes, np.arange(1, len(FEATURES)))), strict=True)
+    )
 
 
 def print_json(value: object, *, indent: int | None = 1) -> None:

@@ -20,14 +20,17 @@ from typing import TYPE_CHECKING, BinaryIO, cast
 
 from analysis.errors import CsvError
 from analysis.files.atomic import whole_file
-from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless, is_coded
+from analysis.files.blocks import MAX_BAD_ROWS, BlockReader, ReadBlock, hopeless
+from analysis.files.builder import TableBuilder
 from analysis.files.cells import quoted
 from analysis.files.columns import BY_NAME, NAMES, Kind
 from analysis.files.faults import FaultLog, RowFault
+from analysis.files.held import is_coded
 from analysis.files.records import RecordFile
-from analysis.files.table import ReadingTable, TableBuilder
+from analysis.files.table import ReadingTable
 
 if TYPE_CHECKING:
+    from analysis.files.frames import CleanParser
     from analysis.files.reading import Reading
 
 Source = str | os.PathLike[str] | BinaryIO
@@ -40,7 +43,12 @@ _WRITE_ROWS = 20_000  # rows turned to text at once
 _UNQUOTED = (Kind.NUMBER, Kind.WHOLE, Kind.YES_NO, Kind.TIME, Kind.WORD)
 
 
-def read_table(*sources: Source, strict: bool = False, progress: Progress | None = None) -> ReadingTable:
+def read_table(
+    *sources: Source,
+    strict: bool = False,
+    progress: Progress | None = None,
+    clean_parser: CleanParser | None = None,
+) -> ReadingTable:
     """Read files of readings into one table.
 
     Parameters
@@ -51,6 +59,9 @@ def read_table(*sources: Source, strict: bool = False, progress: Progress | None
         Refuse a file with a bad row instead of leaving the row out.
     progress
         Called with the share read so far, 0 to 1; not called for streams of unknown length.
+    clean_parser
+        What to parse clean blocks with in place of pandas, such as `analysis.files.arrowed.parse_clean`; nothing
+        but the time depends on it.
 
     Raises
     ------
@@ -69,7 +80,7 @@ def read_table(*sources: Source, strict: bool = False, progress: Progress | None
             try:
                 records = RecordFile(file, stream)
                 builder.start_file(file, records.header.other_names, records.header.unnamed)
-                for read, bytes_read in _read_blocks(records):
+                for read, bytes_read in _read_blocks(records, clean_parser):
                     builder.add(read.block)
                     log.add_rows(read.faults)
                     if strict and log.rows:
@@ -86,9 +97,9 @@ def read_table(*sources: Source, strict: bool = False, progress: Progress | None
     return builder.build(log.kept, log.rows)
 
 
-def _read_blocks(records: RecordFile) -> Iterator[tuple[ReadBlock, int]]:
+def _read_blocks(records: RecordFile, clean_parser: CleanParser | None) -> Iterator[tuple[ReadBlock, int]]:
     """Read the blocks of a file in their order, several at once; with the bytes read so far."""
-    reader = BlockReader(records.header)
+    reader = BlockReader(records.header, clean_parser)
     blocks = iter(records)
     first = next(blocks, None)
     if first is None:

@@ -7,14 +7,16 @@ from dataclasses import replace
 from typing import TYPE_CHECKING, BinaryIO
 
 from analysis.errors import CsvError
+from analysis.files.arrowed import parse_clean
 from analysis.files.blocks import BlockReader
+from analysis.files.builder import TableBuilder
 from analysis.files.records import RecordFile
-from analysis.files.table import ReadingTable, TableBuilder
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
     from analysis.files.header import Header
+    from analysis.files.table import ReadingTable
 
 
 def pieces_of(path: str | os.PathLike[str]) -> Iterator[ReadingTable]:
@@ -38,7 +40,7 @@ def pieces_of(path: str | os.PathLike[str]) -> Iterator[ReadingTable]:
 def pieces_of_stream(file: str, stream: BinaryIO, *, lines_before: int = 0) -> Iterator[ReadingTable]:
     """Read an open file in pieces, as `pieces_of`; `file` names it in messages, whose lines begin after others."""
     records = RecordFile(file, stream)
-    reader = BlockReader(records.header)
+    reader = BlockReader(records.header, parse_clean)
     for block in records:
         read = reader.read(block)
         builder = TableBuilder()

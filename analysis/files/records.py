@@ -19,8 +19,9 @@ from analysis.files.header import BOM, SEPARATOR_LINE, Header, parse_header, ref
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
-BLOCK_BYTES = 4 * 2**20
+BLOCK_BYTES = 2 * 2**20
 MAX_RECORD_BYTES = 4 * 2**20  # longer than any reading that can be written
+_COUNT_BYTES = 2**18  # looked at together: few enough to stay near the processor
 
 _QUOTE, _CR, _LF = b'"\r\n'
 _Ints = npt.NDArray[np.int64]
@@ -29,27 +30,89 @@ _Bools = npt.NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True)
-class Records:
-    """Whole records of a file, each with its line end.
+class Cut:
+    """Where records stand in their text.
 
-    `starts` and `ends` are offsets into `text`, `lines` the line numbers where records start, `malformed`
+    `starts` and `ends` are offsets into the text, `lines` the line numbers where records start, `malformed`
     marks those whose quotes or line ends are out of place. `cells` counts the cells of each record; 0 where
     it is malformed.
     """
 
-    text: bytes
     starts: _Ints
     ends: _Ints
     lines: _Ints
     cells: _Ints
     malformed: _Bools
 
+
+class Records:
+    """Whole records of a file, each with its line end.
+
+    Simple text, without quotes and with no line end but those of its records, is cut only when somebody asks
+    where one of them stands, which nobody does while all is well.
+    """
+
+    __slots__ = ("_count", "_cut", "_cutter", "_line", "text")
+
+    def __init__(self, text: bytes, line: int, cutter: _Cutter, cut: Cut | None = None) -> None:
+        self.text = text
+        self._line = line
+        self._cutter = cutter
+        self._cut = cut
+        self._count = cutter.count_lines(text) if cut is None else len(cut.starts)
+
     def __len__(self) -> int:
-        return len(self.starts)
+        return self._count
+
+    @property
+    def starts(self) -> _Ints:
+        """Offset of each record in the text."""
+        return self._found().starts
+
+    @property
+    def ends(self) -> _Ints:
+        """Offset of the end of each record, its line end included."""
+        return self._found().ends
+
+    @property
+    def cells(self) -> _Ints:
+        """Number of cells of each record; 0 where it is malformed."""
+        return self._found().cells
+
+    @property
+    def malformed(self) -> _Bools:
+        """Whether quotes or line ends of each record are out of place."""
+        return self._found().malformed
+
+    @property
+    def lines(self) -> npt.NDArray[np.int32]:
+        """Line number where each record starts."""
+        if self._cut is None:
+            return np.arange(self._line, self._line + self._count, dtype=np.int32)
+        return self._cut.lines.astype(np.int32)
 
     def record(self, index: int) -> bytes:
         """The bytes of one record, without its line end."""
         return self.text[self.starts[index] : self.ends[index]].rstrip(b"\r\n")
+
+    def _found(self) -> Cut:
+        if self._cut is None:
+            self._cut = self._cutter.cut_by_arrays(self.text, self._line, None)
+        return self._cut
+
+    def seem_even(self, cells: int, longest: int) -> bool:
+        """Whether each record has so many cells and at most so many bytes, as far as can be seen at a glance.
+
+        Of simple text the cells are counted together, so that a record with more may make up for one with fewer:
+        a parser that gets the text finds the longer one.
+        """
+        if self._cut is not None:
+            cut = self._cut
+            short = bool(np.all(cut.ends - cut.starts <= longest))
+            return short and bool(np.all((cut.cells == cells) & ~cut.malformed))
+        return self._cutter.counts_agree(self.text, self._count, cells) and self._cutter.lines_are_short(
+            self.text, longest
+        )
 
 
 class RecordFile:
@@ -114,36 +177,66 @@ class _Cutter:
 
     def cut(self, text: bytes, line: int, *, final: bool) -> tuple[Records, int]:
         """Give the whole records at the start of a text and how many bytes they take."""
+        end_byte = bytes([self.line_end])
+        if b'"' not in text:
+            used = len(text) if final else text.rfind(end_byte) + 1
+            kept = text if used == len(text) else text[:used]
+            if used and not self._has_stray_ends(kept):
+                records = Records(kept, line, self)
+                self.next_line = line + len(records)
+                return records, used
         array = np.frombuffer(text, dtype=np.uint8)
         outside = None if b'"' not in text else _outside_quotes(array)
-        line_ends = array == self.line_end
-        breaks = np.flatnonzero(line_ends if outside is None else line_ends & outside)
-        ends = breaks + 1
-        used = int(ends[-1]) if len(ends) else 0
+        used = _last(array == self.line_end if outside is None else (array == self.line_end) & outside) + 1
         if final and used < len(text) and (outside is None or bool(outside[-1])):
             used = len(text)
-            ends = np.append(ends, used)
         # An open quote at the end of the file, or one that stays open too long, is looked at line by line.
         unclosed = used == 0 if not final else used < len(text)
         if unclosed and (final or len(text) > MAX_RECORD_BYTES):
             return self._cut_by_line(text, line, final=final)
         if outside is not None and not self._quotes_in_place(array[:used]):
             return self._cut_by_line(text, line, final=final)
+        kept = text if used == len(text) else text[:used]
+        self.next_line = line + kept.count(end_byte)
+        outside = None if outside is None else outside[:used]
+        return Records(kept, line, self, self.cut_by_arrays(kept, line, outside)), used
+
+    def cut_by_arrays(self, text: bytes, line: int, outside: _Bools | None) -> Cut:
+        """Cut whole records whose quotes are in place; `outside` marks the bytes outside quotes, if there are any."""
+        array = np.frombuffer(text, dtype=np.uint8)
+        line_ends = np.flatnonzero(array == self.line_end)
+        breaks = line_ends if outside is None else line_ends[outside[line_ends]]
+        ends = breaks + 1
+        if len(text) and (not len(ends) or ends[-1] < len(text)):
+            ends = np.append(ends, len(text))
         starts = np.concatenate(([0], ends[:-1])) if len(ends) else ends
-        if outside is None or len(breaks) == int(np.count_nonzero(line_ends[:used])):
+        if len(breaks) == len(line_ends):
             lines = line + np.arange(len(starts))
         else:
-            lines = line + np.searchsorted(np.flatnonzero(line_ends[:used]), starts)
-        self.next_line = line + int(np.count_nonzero(line_ends[:used]))
-        stray = self._stray_ends(text, array[:used], outside, starts)
-        cells = self._count_cells(array[:used], outside, starts, ends)
-        kept = text if used == len(text) else text[:used]
-        return Records(kept, starts, ends, lines, cells, stray), used
+            lines = line + np.searchsorted(line_ends, starts)
+        stray = self._stray_ends(text, array, outside, starts)
+        return Cut(starts, ends, lines, self._count_cells(array, outside, starts, ends), stray)
+
+    def count_lines(self, text: bytes) -> int:
+        """Number of lines; the last may lack its end."""
+        ended = not text or text[-1] == self.line_end
+        return _count(text, self.line_end) + (0 if ended else 1)
+
+    def counts_agree(self, text: bytes, rows: int, cells: int) -> bool:
+        """Whether simple text has cells for so many rows, and its first row as many as it should."""
+        first = text[: _line_end(text, 0, bytes([self.line_end]))]
+        return _count(text, self.delimiter) == rows * (cells - 1) == rows * _count(first, self.delimiter)
+
+    def lines_are_short(self, text: bytes, longest: int) -> bool:
+        """Whether every line ends soon; False may be a false alarm, for a line of more than half that length."""
+        step = longest // 2
+        end_byte = bytes([self.line_end])
+        return all(text.find(end_byte, at, at + step) >= 0 for at in range(0, len(text) - step, step))
 
     def _count_cells(self, array: _Bytes, outside: _Bools | None, starts: _Ints, ends: _Ints) -> _Ints:
         delimiters = array == self.delimiter
         if outside is not None:
-            delimiters &= outside[: len(array)]
+            delimiters &= outside
         places = np.flatnonzero(delimiters)
         rows = len(starts)
         if rows and len(places) % rows == 0 and len(places):
@@ -153,18 +246,22 @@ class _Cutter:
                 return np.full(rows, table.shape[1] + 1)
         return np.searchsorted(places, ends) - np.searchsorted(places, starts) + 1
 
+    def _has_stray_ends(self, text: bytes) -> bool:
+        """Whether a line end of the other kind stands somewhere, also if in quotes."""
+        if self.line_end == _LF:
+            return b"\r" in text and text.count(b"\r") != text.count(b"\r\n")
+        return b"\n" in text
+
     def _stray_ends(self, text: bytes, array: _Bytes, outside: _Bools | None, starts: _Ints) -> _Bools:
         """Mark the records with a line end of the other kind in the middle of a cell outside quotes."""
         marked = np.zeros(len(starts), dtype=bool)
+        if not self._has_stray_ends(text):
+            return marked
+        other = array == (_CR if self.line_end == _LF else _LF)
         if self.line_end == _LF:
-            if b"\r" not in text or text.count(b"\r") == text.count(b"\r\n"):
-                return marked
-            other = array == _CR
             other[:-1] &= array[1:] != _LF
-        else:
-            other = array == _LF
         if outside is not None:
-            other &= outside[: len(array)]
+            other &= outside
         if len(starts):
             marked[np.searchsorted(starts, np.flatnonzero(other), side="right") - 1] = True
         return marked
@@ -210,17 +307,9 @@ class _Cutter:
         if not starts and not final and len(text) > MAX_RECORD_BYTES:
             raise self._too_long(line)
         counted = np.array(cells, dtype=np.int64)
-        return (
-            Records(
-                text[:start],
-                np.array(starts, dtype=np.int64),
-                np.array(ends, dtype=np.int64),
-                np.array(lines, dtype=np.int64),
-                counted,
-                counted == 0,
-            ),
-            start,
-        )
+        places = [np.array(each, dtype=np.int64) for each in (starts, ends, lines)]
+        cut = Cut(places[0], places[1], places[2], counted, counted == 0)
+        return Records(text[:start], line, self, cut), start
 
     def _too_long(self, line: int) -> CsvError:
         return CsvError(
@@ -229,6 +318,19 @@ class _Cutter:
             expected="one reading a line",
             mend="Look there for a cell that holds a whole file, or for line ends that were lost.",
         )
+
+
+def _count(text: bytes, byte: int) -> int:
+    array = np.frombuffer(text, dtype=np.uint8)
+    return sum(
+        int(np.count_nonzero(array[at : at + _COUNT_BYTES] == byte))
+        for at in range(0, len(text), _COUNT_BYTES)
+    )
+
+
+def _last(marks: _Bools) -> int:
+    """Place of the last mark; -1 where there is none."""
+    return len(marks) - 1 - int(np.argmax(marks[::-1])) if marks.any() else -1
 
 
 def _outside_quotes(array: _Bytes) -> _Bools:

@@ -13,7 +13,7 @@ from analysis.files.columns import NAMES
 if TYPE_CHECKING:
     import numpy.typing as npt
 
-    from analysis.files.blocks import Array, Bools
+    from analysis.files.held import Array, Bools
     from analysis.files.reading import Reading
     from analysis.files.table import ReadingTable
 

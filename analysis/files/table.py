@@ -14,16 +14,15 @@ import numpy as np
 import numpy.typing as npt
 
 from analysis.files import standing
-from analysis.files.blocks import Array, Bools, Coded, dtype_of, is_coded, stored
 from analysis.files.columns import BY_NAME, COLUMNS, CONTENT_NAMES, FEATURES, Column, Kind
+from analysis.files.held import Array, Bools, Coded, dtype_of, is_coded, stored
 from analysis.files.reading import Reading, cell_text, content_part, id_of_content
 from analysis.orient.features import Feature
 from analysis.orient.manyvectors import axis_vectors
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable, Iterator, Sequence
+    from collections.abc import Iterable, Iterator, Mapping
 
-    from analysis.files.blocks import Block
     from analysis.files.faults import RowFault
     from analysis.files.standing import Conflict
     from analysis.orient.vectors import Floats
@@ -49,7 +48,7 @@ class Codes:
 class Columns:
     """The columns of a table as they were read; a missing key is a column that no file has."""
 
-    arrays: dict[str, Array]
+    arrays: Mapping[str, Array]
     values: dict[str, tuple[Any, ...]]  # of the coded columns
     other_names: tuple[str, ...]
     files: tuple[str, ...]
@@ -66,11 +65,12 @@ class Columns:
 class ReadingTable:
     """Readings as columns, N rows in file order; see the properties for shapes and units."""
 
-    __slots__ = ("_columns", "_rows", "_rows_by_fold", "_vectors")
+    __slots__ = ("_columns", "_feature", "_rows", "_rows_by_fold", "_vectors")
 
     def __init__(self, columns: Columns, rows: npt.NDArray[np.intp] | None = None) -> None:
         self._columns = columns
         self._rows = rows
+        self._feature: Ints | None = None
         self._vectors: Floats | None = None
         self._rows_by_fold: dict[str, npt.NDArray[np.intp]] | None = None
 
@@ -133,9 +133,13 @@ class ReadingTable:
     @property
     def feature(self) -> Ints:
         """Place of each row's feature in FEATURE_ORDER (bedding, cleavage, intersection, hinge), (N,)."""
-        codes = self.codes("feature")
-        places = [FEATURES.index(name) if name in FEATURES else -1 for name in codes.names]
-        return np.array([*places, -1], dtype=np.int32)[codes.codes]
+        if self._feature is None:
+            codes = self.codes("feature")
+            places = [FEATURES.index(name) if name in FEATURES else -1 for name in codes.names]
+            made: Ints = np.array([*places, -1], dtype=np.int32)[codes.codes]
+            made.flags.writeable = False
+            self._feature = made
+        return self._feature
 
     @property
     def fold(self) -> Codes:
@@ -220,6 +224,10 @@ class ReadingTable:
     def of_fold(self, name: str) -> ReadingTable:
         """Give the standing readings of one fold, in file order; none for a name that is not there."""
         return self.take(self._fold_rows().get(name, np.empty(0, dtype=np.intp)))
+
+    def by_feature(self) -> ReadingTable:
+        """Give the rows of bedding, then those of cleavage, intersection and hinge, each in their order."""
+        return self.take(np.argsort(self.feature.astype(np.int8), kind="stable"))
 
     def in_recorded_order(self) -> ReadingTable:
         """Give the rows in the order of recorded_at; a row without time stays behind the row before it."""
@@ -331,88 +339,6 @@ class ReadingTable:
                 count = seen[file, revision, made] = seen.get((file, revision, made), 0) + 1
                 ids[row] = made if count == 1 else id_of_content(parts, count)
         return ids
-
-
-class TableBuilder:
-    """Collects blocks of rows, of one or several files, into a table; `rows` counts them."""
-
-    def __init__(self) -> None:
-        self._parts: dict[str, list[Array]] = {}
-        self._codes: dict[str, Coded] = {}
-        self.rows = 0
-        self._lines: list[Ints] = []
-        self._files: list[str] = []
-        self._file_rows: list[int] = []
-        self._other: dict[str, bool] = {}  # name: whether it may be dropped when empty
-
-    def start_file(self, file: str, other_names: Sequence[str], unnamed: frozenset[str]) -> None:
-        """Begin the rows of the next file."""
-        self._files.append(file)
-        self._file_rows.append(0)
-        for name in other_names:
-            self._other[name] = name in unnamed and self._other.get(name, True)
-
-    def add(self, block: Block) -> None:
-        """Add the rows of a block; the block is used up."""
-        rows = len(block.lines)
-        for name in self._parts.keys() - block.columns.keys():
-            self._parts[name].append(self._blank(name, rows))
-        for name, column in block.columns.items():
-            if name not in self._parts:
-                self._parts[name] = [self._blank(name, self.rows)] if self.rows else []
-            self._parts[name].append(self._recoded(name, column) if isinstance(column, Coded) else column)
-        self._lines.append(block.lines)
-        self.rows += rows
-        self._file_rows[-1] += rows
-
-    def _coded(self, name: str) -> Coded:
-        return self._codes.setdefault(name, Coded(np.empty(0, dtype=np.int32), {}))
-
-    def _recoded(self, name: str, column: Coded) -> Array:
-        whole = self._coded(name)
-        used = np.zeros(len(column.code_by_value), dtype=bool)
-        used[column.codes] = True
-        table = np.zeros(len(used) + 1, dtype=np.int32)
-        for value, code in column.code_by_value.items():
-            if used[code]:
-                table[code] = whole.code_of(value)
-        return table[column.codes]
-
-    def _blank(self, name: str, rows: int) -> Array:
-        column = BY_NAME.get(name)
-        if column is not None and is_coded(column):
-            blank: Any = self._coded(name).code_of(() if column.kind is Kind.WORDS else column.blank)
-        elif name == "revision":
-            blank = 1
-        else:
-            blank = "" if dtype_of(column) == "object" else stored(None, column)
-        return np.full(rows, blank, dtype=dtype_of(column))
-
-    def build(self, faults: Sequence[RowFault], faulty_rows: int) -> ReadingTable:
-        """Make the table; the builder is used up."""
-        arrays: dict[str, Array] = {}
-        for name in list(self._parts):
-            parts = self._parts.pop(name)
-            arrays[name] = parts[0] if len(parts) == 1 else np.concatenate(parts)
-            arrays[name].flags.writeable = False
-        other = []
-        for name, droppable in self._other.items():
-            if droppable and not any(arrays.get(name, ())):
-                arrays.pop(name, None)
-            else:
-                arrays.setdefault(name, np.full(self.rows, "", dtype=object))
-                other.append(name)
-        lines = np.concatenate(self._lines) if self._lines else np.empty(0, dtype=np.int32)
-        file_codes = (
-            np.broadcast_to(np.int32(0), self.rows)
-            if len(self._files) == 1
-            else np.repeat(np.arange(len(self._files), dtype=np.int32), self._file_rows)
-        )
-        values = {name: tuple(coded.code_by_value) for name, coded in self._codes.items()}
-        columns = Columns(
-            arrays, values, tuple(other), tuple(self._files), file_codes, lines, tuple(faults), faulty_rows
-        )
-        return ReadingTable(columns)
 
 
 def _array(cells: list[Any], column: Column | None) -> Array:
