@@ -300,12 +300,12 @@ def say(what, median, least):
 
 
 def measure(what, path):
-    """Read and check a file in this process; print seconds and memory as JSON."""
+    """Read and check a file in this process as the command does; print seconds and memory as JSON."""
     import pandas as pd  # noqa: PLC0415 - the imports are no part of the measurement
     from bench_csv import _memory_kib  # noqa: PLC0415
 
-    from analysis.cli.check import check_table  # noqa: PLC0415
-    from analysis.files.csvfile import read_table  # noqa: PLC0415
+    from analysis.cli.check import check_tables  # noqa: PLC0415
+    from analysis.cli.common import chosen_folds, read_files  # noqa: PLC0415
     from analysis.fold.settings import CheckSettings  # noqa: PLC0415
 
     before = _memory_kib("VmRSS")
@@ -313,8 +313,8 @@ def measure(what, path):
     if what == "bare":
         rows = len(pd.read_csv(path))
     else:
-        table = read_table(path, progress=lambda _: None)
-        checks = [check_table(table.of_fold(fold), CheckSettings(), fold) for fold in table.folds()]
+        table = read_files((Path(path),), strict=False)
+        checks = check_tables(list(chosen_folds(table, None, None)), CheckSettings())
         counts = [one.readings for one in checks]
         rows = sum(c.bedding + c.cleavage + c.intersection + c.hinge for c in counts)
     seconds = time.perf_counter() - start

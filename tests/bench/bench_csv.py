@@ -76,6 +76,7 @@ def measure(what: str, path: str) -> None:
     """Run one way of reading in this process and print its figures as JSON."""
     import pandas as pd  # noqa: PLC0415 - the import is no part of the measurement
 
+    from analysis.files.arrowed import parse_clean  # noqa: PLC0415
     from analysis.files.csvfile import read_table  # noqa: PLC0415
 
     before = _memory_kib("VmRSS")
@@ -84,7 +85,7 @@ def measure(what: str, path: str) -> None:
         kept = pd.read_csv(path)
         rows = len(kept)
     else:
-        table = read_table(path, progress=lambda _: None)
+        table = read_table(path, progress=lambda _: None, clean_parser=parse_clean)
         rows = int(table.standing.sum())
         assert len(table.vectors) == len(table)
         assert table.folds()
