@@ -41,11 +41,13 @@ class Conflict:
 def find(table: ReadingTable) -> tuple[Bools, tuple[Conflict, ...]]:
     """Mark the rows that count, shape (N,), and find the conflicts; for a whole table."""
     live: Bools = ~table.struck_out
-    ids = table.column("reading_id")
     revision = table.revision
+    # Equal rows of one file without ids are different readings: each row stands for itself.
+    if len(table.files) == 1 and not (table.has("reading_id") or table.has("revision")):
+        return live, ()
+    ids = table.column("reading_id")
     missing = ids == ""
     if len(table.files) == 1 and bool(missing.all()) and bool((revision == 1).all()):
-        # Equal rows of one file are different readings: each row stands for itself.
         return live, ()
     ids = table.reading_id if bool(missing.any()) else ids
     if pd.Index(ids, dtype=object).is_unique:

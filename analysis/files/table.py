@@ -117,6 +117,10 @@ class ReadingTable:
             return np.broadcast_to(np.array(blank, dtype=dtype_of(column)), len(self))
         return array if self._rows is None else array[self._rows]
 
+    def has(self, name: str) -> bool:
+        """Whether some file has a column of this name."""
+        return name in self._columns.arrays
+
     def codes(self, name: str) -> Codes:
         """Give one column of names or words (warnings_kept: of tuples of words) as codes and names."""
         values = self._columns.values.get(name)
@@ -241,8 +245,8 @@ class ReadingTable:
             rows = np.flatnonzero(self.standing)
             fold = self.fold
             codes = fold.codes[rows]
-            if len(fold.names) < 2**16:
-                codes = codes.astype(np.uint16)  # sorted by radix, in a fraction of the time
+            if len(fold.names) <= 2**16:  # sorted by radix, in a fraction of the time
+                codes = codes.astype(np.uint8 if len(fold.names) <= 2**8 else np.uint16)
             ordered = np.argsort(codes, kind="stable")
             present, starts = np.unique(codes[ordered], return_index=True)
             groups = np.split(rows[ordered], starts[1:])

@@ -64,7 +64,7 @@ def find_outliers(readings: Mapping[Feature, Floats]) -> tuple[Outlier, ...]:
 def _far_off(
     readings: Mapping[Feature, Floats], kept: Mapping[Feature, npt.NDArray[np.bool_]]
 ) -> list[Outlier]:
-    axes = {feature: readings[feature][kept[feature]] for feature in FEATURES if feature in readings}
+    axes = {feature: _chosen(readings[feature], kept[feature]) for feature in FEATURES if feature in readings}
     count = {feature: len(axes.get(feature, ())) for feature in FEATURES}
     # An axis is fitted to tensors; the fourth moments, which give its error, are not asked for here.
     rows = np.zeros((1, len(FEATURES), WIDTH))
@@ -98,7 +98,9 @@ def _beyond(
     along = np.minimum(np.abs(axes @ axis), 1.0)
     off = np.degrees(np.arccos(along) if off_axis else np.arcsin(along))
     # The median of a normal residual is 0.6745 and that of the length of two of them 1.1774 standard deviations.
-    scatter = max(float(np.median(off[kept[feature]])) / (1.1774 if off_axis else 0.6745), _LEAST_SCATTER_DEG)
+    scatter = max(
+        float(np.median(_chosen(off, kept[feature]))) / (1.1774 if off_axis else 0.6745), _LEAST_SCATTER_DEG
+    )
     by_chance = (
         math.sqrt(2.0 * math.log(n / _FALSE_ALARMS))
         if off_axis
@@ -106,3 +108,7 @@ def _beyond(
     )
     allowed = max(by_chance, _AT_LEAST) * scatter
     return [Outlier(feature, int(k), float(off[k]), allowed) for k in np.flatnonzero(off > allowed)]
+
+
+def _chosen(values: Floats, mask: npt.NDArray[np.bool_]) -> Floats:
+    return values if mask.all() else values[mask]
