@@ -18,6 +18,7 @@ if TYPE_CHECKING:
 _DEGREES: Final = np.radians(np.arange(361.0))
 _SINES: Final = np.sin(_DEGREES)
 _COSINES: Final = np.cos(_DEGREES)
+_RADIAN: Final = float(np.radians(1.0))
 _AT_ONCE: Final = 2**14  # readings whose intermediate values are in memory at a time: few enough to stay near
 
 
@@ -54,7 +55,10 @@ def sin_cos_deg(angle_deg: Floats) -> tuple[Floats, Floats]:
     whole = np.rint(angle_deg)
     place = whole.astype(np.intp)
     sine, cosine = _SINES[place], _COSINES[place]
-    rest = np.radians(angle_deg - whole)
+    rest = angle_deg - whole
+    if not rest.any():  # as a compass is read
+        return sine, cosine
+    rest *= _RADIAN
     square = rest * rest
     # The first terms left out are below 1e-21 of the sine and 1e-21 of the cosine.
     small = rest * (1.0 - square * (1.0 / 6.0 - square * (1.0 / 120.0 - square / 5040.0)))
