@@ -15,8 +15,8 @@ from kivy.metrics import dp, sp
 from kivy.properties import NumericProperty, ObjectProperty
 from kivy.uix.widget import Widget
 
-from analysis.orient import vectors
-from fieldapp.drawing import placing, sphere, strokes
+from analysis.orient import curves, vectors
+from fieldapp.drawing import placing, strokes
 from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
 from fieldapp.drawing.scene import LETTERS, MARKERS, Mean, NetScene
 from fieldapp.look.theme import LIGHT
@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
 REACH_DP = 26.0  # a thumb in a glove need not hit a dot exactly
 WIDE_DEG = 45.0
+ARC_POINTS = 73  # of a great circle or an ellipse; more are not seen
 MOST_POINTS = 16_000  # one Point instruction holds 2**14
 HINGE, INTERSECTION, CLEAVAGE = "hinge", "mean intersection", "mean cleavage"
 
@@ -87,7 +88,7 @@ class EqualAreaNet(Widget):
         return np.asarray(vectors.equal_area_xy(v) * self.radius + np.array(self.middle))
 
     def _curve(self, v: np.ndarray) -> np.ndarray:
-        return np.asarray(sphere.net_xy(v) * self.radius + np.array(self.middle))
+        return np.asarray(curves.net_xy(v) * self.radius + np.array(self.middle))
 
     # Drawing
 
@@ -136,10 +137,10 @@ class EqualAreaNet(Widget):
         self.words_boxes = {"N": self.words_boxes["N"]}
         group.clear()
         if scene.girdle_pole is not None:
-            girdle = self._curve(sphere.great_circle(scene.girdle_pole))
+            girdle = self._curve(curves.great_circle(scene.girdle_pole, ARC_POINTS))
             add_mesh(group, theme.muted, [strokes.dashed(girdle, dp(1.4), dp(3), dp(5))])
         if scene.cleavage is not None:
-            circle = self._curve(sphere.great_circle(scene.cleavage.vector))
+            circle = self._curve(curves.great_circle(scene.cleavage.vector, ARC_POINTS))
             add_mesh(group, theme.second, [strokes.line(circle, dp(2.4))])
         self._draw_readings(group)
         self._draw_trail(group)
@@ -202,8 +203,10 @@ class EqualAreaNet(Widget):
         self._means[name] = place
         if mean.ellipse is not None:
             e = mean.ellipse
-            curve = sphere.ellipse(mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg)
-            pieces = [self._curve(piece) for piece in sphere.lower_pieces(curve)]
+            curve = curves.ellipse(
+                mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg, ARC_POINTS
+            )
+            pieces = [self._curve(piece) for piece in curves.lower_pieces(curve)]
             self._outlines.extend(pieces)
             if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
                 red, green, blue, _ = colour
@@ -242,7 +245,9 @@ class EqualAreaNet(Widget):
         # Words keep off the rim, the ellipses and the great circle too.
         marks = np.concatenate([marks, strokes.circle(self.middle, self.radius, 180), *self._outlines])
         if scene.cleavage is not None:
-            marks = np.concatenate([marks, self._curve(sphere.great_circle(scene.cleavage.vector, 61))])
+            marks = np.concatenate(
+                [marks, self._curve(curves.great_circle(scene.cleavage.vector, ARC_POINTS))]
+            )
         for name, mean, colour in named:
             if mean is None or not mean.label:
                 continue

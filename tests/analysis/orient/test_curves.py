@@ -39,6 +39,19 @@ def test_great_circle_of_a_plane_runs_through_its_dip():
     assert (float(trend), float(plunge)) == (pytest.approx(135.0), pytest.approx(30.0))
 
 
+def test_great_circle_of_a_level_plane_runs_round_the_rim():
+    """A plane with its pole straight down meets the lower hemisphere in the rim, half of it."""
+    circle = great_circle([0.0, 0.0, 1.0], 73)
+    np.testing.assert_allclose(circle[:, 2], 0.0, atol=1e-15)
+    np.testing.assert_allclose(np.linalg.norm(net_xy(circle), axis=1), 1.0)
+
+
+def test_great_circle_of_a_vertical_plane_is_a_straight_line_through_the_middle():
+    """The plane that strikes north and stands upright is drawn from north to south, through the centre."""
+    places = net_xy(great_circle([0.0, 1.0, 0.0], 3))
+    np.testing.assert_allclose(np.abs(places), [[0.0, 1.0], [0.0, 0.0], [0.0, 1.0]], atol=1e-12)
+
+
 @given(TRENDS, PLUNGES, st.floats(0.0, 180.0), st.floats(0.5, 80.0), st.floats(0.1, 1.0))
 def test_ellipse_holds_its_half_angles(trend, plunge, turn, major_deg, ratio):
     """Along its axes the curve lies the half-angles away, and between them it fulfils the equation of the ellipse."""
