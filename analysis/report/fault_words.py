@@ -10,7 +10,7 @@ from analysis.report.fault_figures import plane_figure
 from analysis.report.inline import drawing_of
 from analysis.strain.cautions import CAUTIONS
 from analysis.strain.explanations import PARTITIONED
-from analysis.strain.wording import headline
+from analysis.strain.wording import headline, two_digits
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -37,9 +37,7 @@ def _fold(part: FoldPart, number: int) -> Iterator[Block]:
     if check is None:
         yield Words("No hinge yet, so there is nothing to hold against the fault.")
         return
-    # On this page the cautions stand above, not below.
-    because = (text.replace("the assumptions below", "the assumptions above") for text in check.because)
-    yield Points((headline(check), *because))
+    yield Points((headline(check), *check.because))
     if not check.explanations:
         return
     figure = plane_figure(check, confidence=part.check.settings.confidence)
@@ -87,9 +85,3 @@ def _strain(one: Explanation) -> str:
     if one.gamma is not None:
         return two_digits(one.gamma)
     return "none" if one.name == PARTITIONED else "without end"
-
-
-def two_digits(value: float) -> str:
-    """Two significant digits, never as a power of ten."""
-    rounded = float(f"{value:.2g}")
-    return f"{rounded:,.0f}" if abs(rounded) >= 10.0 else f"{rounded:.6f}".rstrip("0").rstrip(".")

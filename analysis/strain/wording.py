@@ -194,7 +194,9 @@ def _hint(check: FaultCheck) -> Iterator[str]:
     if check.sense_hint is Sense.UNKNOWN:
         return
     turn = _turn(check.transection_deg or 0.0).strip()
-    text = f"Cleavage {turn} of the hinge hints at {check.sense_hint} shear, under the assumptions below only"
+    if not turn:  # a sense that rounding takes away is none to build on
+        return
+    text = f"Cleavage {turn} of the hinge hints at {check.sense_hint} shear, under the assumptions stated here only"
     drawn = Sense.SINISTRAL if check.sign > 0 else Sense.DEXTRAL
     if check.fault.sense not in (Sense.UNKNOWN, check.sense_hint):
         text += f"; the fault is given as {check.fault.sense}"
@@ -230,4 +232,4 @@ def _spread(low: float | None, high: float | None, measure: str = "") -> str:
 def two_digits(value: float) -> str:
     """Two significant digits, never as a power of ten."""
     rounded = float(f"{value:.2g}")
-    return f"{rounded:.0f}" if abs(rounded) >= 10.0 else f"{rounded:g}" if abs(rounded) >= 0.001 else "0"
+    return f"{rounded:,.0f}" if abs(rounded) >= 10.0 else f"{rounded:.6f}".rstrip("0").rstrip(".")
