@@ -253,7 +253,12 @@ def pair_covariance(pair: FoldPair, fault: Fault) -> Floats:
 
 
 def _form(left: Floats, matrix: Floats, right: Floats) -> float:
-    """Give left' M right, infinite (or zero across unlike terms) where M is infinite."""
+    """Give left' M right, infinite (or zero across unlike terms) where M is infinite.
+
+    A variance, where both are the same, is never below zero: readings without scatter leave a covariance that
+    rounding makes slightly negative.
+    """
     if not np.all(np.isfinite(matrix)):
         return math.inf if left is right else 0.0
-    return float(left @ matrix @ right)
+    value = float(left @ matrix @ right)
+    return max(value, 0.0) if left is right else value
