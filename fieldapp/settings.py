@@ -40,7 +40,7 @@ class Settings:
     """All settings; angles in degrees. Raises SettingError for a value outside what it may be.
 
     `margin_deg` is M, the transection that still counts as axial planar (0.5 to 30), `confidence` the share
-    of folds whose interval holds the true transection (0.5 to below 1), `forecast_limit` the number of
+    of folds whose interval holds the true transection (0.51 to below 1), `forecast_limit` the number of
     further readings beyond which the answer is that it cannot be settled here (10 to 10,000).
     `position_explained` says that the page has told once what it wants the device's position for.
     """
@@ -60,7 +60,7 @@ class Settings:
 
     def __post_init__(self) -> None:
         _within(self.margin_deg, 0.5, 30.0, "margin", "0.5 to 30 degrees")
-        _within(self.confidence, 0.5, 0.999, "confidence", "0.5 to 0.999")
+        _within(self.confidence, 0.51, 0.999, "confidence", "0.51 to 0.999")
         _within(self.forecast_limit, 10, 10_000, "forecast limit", "10 to 10,000 readings")
 
     def to_values(self) -> dict[str, object]:
