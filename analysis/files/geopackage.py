@@ -61,10 +61,13 @@ def write_geopackage(
                 pyogrio.write_dataframe(table, draft, layer=name, driver="GPKG")
             _write_styles(layers, draft)
         except pyogrio.errors.DataSourceError as error:
+            # The library names the draft, which nobody else has heard of.
+            said = str(error).replace(str(draft), draft.name)
             raise CsvError(
-                f"cannot be written: {error}",
+                f"cannot be written: {said}",
                 where=str(path),
                 expected="a folder that can be written to, with room on the disk",
+                mend="Choose another folder.",
             ) from error
 
 
