@@ -59,7 +59,8 @@ def find_archive(paths: Iterable[str | os.PathLike[str]]) -> Archive:
     Raises SettingError where there is none, CsvError where one is no file of readings.
     """
     files: list[Path] = []
-    for given in map(Path, paths):
+    given_paths = [Path(path) for path in paths]
+    for given in given_paths:
         if given.is_dir():
             files += sorted(
                 path
@@ -71,7 +72,9 @@ def find_archive(paths: Iterable[str | os.PathLike[str]]) -> Archive:
     files = list(dict.fromkeys(files))
     if not files:
         raise SettingError(
-            "there is no file of readings", where="FILE", expected=f"files ending in {', '.join(_SUFFIXES)}"
+            "there is no file of readings",
+            where=", ".join(map(os.fspath, dict.fromkeys(given_paths))),
+            expected=f"files ending in {', '.join(_SUFFIXES)}",
         )
     names = [_columns_of(path) for path in files]
     sole = len(files) == 1 and not {"reading_id", "revision"} & set(names[0])
