@@ -10,6 +10,7 @@ import click
 import numpy as np
 
 from analysis.cli.common import (
+    NOTHING_STANDS,
     axes_by_feature,
     chosen_folds,
     files_argument,
@@ -79,7 +80,7 @@ def check(
         )
         click.echo("\n\n".join(texts))
     else:
-        click.echo("No readings stand in these files.")
+        click.echo(NOTHING_STANDS)
 
 
 def check_tables(parts: Sequence[tuple[str, ReadingTable]], settings: CheckSettings) -> list[FoldCheck]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import sys
 from contextlib import contextmanager
 from pathlib import Path
@@ -15,13 +16,19 @@ from analysis.errors import HingewiseError, SettingError
 from analysis.stats.sums import FEATURES, RunningSums
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Callable, Iterable, Iterator, Sequence
 
+    import pandas as pd
+
+    from analysis.files.maplayers import MapLayer
     from analysis.files.table import ReadingTable
     from analysis.orient.features import Feature
 
 _FAULTS_SHOWN = 20
+_NAMES_SHOWN = 12
 _SHOW_PROGRESS_FROM_BYTES = 2**22
+
+NOTHING_STANDS = "No readings stand in these files."
 
 AnyCommand = TypeVar("AnyCommand", bound="Callable[..., Any]")
 
@@ -42,19 +49,18 @@ class OneLineErrors(click.Group):
 
     def invoke(self, ctx: click.Context) -> Any:  # noqa: ANN401 - as click has it
         """Run a command."""
-        with _one_line():
+        with _one_line(ctx):
             return super().invoke(ctx)
 
 
 @contextmanager
-def _one_line() -> Iterator[None]:
+def _one_line(group: click.Context | None = None) -> Iterator[None]:
     try:
         yield
     except (click.exceptions.NoArgsIsHelpError, _OneLine):
         raise
     except click.UsageError as error:
-        command = error.ctx.command_path if error.ctx else "hingewise"
-        raise _OneLine(f"{error.format_message()} See '{command} --help'.") from error
+        raise _OneLine(f"{error.format_message()} See '{_path_of(error, group)} --help'.") from error
     except click.ClickException as error:
         raise _OneLine(error.format_message()) from error
     except HingewiseError as error:
@@ -64,6 +70,15 @@ def _one_line() -> Iterator[None]:
     except OSError as error:
         where = f"{error.filename}: " if error.filename else ""
         raise _OneLine(f"{where}{error.strerror or error}") from error
+
+
+def _path_of(error: click.UsageError, group: click.Context | None) -> str:
+    """The command that was misused; some errors of click do not say which, and then the group knows."""
+    if error.ctx is not None:
+        return error.ctx.command_path
+    if group is None:
+        return "hingewise"
+    return " ".join(filter(None, (group.command_path, group.invoked_subcommand)))
 
 
 class _OneLine(click.ClickException):
@@ -80,6 +95,49 @@ files_argument = click.argument(
 strict_option = click.option(
     "--strict", is_flag=True, help="Refuse a file with a bad row, instead of leaving it out."
 )
+
+
+def output_option(
+    endings: tuple[str, ...], words: str, *, required: bool = True
+) -> Callable[[AnyCommand], AnyCommand]:
+    """Add -o; that the file can be written there is looked at before any work is done.
+
+    The name must end in one of `endings`; SettingError says which, and where there is no such folder.
+    """
+
+    def checked(_ctx: click.Context, _option: click.Parameter, path: Path | None) -> Path | None:
+        return path if path is None else file_to_write(path, endings, "--output")
+
+    return click.option(
+        "-o",
+        "--output",
+        metavar="FILE",
+        required=required,
+        type=click.Path(path_type=Path),
+        callback=checked,
+        help=words,
+    )
+
+
+def file_to_write(path: Path, endings: tuple[str, ...], option: str) -> Path:
+    """Give the path back if a file can be written there; SettingError where that is plain to see."""
+    if path.suffix.lower() not in endings:
+        raise SettingError(
+            f"{path.name or path} ends in no format that is written here",
+            where=option,
+            expected=f"a name ending in {', '.join(endings)}",
+        )
+    if path.is_dir():
+        raise SettingError(f"{path} is a folder", where=option, expected="the name of a file")
+    folder = Path(os.path.realpath(path)).parent
+    if not folder.is_dir():
+        raise SettingError(
+            f"{path} lies in no folder that is there",
+            where=option,
+            expected="a folder that can be written to",
+            mend="Make the folder first, or choose another.",
+        )
+    return path
 
 
 def settings_options(command: AnyCommand) -> AnyCommand:
@@ -112,6 +170,9 @@ def fold_options(command: AnyCommand) -> AnyCommand:
 @contextmanager
 def progress(label: str) -> Iterator[Callable[[float], None]]:
     """Show on a terminal how far a share from 0 to 1 has come; silent elsewhere."""
+    if not sys.stderr.isatty():
+        yield lambda share: None  # noqa: ARG005 - nobody looks
+        return
     steps = 1000
     with click.progressbar(length=steps, label=label, file=sys.stderr) as bar:
         yield lambda share: bar.update(round(share * steps) - bar.pos)
@@ -127,14 +188,37 @@ def read_files(files: tuple[Path, ...], *, strict: bool, say_conflicts: bool = T
             table = read_table(*files, strict=strict, progress=show, clean_parser=parse_clean)
     else:
         table = read_table(*files, strict=strict, clean_parser=parse_clean)
-    for fault in table.faults[:_FAULTS_SHOWN]:
-        click.echo(f"left out: {fault}", err=True)
-    if table.faulty_rows:
-        rows = "1 row was" if table.faulty_rows == 1 else f"{table.faulty_rows} rows were"
-        click.echo(f"{rows} left out; the others are used", err=True)
-    for conflict in table.conflicts[:_FAULTS_SHOWN] if say_conflicts else ():
-        click.echo(f"conflict: {conflict}", err=True)
+    say_left_out(table.faults, table.faulty_rows, table.conflicts if say_conflicts else ())
     return table
+
+
+def say_left_out(faults: Sequence[object], faulty_rows: int, conflicts: Sequence[object]) -> None:
+    """Name on standard error the rows that are left out and the contents that clash, the first of each."""
+    for fault in faults[:_FAULTS_SHOWN]:
+        click.echo(f"left out: {fault}", err=True)
+    if faulty_rows:
+        were = "was" if faulty_rows == 1 else "were"
+        click.echo(f"{counted(faulty_rows, 'row')} {were} left out; the others are used", err=True)
+    for conflict in conflicts[:_FAULTS_SHOWN]:
+        click.echo(f"conflict: {conflict}", err=True)
+    if len(conflicts) > _FAULTS_SHOWN:
+        click.echo(f"and {counted(len(conflicts) - _FAULTS_SHOWN, 'more conflict')}", err=True)
+
+
+def nothing_stands(files: tuple[Path, ...]) -> SettingError:
+    """Make the error to raise where there is nothing to write."""
+    where = str(files[0]) if len(files) == 1 else counted(len(files), "file")
+    return SettingError(
+        "no reading stands", where=where, expected="at least one reading that is not struck out"
+    )
+
+
+def no_such(kind: str, name: str, names: Iterable[str]) -> SettingError:
+    """Make the error to raise where a fold or an outcrop of this name was asked for and is not there."""
+    known = list(names)
+    shown = ", ".join(map(repr, known[:_NAMES_SHOWN])) or "none is there"
+    more = f" and {len(known) - _NAMES_SHOWN} more" if len(known) > _NAMES_SHOWN else ""
+    return SettingError(f"there is no {kind} {name!r}", where=f"--{kind}", expected=f"one of: {shown}{more}")
 
 
 def chosen_folds(
@@ -143,25 +227,21 @@ def chosen_folds(
     """Give the standing readings fold by fold; SettingError where a name is not there."""
     folds = table.folds()
     if fold is not None and fold not in folds:
-        raise SettingError(
-            f"there is no fold {fold!r}",
-            where="--fold",
-            expected=f"one of: {', '.join(map(repr, folds)) or 'none'}",
-        )
+        raise no_such("fold", fold, folds)
     found = False
+    outcrops: dict[str, None] = {}
     for name in folds if fold is None else (fold,):
         part = table.of_fold(name)
         if outcrop is not None:
             names = part.outcrop
+            outcrops |= dict.fromkeys(names.names[code] for code in np.unique(names.codes))
             keep = np.array([text == outcrop for text in names.names], dtype=bool)[names.codes]
             part = part.take(keep)
         if len(part) or not folds:
             found = True
             yield name, part
     if outcrop is not None and not found:
-        raise SettingError(
-            f"there is no outcrop {outcrop!r}", where="--outcrop", expected="an outcrop of the file"
-        )
+        raise no_such("outcrop", outcrop, outcrops)
 
 
 def sums_of_table(table: ReadingTable) -> RunningSums:
@@ -183,6 +263,23 @@ def axes_by_feature(table: ReadingTable) -> dict[Feature, np.ndarray[Any, np.dty
     return dict(
         zip(FEATURES, np.split(axes, np.searchsorted(codes, np.arange(1, len(FEATURES)))), strict=True)
     )
+
+
+def counted(count: int, word: str) -> str:
+    """A number with its word, in the plural where there is not one."""
+    return f"{count} {word}{'' if count == 1 else 's'}"
+
+
+def write_map(output: Path, layers: list[MapLayer], tables: dict[str, pd.DataFrame] | None = None) -> None:
+    """Write layers as GeoPackage or GeoJSON, by the ending of the file."""
+    if output.suffix.lower() == ".gpkg":
+        from analysis.files.geopackage import write_geopackage  # noqa: PLC0415 - pandas only when files are written
+
+        write_geopackage(output, layers, tables)
+        return
+    from analysis.files.geojson import write_geojson  # noqa: PLC0415 - as above
+
+    write_geojson(output, layers)
 
 
 def print_json(value: object, *, indent: int | None = 1) -> None:

@@ -13,6 +13,7 @@ from analysis.demo import demo_readings
 from analysis.files.csvfile import write_readings
 from analysis.files.table import ReadingTable
 from analysis.fold.settings import CheckSettings
+from analysis.orient.features import Feature
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -31,11 +32,12 @@ def show_demo(output: Path) -> None:
     for fold in table.folds():
         part = table.of_fold(fold)
         check = check_table(part, settings, fold)
-        click.echo(f"\n{text_of(check)}")
+        axes = axes_by_feature(part)
+        click.echo(f"\n{text_of(check, axes[Feature.BEDDING])}")
         history = history_of(checks_in_order(part, settings, fold, forecast=False))
         name = fold.lower().replace(" ", "-")
         for kind, figure in (
-            ("net", draw_net(check, axes_by_feature(part))),
+            ("net", draw_net(check, axes)),
             ("funnel", draw_funnel(history, check)),
         ):
             for ending in ("png", "svg"):

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import click
 
 from analysis.cli.common import (
+    NOTHING_STANDS,
     chosen_folds,
     files_argument,
     fold_options,
@@ -16,37 +17,25 @@ from analysis.cli.common import (
     strict_option,
     sums_of_table,
 )
+from analysis.cli.fault import fault_of, fault_options
 from analysis.fold import words
 from analysis.fold.check import check_fold
 from analysis.fold.settings import CheckSettings
 from analysis.strain.explanations import ExplainSettings, FaultCheck, explain
-from analysis.strain.frame import Sense
-from analysis.strain.observed import Fault
 from analysis.strain.ofcheck import pair_of_check
-from analysis.strain.wording import headline
+from analysis.strain.wording import headline, two_digits
 
 if TYPE_CHECKING:
     from pathlib import Path
 
     from analysis.fold.records import FoldCheck
     from analysis.strain.explanations import Explanation
+    from analysis.strain.observed import Fault
 
 
 @click.command("explain")
 @files_argument
-@click.option(
-    "--fault-strike", metavar="DEG", type=float, required=True, help="Strike of the fault, either end."
-)
-@click.option(
-    "--fault-strike-se", metavar="DEG", type=float, default=2.0, show_default=True, help="Its standard error."
-)
-@click.option(
-    "--sense", type=click.Choice(["sinistral", "dextral", "unknown"]), default="unknown", show_default=True,
-    help="Sense of shear on the fault.",
-)  # fmt: skip
-@click.option(
-    "--zone-width-km", metavar="W", type=float, help="Width of the sheared zone: gives the displacement."
-)
+@fault_options("Strike of the fault, either end.", required=True)
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON array, an object per fold.")
 @fold_options
 @settings_options
@@ -72,12 +61,7 @@ def explain_command(
       hingewise explain readings.csv --fault-strike 052 --sense sinistral --zone-width-km 2
     """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
-    fault = Fault(
-        strike_deg=fault_strike,
-        sense=Sense(sense),
-        zone_width_km=zone_width_km,
-        strike_se_deg=fault_strike_se,
-    )
+    fault = fault_of(fault_strike, fault_strike_se, sense, zone_width_km)
     table = read_files(files, strict=strict)
     done: list[FaultCheck] = []
     for name, part in chosen_folds(table, fold, outcrop):
@@ -91,6 +75,8 @@ def explain_command(
         done.append(one)
         if not as_json:
             click.echo(f"{text_of(one, check)}\n")
+    if not (done or as_json or table.folds()):
+        click.echo(NOTHING_STANDS)
     if as_json:
         print_json([one.to_json() for one in done])
 
@@ -128,9 +114,10 @@ def text_of(one: FaultCheck, check: FoldCheck) -> str:
 def _explanation(e: Explanation) -> str:
     figures = [f"{e.name:<32}"]
     if e.predicted_transection_deg is not None:
-        figures.append(f"transection {e.predicted_transection_deg:+.1f}°")
+        # Rounded first and added to zero, so that nothing is "-0.0".
+        figures.append(f"transection {round(e.predicted_transection_deg, 1) + 0.0:+.1f}°")
     if e.gamma is not None:
         figures.append(f"shear strain {e.gamma:.2f}")
     if e.displacement_km is not None:
-        figures.append(f"displacement {e.displacement_km:.2g} km")
+        figures.append(f"displacement {two_digits(e.displacement_km)} km")
     return "  ".join(figures)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
@@ -10,20 +9,25 @@ import numpy as np
 
 from analysis.cli.check import check_table
 from analysis.cli.common import (
+    counted,
     files_argument,
     fold_options,
+    no_such,
+    nothing_stands,
+    output_option,
     read_files,
     settings_options,
     strict_option,
+    write_map,
 )
 from analysis.errors import SettingError
 from analysis.fold.settings import CheckSettings
 
 if TYPE_CHECKING:
-    import numpy.typing as npt
-    import pandas as pd
+    from pathlib import Path
 
-    from analysis.files.maplayers import MapLayer
+    import numpy.typing as npt
+
     from analysis.files.table import ReadingTable
 
 _FORMATS = (".gpkg", ".geojson", ".csv")
@@ -31,10 +35,7 @@ _FORMATS = (".gpkg", ".geojson", ".csv")
 
 @click.command()
 @files_argument
-@click.option(
-    "-o", "--output", metavar="FILE", required=True, type=click.Path(path_type=Path),
-    help="The file to write; its ending says the format: .gpkg, .geojson or .csv.",
-)  # fmt: skip
+@output_option(_FORMATS, "The file to write; its ending says the format: .gpkg, .geojson or .csv.")
 @click.option(
     "--schema", type=click.Choice(["gems"]),
     help="Fields of another schema: gems is the U.S. Geologic Map Schema's OrientationPoints.",
@@ -63,12 +64,6 @@ def export(
     Example:
       hingewise export readings.csv -o readings.gpkg
     """  # noqa: D301 - click reads the escape
-    if output.suffix.lower() not in _FORMATS:
-        raise SettingError(
-            f"{output.name} ends in no format",
-            where="--output",
-            expected=f"a name ending in {', '.join(_FORMATS)}",
-        )
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     table = read_files(files, strict=strict)
     if output.suffix.lower() == ".csv":
@@ -76,7 +71,7 @@ def export(
     elif schema == "gems":
         _write_gems(table, output, fold, outcrop)
     else:
-        _write_map(table, output, settings, fold, outcrop)
+        _write_map(files, table, output, settings, fold, outcrop)
 
 
 def _write_csv(
@@ -103,7 +98,7 @@ def _write_csv(
         wanted[codes[last & _in_place(table, fold, outcrop)]] = True
         part = table.take(wanted[codes])
     write_readings(output, part)
-    click.echo(f"{len(part)} revisions written to {output}")
+    click.echo(f"{counted(len(part), 'revision')} written to {output}")
 
 
 def _write_gems(table: ReadingTable, output: Path, fold: str | None, outcrop: str | None) -> None:
@@ -116,16 +111,22 @@ def _write_gems(table: ReadingTable, output: Path, fold: str | None, outcrop: st
             where=str(output),
             expected="latitude_deg and longitude_deg, which the schema needs",
         )
-    _write(output, [points.layer], points.tables)
-    click.echo(f"{len(points.layer)} orientation points in {output}")
+    write_map(output, [points.layer], points.tables)
+    click.echo(f"{counted(len(points.layer), 'orientation point')} in {output}")
     if points.left_out:
         click.echo(
-            f"{_readings(points.left_out)} without position left out: the schema needs a point", err=True
+            f"{counted(points.left_out, 'reading')} without position left out: the schema needs a point",
+            err=True,
         )
 
 
 def _write_map(
-    table: ReadingTable, output: Path, settings: CheckSettings, fold: str | None, outcrop: str | None
+    files: tuple[Path, ...],
+    table: ReadingTable,
+    output: Path,
+    settings: CheckSettings,
+    fold: str | None,
+    outcrop: str | None,
 ) -> None:
     from analysis.files.maplayers import reading_layers, verdict_layer  # noqa: PLC0415 - as above
     from analysis.survey.squares import position_of, upward_vectors  # noqa: PLC0415
@@ -134,11 +135,7 @@ def _write_map(
     part = table.take(_in_place(table, fold, outcrop))
     layers = reading_layers(part)
     if not layers:
-        raise SettingError(
-            "no reading stands in these files",
-            where=str(output),
-            expected="at least one that is not struck out",
-        )
+        raise nothing_stands(files)
     rows = []
     for name in part.folds():
         one = part.of_fold(name)
@@ -146,38 +143,24 @@ def _write_map(
         known = ~np.isnan(latitude)
         position = position_of(upward_vectors(latitude[known], longitude[known]).sum(axis=0))
         rows.append(verdict_row(check_table(one, settings, name), position, int(known.sum())))
-    _write(output, [*layers, verdict_layer(rows)])
+    write_map(output, [*layers, verdict_layer(rows)])
     count, unplaced = sum(map(len, layers)), sum(layer.without_position for layer in layers)
-    folds = "1 verdict" if len(rows) == 1 else f"{len(rows)} verdicts"
-    click.echo(f"{_readings(count)} and {folds} in {output}")
+    click.echo(f"{counted(count, 'reading')} and {counted(len(rows), 'verdict')} in {output}")
     if unplaced:
-        click.echo(f"{_readings(unplaced)} without position: in the file, with no point on the map", err=True)
+        click.echo(
+            f"{counted(unplaced, 'reading')} without position: in the file, with no point on the map",
+            err=True,
+        )
 
 
 def _in_place(table: ReadingTable, fold: str | None, outcrop: str | None) -> npt.NDArray[np.bool_]:
     """Mark the rows of one fold, one outcrop, or both; SettingError where there is none."""
     keep = np.ones(len(table), dtype=bool)
-    for option, name, names in (("--fold", fold, table.fold), ("--outcrop", outcrop, table.outcrop)):
+    for kind, name, names in (("fold", fold, table.fold), ("outcrop", outcrop, table.outcrop)):
         if name is None:
             continue
-        keep &= np.array([text == name for text in names.names], dtype=bool)[names.codes]
-        if not keep.any():
-            raise SettingError(
-                f"there is nothing at {name!r}", where=option, expected="a name that the file has"
-            )
+        there = np.array([text == name for text in names.names], dtype=bool)[names.codes]
+        if not (keep & there).any():
+            raise no_such(kind, name, (names.names[code] for code in np.unique(names.codes[keep])))
+        keep &= there
     return keep
-
-
-def _write(output: Path, layers: list[MapLayer], tables: dict[str, pd.DataFrame] | None = None) -> None:
-    if output.suffix.lower() == ".gpkg":
-        from analysis.files.geopackage import write_geopackage  # noqa: PLC0415 - as above
-
-        write_geopackage(output, layers, tables)
-        return
-    from analysis.files.geojson import write_geojson  # noqa: PLC0415 - as above
-
-    write_geojson(output, layers)
-
-
-def _readings(count: int) -> str:
-    return "1 reading" if count == 1 else f"{count} readings"

@@ -6,14 +6,12 @@ from pathlib import Path
 
 import click
 
-from analysis.cli.common import read_files, strict_option
+from analysis.cli.common import counted, file_to_write, output_option, read_files, strict_option
 
 
 @click.command("join")
 @click.argument("files", metavar="FILE FILE...", nargs=-1, required=True, type=click.Path(path_type=Path))
-@click.option(
-    "-o", "--output", metavar="FILE", required=True, type=click.Path(path_type=Path), help="The joined file."
-)
+@output_option((".csv",), "The joined file; a name that ends in .csv.")
 @click.option(
     "--conflicts", "conflicts_file", metavar="FILE", type=click.Path(path_type=Path),
     help="Also write the readings whose contents clash, every content, to this file.",
@@ -35,17 +33,16 @@ def join_command(
     from analysis.files.csvfile import write_readings  # noqa: PLC0415 - pandas is loaded only when files are read
     from analysis.files.join import join  # noqa: PLC0415
 
+    if conflicts_file is not None:
+        file_to_write(conflicts_file, (".csv",), "--conflicts")
     joined = join(read_files(files, strict=strict, say_conflicts=False))
     write_readings(output, joined)
     if conflicts_file is not None:
         write_readings(
             conflicts_file, [content for conflict in joined.conflicts for content in conflict.contents]
         )
-    standing, revisions = (
-        f"{count} {word}{'' if count == 1 else 's'}"
-        for count, word in ((len(joined.standing), "reading"), (len(joined), "revision"))
-    )
-    click.echo(f"{standing} standing, in {revisions}, in {output}")
+    standing = counted(len(joined.standing), "reading")
+    click.echo(f"{standing} standing, in {counted(len(joined), 'revision')}, in {output}")
     for conflict in joined.conflicts:
         click.echo(f"conflict: {conflict}", err=True)
     if joined.conflicts:

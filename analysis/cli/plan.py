@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
 
-from analysis.cli.common import print_json, progress, settings_options
+from analysis.cli.common import output_option, print_json, progress, settings_options
 from analysis.cli.design import design_of, design_options
 from analysis.fold.planning import FOLDS_AT_MOST, READINGS_AT_MOST, plan
 from analysis.fold.settings import CheckSettings
 
 if TYPE_CHECKING:
+    from pathlib import Path
+
     from analysis.fold.planning import Plan, ReadingsNeeded
     from analysis.fold.trials import Mode
 
@@ -53,13 +54,7 @@ if TYPE_CHECKING:
 )
 @settings_options
 @click.option("--json", "as_json", is_flag=True, help="Print the plan as JSON.")
-@click.option(
-    "-o",
-    "--output",
-    metavar="FILE",
-    type=click.Path(path_type=Path),
-    help="Also draw it, to a .png or .svg file.",
-)
+@output_option((".png", ".svg"), "Also draw it, to a .png or .svg file.", required=False)
 def plan_command(
     hinge: tuple[float, float],
     limbs: tuple[float, float],

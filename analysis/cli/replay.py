@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import click
 
 from analysis.cli.common import (
+    NOTHING_STANDS,
     chosen_folds,
     files_argument,
     fold_options,
@@ -21,7 +22,7 @@ from analysis.fold.words import figure_line, headline
 from analysis.stats.sums import FEATURES, RunningSums
 
 if TYPE_CHECKING:
-    from collections.abc import Iterator
+    from collections.abc import Container, Iterator
     from pathlib import Path
 
     from analysis.files.table import ReadingTable
@@ -52,6 +53,8 @@ def replay(
     """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     table = read_files(files, strict=strict)
+    if not (as_json or table.folds()):
+        click.echo(NOTHING_STANDS)
     for name, part in chosen_folds(table, fold, outcrop):
         for after, one in checks_in_order(part, settings, name):
             if as_json:
@@ -61,12 +64,21 @@ def replay(
 
 
 def checks_in_order(
-    table: ReadingTable, settings: CheckSettings, fold: str, *, forecast: bool = True
+    table: ReadingTable,
+    settings: CheckSettings,
+    fold: str,
+    *,
+    forecast: bool = True,
+    looks: Container[int] | None = None,
 ) -> Iterator[tuple[int, FoldCheck]]:
-    """Give (number of readings so far, check) after each reading of one fold, in recorded order."""
+    """Give (number of readings so far, check) after each reading of one fold, in recorded order.
+
+    With `looks`, the check is made after those numbers of readings only.
+    """
     ordered = table.in_recorded_order()
     outcrop, features, vectors = ordered.outcrop, ordered.feature, ordered.vectors
     sums = RunningSums()
     for row in range(len(ordered)):
         sums.add(FEATURES[features[row]], outcrop[row], vectors[row])
-        yield row + 1, check_fold(sums, settings, fold=fold, forecast=forecast)
+        if looks is None or row + 1 in looks:
+            yield row + 1, check_fold(sums, settings, fold=fold, forecast=forecast)

@@ -5,7 +5,6 @@ from __future__ import annotations
 import hashlib
 import shlex
 from importlib.metadata import PackageNotFoundError, version
-from pathlib import Path
 from platform import python_version
 from typing import TYPE_CHECKING, Final
 
@@ -18,30 +17,34 @@ from analysis.cli.check import check_table
 from analysis.cli.common import (
     axes_by_feature,
     chosen_folds,
+    counted,
     files_argument,
     fold_options,
+    output_option,
     progress,
     read_files,
     settings_options,
     strict_option,
 )
 from analysis.cli.explain import explained
+from analysis.cli.fault import FAULT_DETAILS, fault_of, fault_options
+from analysis.cli.replay import checks_in_order
 from analysis.errors import SettingError
 from analysis.files.atomic import whole_file
-from analysis.fold.check import check_fold
 from analysis.fold.outliers import find_outliers
 from analysis.fold.settings import CheckSettings
-from analysis.stats.sums import FEATURES, RunningSums
+from analysis.stats.sums import FEATURES
 from analysis.strain.frame import Sense
-from analysis.strain.observed import Fault
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
+    from pathlib import Path
 
     from analysis.files.reading import Reading
     from analysis.files.table import ReadingTable
     from analysis.report.campaign import FoldPart, SourceFile
     from analysis.report.funnel import HistoryPoint
+    from analysis.strain.observed import Fault
 
 _PAGES: Final = (".html", ".htm")
 _LOOKS: Final = 300  # points of a funnel's history; more would lie on each other
@@ -52,29 +55,14 @@ _SAID_ALREADY: Final = ("files", "output", "strict")
 
 @click.command("report")
 @files_argument
-@click.option(
-    "-o", "--output", metavar="FILE", required=True, type=click.Path(path_type=Path, dir_okay=False),
-    help="The report, a name that ends in .html or .pdf.",
-)  # fmt: skip
+@output_option((*_PAGES, ".pdf"), "The report, a name that ends in .html or .pdf.")
 @click.option(
     "--title", metavar="TEXT", default="Fold hinges and cleavage", show_default=True, help="Its title."
 )
 @click.option(
     "--paper", type=click.Choice(["a4", "letter"]), default="a4", show_default=True, help="Paper of a PDF."
 )
-@click.option(
-    "--fault-strike", metavar="DEG", type=float, help="Also explain: strike of the fault, either end."
-)
-@click.option(
-    "--fault-strike-se", metavar="DEG", type=float, default=2.0, show_default=True, help="Its standard error."
-)
-@click.option(
-    "--sense", type=click.Choice(["sinistral", "dextral", "unknown"]), default="unknown", show_default=True,
-    help="Sense of shear on the fault.",
-)  # fmt: skip
-@click.option(
-    "--zone-width-km", metavar="W", type=float, help="Width of the sheared zone: gives the displacement."
-)
+@fault_options("Also explain: strike of the fault, either end.", required=False)
 @fold_options
 @settings_options
 @strict_option
@@ -109,25 +97,15 @@ def report_command(
     from analysis.report.page import library  # noqa: PLC0415
 
     ending = output.suffix.lower()
-    if ending not in (*_PAGES, ".pdf"):
-        raise SettingError(
-            f"{ending or 'no ending'} is no kind of report",
-            where=str(output),
-            expected="a name in .html or .pdf",
-        )
+    _only_files_that_stay(files)
     library("matplotlib")
     library(*(("fpdf", "fpdf2") if ending == ".pdf" else ("jinja2",)))
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = None
-    if fault_strike is None and _said(ctx, "fault_strike_se", "sense", "zone_width_km"):
-        raise click.UsageError("what is said of a fault needs --fault-strike too.", ctx)
     if fault_strike is not None:
-        fault = Fault(
-            strike_deg=fault_strike,
-            sense=Sense(sense),
-            zone_width_km=zone_width_km,
-            strike_se_deg=fault_strike_se,
-        )
+        fault = fault_of(fault_strike, fault_strike_se, sense, zone_width_km)
+    elif _said(ctx, *FAULT_DETAILS):
+        raise click.UsageError("what is said of a fault needs --fault-strike too.", ctx)
     table = read_files(files, strict=strict)
     struck = struck_out_of(table)
     parts = list(chosen_folds(table, fold, outcrop))
@@ -165,7 +143,19 @@ def report_command(
         made = render_page(report).encode()
     with whole_file(output) as draft:
         draft.write_bytes(made)
-    click.echo(f"The report on {len(folds)} fold{'' if len(folds) == 1 else 's'} is in {output}")
+    click.echo(f"The report on {counted(len(folds), 'fold')} is in {output}")
+
+
+def _only_files_that_stay(files: tuple[Path, ...]) -> None:
+    """Refuse pipes: the report gives the SHA-256 of each file, and what was read from a pipe is gone."""
+    for path in files:
+        if path.exists() and not (path.is_file() or path.is_dir()):
+            raise SettingError(
+                "this is no file that stays",
+                where=str(path),
+                expected="a file, whose SHA-256 the report can give",
+                mend="Save the readings as a file first.",
+            )
 
 
 def _said(ctx: click.Context, *names: str) -> bool:
@@ -186,25 +176,19 @@ def _fold_part(
         check=check,
         table=part,
         axes=axes,
-        history=tuple(_history(part, settings, name)),
+        history=_history(part, settings, name),
         off_deg=off_deg,
         struck=struck,
         fault=None if fault is None else explained(check, fault),
     )
 
 
-def _history(table: ReadingTable, settings: CheckSettings, fold: str) -> Iterator[HistoryPoint]:
+def _history(table: ReadingTable, settings: CheckSettings, fold: str) -> tuple[HistoryPoint, ...]:
     """The check after each reading in recorded order, or after every so many where there are very many."""
-    from analysis.report.funnel import HistoryPoint  # noqa: PLC0415 - as above
+    from analysis.report.funnel import history_of  # noqa: PLC0415 - as above
 
-    ordered = table.in_recorded_order()
-    outcrop, features, vectors = ordered.outcrop, ordered.feature, ordered.vectors
-    looks = set(np.unique(np.linspace(1, len(ordered), _LOOKS).round().astype(int)).tolist())
-    sums = RunningSums()
-    for row in range(len(ordered)):
-        sums.add(FEATURES[features[row]], outcrop[row], vectors[row])
-        if row + 1 in looks:
-            yield HistoryPoint.of(check_fold(sums, settings, fold=fold, forecast=False), row + 1)
+    looks = set(np.unique(np.linspace(1, len(table), _LOOKS).round().astype(int)).tolist())
+    return history_of(checks_in_order(table, settings, fold, forecast=False, looks=looks))
 
 
 def _files(files: tuple[Path, ...], parts: list[ReadingTable]) -> Iterator[SourceFile]:
@@ -254,7 +238,7 @@ def _versions(ending: str) -> Iterator[tuple[str, str]]:
 def _left_out(table: ReadingTable) -> Iterator[str]:
     if not table.faulty_rows:
         return
-    rows = "1 row" if table.faulty_rows == 1 else f"{table.faulty_rows} rows"
+    rows = counted(table.faulty_rows, "row")
     yield f"{rows} could not be read and {'is' if table.faulty_rows == 1 else 'are'} not in this report."
     for fault in table.faults[:_LEFT_OUT_LISTED]:
         yield f"{fault}."

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from datetime import UTC, datetime, timedelta
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
 import numpy as np
 
+from analysis.cli.common import output_option
 from analysis.cli.design import design_of, design_options
 from analysis.errors import SettingError
 from analysis.orient.features import Feature
@@ -17,6 +17,7 @@ from analysis.stats.synthetic import draw
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
+    from pathlib import Path
 
     from analysis.files.reading import Reading
     from analysis.stats.synthetic import FoldDesign
@@ -74,9 +75,7 @@ _FIRST = datetime(2026, 1, 1, tzinfo=UTC)
     show_default=True,
     help="The same seed gives the same readings.",
 )
-@click.option(
-    "-o", "--output", metavar="FILE", type=click.Path(path_type=Path), help="A file instead of the screen."
-)
+@output_option((".csv",), "A file instead of the screen; a name that ends in .csv.", required=False)
 def simulate(
     hinge: tuple[float, float],
     limbs: tuple[float, float],

@@ -8,24 +8,28 @@ from typing import TYPE_CHECKING
 
 import click
 
-from analysis.cli.common import settings_options
+from analysis.cli.common import (
+    counted,
+    nothing_stands,
+    output_option,
+    say_left_out,
+    settings_options,
+    write_map,
+)
 from analysis.errors import SettingError
 from analysis.fold.settings import CheckSettings
 
 if TYPE_CHECKING:
     from analysis.survey.run import Survey
 
-_SHOWN = 20
+_MAPS = (".gpkg", ".geojson")
 
 
 @click.command("survey")
 @click.argument(
     "paths", metavar="DIR|FILE...", nargs=-1, required=True, type=click.Path(path_type=Path, exists=True)
 )
-@click.option(
-    "-o", "--output", metavar="FILE", required=True, type=click.Path(path_type=Path),
-    help="The map to write: .gpkg or .geojson.",
-)  # fmt: skip
+@output_option(_MAPS, "The map to write: .gpkg or .geojson.")
 @click.option("--cell", "cell_km", metavar="KM", type=float, help="Check squares of this width, not folds.")
 @click.option("--moving", is_flag=True, help="With --cell: each square together with the eight around it.")
 @click.option(
@@ -60,10 +64,6 @@ def survey_command(
     from analysis.survey.run import survey  # noqa: PLC0415 - pandas is loaded only when files are read
     from analysis.survey.squares import Grid  # noqa: PLC0415 - as above
 
-    if output.suffix.lower() not in (".gpkg", ".geojson"):
-        raise SettingError(
-            f"{output.name} ends in no format", where="--output", expected="a name ending in .gpkg, .geojson"
-        )
     if moving and cell_km is None:
         raise SettingError("a window needs a width", where="--moving", expected="--cell KM beside it")
     found = survey(
@@ -76,25 +76,16 @@ def survey_command(
     )
     _say_left_out(found)
     if not found.verdicts:
-        raise SettingError("no reading stands in these files", where=str(output))
+        raise nothing_stands(paths)
     _write(found, output)
     unit = "fold" if cell_km is None else "window" if moving else "square"
-    many = len(found.verdicts)
-    click.echo(f"{many} {unit}{'' if many == 1 else 's'}, {found.readings} readings, in {output}")
+    click.echo(f"{counted(len(found.verdicts), unit)}, {counted(found.readings, 'reading')}, in {output}")
 
 
 def _say_left_out(found: Survey) -> None:
-    for fault in found.faults[:_SHOWN]:
-        click.echo(f"left out: {fault}", err=True)
-    if found.faulty_rows:
-        rows = "1 row was" if found.faulty_rows == 1 else f"{found.faulty_rows} rows were"
-        click.echo(f"{rows} left out; the others are used", err=True)
-    for conflict in found.conflicts[:_SHOWN]:
-        click.echo(f"conflict: {conflict}", err=True)
-    if len(found.conflicts) > _SHOWN:
-        click.echo(f"and {len(found.conflicts) - _SHOWN} more conflicts", err=True)
+    say_left_out(found.faults, found.faulty_rows, found.conflicts)
     if found.unplaced:
-        readings = "1 reading" if found.unplaced == 1 else f"{found.unplaced} readings"
+        readings = counted(found.unplaced, "reading")
         click.echo(f"left out, for a reading without position is in no square: {readings}", err=True)
 
 
@@ -103,11 +94,4 @@ def _write(found: Survey, output: Path) -> None:
 
     layers = [layer_of_rows(name, rows) for name, rows in found.means.items()]
     layers.append(verdict_layer(found.verdicts))
-    if output.suffix.lower() == ".gpkg":
-        from analysis.files.geopackage import write_geopackage  # noqa: PLC0415 - as above
-
-        write_geopackage(output, layers)
-        return
-    from analysis.files.geojson import write_geojson  # noqa: PLC0415 - as above
-
-    write_geojson(output, layers)
+    write_map(output, layers)

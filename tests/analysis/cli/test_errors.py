@@ -22,8 +22,9 @@ from tests.analysis.cli.conftest import HEADER
         (("two.csv", "--margin", "nan"), "margin"),
         (("two.csv", "--confidence", "1"), "confidence"),
         (("two.csv", "--confidence", "95"), "confidence"),
-        (("two.csv", "--fold", "Nowhere"), "'Nowhere'"),
-        (("two.csv", "--outcrop", "Nowhere"), "'Nowhere'"),
+        (("two.csv", "--confidence", "0.5"), "expected 0.51 to 0.9999"),
+        (("two.csv", "--fold", "Nowhere"), "no fold 'Nowhere'; expected one of: 'invented 1', 'Low fold'"),
+        (("two.csv", "--outcrop", "Nowhere"), "no outcrop 'Nowhere'; expected one of: 'O01', 'O02', 'O03'"),
         (("two.csv", "--colour"), "--colour"),
         (("empty.csv",), "empty"),
         (("folder",), "folder"),
@@ -53,6 +54,70 @@ def test_errors_of_the_group_are_one_line_too(run, arguments):
     result = run(*arguments)
     assert result.exit_code == 2
     assert len(result.stderr.splitlines()) == 1
+
+
+def test_a_misused_option_points_to_the_help_of_its_command(run):
+    """Also where click does not say which command was misused."""
+    result = run("simulate", "--limbs", "55")
+    assert result.exit_code == 2
+    assert "See 'hingewise simulate --help'." in result.stderr
+
+
+@pytest.mark.parametrize(
+    ("command", "name"),
+    [
+        (("join", "two.csv"), "out.csv"),
+        (("join", "two.csv", "-o", "all.csv", "--conflicts"), "out.csv"),
+        (("export", "two.csv", "-o"), "out.csv"),
+        (("export", "two.csv", "-o"), "out.gpkg"),
+        (("export", "two.csv", "-o"), "out.geojson"),
+        (("report", "two.csv", "-o"), "out.html"),
+        (("report", "two.csv", "-o"), "out.pdf"),
+        (("survey", "two.csv", "-o"), "out.gpkg"),
+        (("simulate", "-o"), "out.csv"),
+        (("plan", "-o"), "out.png"),
+    ],
+    ids=lambda part: part if isinstance(part, str) else part[0],
+)
+def test_where_a_file_cannot_go_is_said_before_any_work(run, two_folds, monkeypatch, command, name):
+    """A wrong ending, a folder of that name, no such folder: one line, nothing on the screen, nothing written."""
+    monkeypatch.chdir(two_folds.parent)
+    command = command if command[-1].startswith("-") else (*command, "-o")
+    ending = name[name.index(".") :]
+    Path(f"folder{ending}").mkdir()
+    before = sorted(two_folds.parent.rglob("*"))
+    for target, said in (
+        (f"nowhere/{name}", "lies in no folder that is there"),
+        (f"folder{ending}", "is a folder"),
+        ("out.xyz", f"expected a name ending in {'.html' if ending == '.pdf' else ''}"),
+        ("out", "ends in no format"),
+        ("-", "ends in no format"),
+    ):
+        result = run(*command, target)
+        assert result.exit_code == 2, result.output
+        assert result.stdout == ""
+        (line,) = result.stderr.splitlines()
+        assert line.startswith(f"hingewise: {'--conflicts' if '--conflicts' in command else '--output'}: ")
+        assert said in line
+    assert sorted(two_folds.parent.rglob("*")) == before
+
+
+@pytest.mark.parametrize("command", [("check",), ("replay",), ("explain", "--fault-strike", "52")])
+def test_where_nothing_stands_every_command_says_so(run, tmp_path, command):
+    """A file of a header only is no error, but it is not passed over in silence."""
+    path = tmp_path / "header.csv"
+    path.write_text(HEADER, encoding="utf-8")
+    result = run(*command, path)
+    assert (result.exit_code, result.stdout, result.stderr) == (0, "No readings stand in these files.\n", "")
+
+
+def test_more_names_than_one_can_read_are_counted(run, tmp_path):
+    """Of a hundred folds a dozen are named where one is asked for that is not there."""
+    path = tmp_path / "many.csv"
+    path.write_text(HEADER + "".join(f"F{k:02d},A,bedding,45,30,,\n" for k in range(100)), encoding="utf-8")
+    result = run("check", path, "--fold", "F100")
+    assert "'F00', 'F01'" in result.stderr
+    assert "'F11' and 88 more" in result.stderr
 
 
 def test_the_command_as_installed_ends_without_a_traceback(tmp_path):

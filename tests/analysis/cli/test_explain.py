@@ -115,3 +115,23 @@ def test_a_fault_that_is_none_is_refused_in_one_line(run, mossgarth, options, wo
     assert result.stdout == ""
     (line,) = result.stderr.splitlines()
     assert words in line
+
+
+def test_a_fold_without_scatter_is_explained_without_a_sense_that_rounding_made(run, tmp_path):
+    """Readings without scatter leave a variance of zero, which rounding once made negative and refused."""
+    path = tmp_path / "exact.csv"
+    assert run("simulate", "--scatter", 0, 0, 0, "-o", path).exit_code == 0
+    result = run("explain", path, "--fault-strike", 52)
+    assert result.exit_code == 0, result.output
+    assert "hints at" not in result.stdout  # the transection is 0.0: it has no sense to hint with
+    assert "-0.0" not in result.stdout
+    assert "e+" not in result.stdout
+
+
+def test_report_and_explain_describe_a_fault_by_the_same_options(run):
+    """Their help says the same of every option that describes the fault, but for which of them is needed."""
+    explain, report = (" ".join(run(command, "--help").stdout.split()) for command in ("explain", "report"))
+    start, end = "--fault-strike-se", "displacement."
+    assert (
+        explain[explain.index(start) : explain.index(end)] == report[report.index(start) : report.index(end)]
+    )

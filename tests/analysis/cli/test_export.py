@@ -147,11 +147,28 @@ def test_what_cannot_be_exported_is_said_in_one_line(run, demo, tmp_path):
         ((demo, "-o", tmp_path / "out.shp"), ".gpkg"),
         ((struck, "-o", tmp_path / "out.gpkg"), "no reading stands"),
         ((bare, "-o", tmp_path / "out.gpkg", "--schema", "gems"), "latitude_deg"),
-        ((demo, "-o", tmp_path / "nowhere" / "out.gpkg"), "cannot be written"),
-        ((demo, "-o", tmp_path / "nowhere" / "out.geojson"), "cannot be written"),
+        ((demo, "-o", tmp_path / "nowhere" / "out.gpkg"), "lies in no folder"),
+        ((demo, "-o", tmp_path / "nowhere" / "out.geojson"), "lies in no folder"),
     ):
         result = run("export", *arguments)
         assert result.exit_code == 2, result.output
         assert said in result.stderr
         assert len(result.stderr.splitlines()) == 1
+    one = run("export", bare, "-o", tmp_path / "out.csv")
+    assert "1 revision written" in one.stdout
     assert run("export", bare, "-o", tmp_path / "out.gpkg").exit_code == 0
+
+
+def test_a_fold_or_outcrop_that_is_not_there_is_answered_with_those_that_are(run, demo, tmp_path):
+    """The names that could have been meant stand in the error, for an outcrop those of the fold asked for."""
+    out = tmp_path / "out.gpkg"
+    result = run("export", demo, "-o", out, "--fold", "Nowhere")
+    assert result.exit_code == 2
+    assert (
+        "there is no fold 'Nowhere'; expected one of: 'Mossgarth fold', 'Low Mossgarth fold'" in result.stderr
+    )
+    result = run("export", demo, "-o", out, "--fold", "Mossgarth Edge fold", "--outcrop", "MG-01")
+    assert result.exit_code == 2
+    assert "'ME-01'" in result.stderr
+    assert "'MG-02'" not in result.stderr
+    assert not out.exists()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 import re
 import sys
 
@@ -16,9 +17,9 @@ from tests.analysis.cli.conftest import HEADER
     [
         ((), "Missing"),
         (("two.csv",), "--output"),
-        (("two.csv", "-o", "report.txt"), "expected a name in .html or .pdf"),
-        (("two.csv", "-o", "report"), "no ending is no kind of report"),
-        (("two.csv", "-o", "nowhere/report.html"), "cannot be written"),
+        (("two.csv", "-o", "report.txt"), "expected a name ending in .html, .htm, .pdf"),
+        (("two.csv", "-o", "report"), "report ends in no format"),
+        (("two.csv", "-o", "nowhere/report.html"), "lies in no folder"),
         (("two.csv", "-o", "report.html", "--fault-strike", "400"), "fault strike"),
         (("two.csv", "-o", "report.html", "--zone-width-km", "2"), "--fault-strike"),
         (("two.csv", "-o", "report.html", "--sense", "left"), "--sense"),
@@ -36,6 +37,21 @@ def test_errors_are_one_line_and_nothing_is_written(run, two_folds, monkeypatch,
     assert said in line
     assert "Traceback" not in result.stderr
     assert sorted(two_folds.parent.iterdir()) == before
+
+
+def test_a_pipe_is_refused_since_its_content_is_gone_when_the_checksum_is_taken(run, two_folds):
+    """What the SHA-256 of the report would be taken of is gone from a pipe; the command says so."""
+    pipe = two_folds.parent / "pipe.csv"
+    os.mkfifo(pipe)
+    result = run("report", two_folds, pipe, "-o", two_folds.parent / "report.html")
+    assert result.exit_code == 2
+    assert "pipe.csv: this is no file that stays" in result.stderr
+    assert not (two_folds.parent / "report.html").exists()
+
+
+def test_nothing_is_said_of_progress_where_nobody_watches(run, two_folds):
+    """Away from a terminal the error stream of a report is empty when all is well."""
+    assert run("report", two_folds, "-o", two_folds.parent / "report.html").stderr == ""
 
 
 def made(run, path, *arguments):

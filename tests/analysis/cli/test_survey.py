@@ -86,7 +86,8 @@ def test_what_cannot_be_surveyed_is_said_in_one_line(run, archive, tmp_path):
     empty.mkdir()
     out = tmp_path / "map.gpkg"
     for arguments, said in (
-        ((empty, "-o", out), "no file of readings"),
+        ((empty, "-o", out), f"{empty}: there is no file of readings"),
+        ((archive, "-o", tmp_path / "nowhere" / "map.gpkg"), "lies in no folder"),
         ((archive, "-o", tmp_path / "map.csv"), ".gpkg"),
         ((archive, "-o", out, "--moving"), "--cell"),
         ((archive, "-o", out, "--cell", 0), "--cell"),
