@@ -45,9 +45,7 @@ def main(ctx: click.Context, notebook: Path | None) -> None:
     if ctx.invoked_subcommand is not None:
         return
     if not has_display():
-        raise click.UsageError(
-            "there is no display to open the app on; see 'hingewise --help' for what needs none"
-        )
+        raise click.UsageError("There is no display to open the app on, and no command was given.", ctx)
     from fieldapp.app import open_app  # noqa: PLC0415 - the window toolkit is loaded only for a window
 
     open_app(notebook or notebook_path())
