@@ -5,6 +5,10 @@ themselves, and SLD 1.1 (OGC 05-078r4 with Symbology Encoding 05-077r4) for othe
 north and turned clockwise by `azimuth_deg`: the long line of a plane is its strike and its mark shows the dip side,
 which lies to the right of the strike by the right-hand rule. The shapes are common practice on geological maps, no
 source.
+
+Not every program that reads SLD draws a picture that stands in the style itself, and not every one of those that
+draw a well-known mark instead turns it by a field. So each picture has such a mark after it, for programs that
+cannot draw it, and that mark points nowhere: unturned it says nothing wrong.
 """
 
 from __future__ import annotations
@@ -19,6 +23,7 @@ from analysis.orient.features import Feature
 _INK: Final = "#16191d"
 _SECOND: Final = "#8a3b12"
 _ACCENT: Final = "#0b6e69"
+_PAPER: Final = "#ffffff"
 _SIZE_MM: Final = 6.0
 _SIZE_PX: Final = 22
 _LABEL_OFFSET_MM: Final = 2.6
@@ -28,12 +33,18 @@ _FLAT_DEG, _UPRIGHT_DEG = 0.5, 89.5
 
 @dataclass(frozen=True, slots=True)
 class Symbol:
-    """One symbol: the word in the field `symbol`, its drawing on a square of 24 by 24, whether it is turned."""
+    """One symbol: the word in the field `symbol`, its drawing on a square of 24 by 24, whether it is turned.
+
+    `mark` is what stands for it where the drawing cannot be shown: one of the marks that Symbology Encoding names,
+    and none that seems to point anywhere. It is filled where that tells it from another.
+    """
 
     name: str
     drawing: str
+    mark: str
     colour: str = _INK
     turned: bool = True
+    filled: bool = False
 
     @property
     def svg(self) -> str:
@@ -53,32 +64,68 @@ _STRIKE: Final = '<path d="M12 1V23"/>'
 SYMBOLS: Final = {
     symbol.name: symbol
     for symbol in (
-        Symbol("bedding", _STRIKE + '<path d="M12 12H18"/>'),
-        Symbol("bedding overturned", _STRIKE + '<path d="M12 8.5H15.5A3.5 3.5 0 0 1 15.5 15.5H12"/>'),
+        Symbol("bedding", _STRIKE + '<path d="M12 12H18"/>', "circle"),
         Symbol(
-            "bedding horizontal", '<circle cx="12" cy="12" r="6"/><path d="M12 3V21M3 12H21"/>', turned=False
+            "bedding overturned",
+            _STRIKE + '<path d="M12 8.5H15.5A3.5 3.5 0 0 1 15.5 15.5H12"/>',
+            "circle",
+            filled=True,
         ),
-        Symbol("bedding vertical", _STRIKE + '<path d="M7 12H17"/>'),
-        Symbol("cleavage", _STRIKE + _solid("M12 8V16L18 12Z", _SECOND), _SECOND),
-        Symbol("cleavage horizontal", '<path d="M6 6H18V18H6ZM12 3V21M3 12H21"/>', _SECOND, turned=False),
-        Symbol("cleavage vertical", _STRIKE + _solid("M12 8V16L18 12ZM12 8V16L6 12Z", _SECOND), _SECOND),
         Symbol(
-            "intersection", '<path d="M12 23V4M8.5 19H15.5"/>' + _solid("M12 0L15.5 8H8.5Z", _ACCENT), _ACCENT
+            "bedding horizontal",
+            '<circle cx="12" cy="12" r="6"/><path d="M12 3V21M3 12H21"/>',
+            "circle",
+            turned=False,
         ),
-        Symbol("hinge", '<path d="M12 23V2M7.5 8L12 1.5L16.5 8M8 21A4 4 0 0 1 16 21"/>'),
+        Symbol("bedding vertical", _STRIKE + '<path d="M7 12H17"/>', "circle"),
+        Symbol("cleavage", _STRIKE + _solid("M12 8V16L18 12Z", _SECOND), "square", _SECOND),
+        Symbol(
+            "cleavage horizontal",
+            '<path d="M6 6H18V18H6ZM12 3V21M3 12H21"/>',
+            "square",
+            _SECOND,
+            turned=False,
+        ),
+        Symbol(
+            "cleavage vertical",
+            _STRIKE + _solid("M12 8V16L18 12ZM12 8V16L6 12Z", _SECOND),
+            "square",
+            _SECOND,
+        ),
+        Symbol(
+            "intersection",
+            '<path d="M12 23V4M8.5 19H15.5"/>' + _solid("M12 0L15.5 8H8.5Z", _ACCENT),
+            "star",
+            _ACCENT,
+        ),
+        Symbol("hinge", '<path d="M12 23V2M7.5 8L12 1.5L16.5 8M8 21A4 4 0 0 1 16 21"/>', "x"),
     )
 }
 VERDICT_MARKS: Final = {
-    "transected": Symbol(
-        "transected", '<circle cx="12" cy="12" r="9"/><path d="M6 18L18 6"/>', _SECOND, turned=False
-    ),
-    "axial planar": Symbol(
-        "axial planar", '<circle cx="12" cy="12" r="9"/><path d="M9 5V19M15 5V19"/>', _ACCENT, turned=False
-    ),
-    "keep reading": Symbol(
-        "keep reading", '<circle cx="12" cy="12" r="9" stroke-dasharray="4 3"/>', _INK, turned=False
-    ),
-    "cannot be settled": Symbol("cannot be settled", '<path d="M4 4L20 20M20 4L4 20"/>', _INK, turned=False),
+    symbol.name: symbol
+    for symbol in (
+        Symbol(
+            "transected",
+            '<circle cx="12" cy="12" r="9"/><path d="M6 18L18 6"/>',
+            "star",
+            _SECOND,
+            turned=False,
+        ),
+        Symbol(
+            "axial planar",
+            '<circle cx="12" cy="12" r="9"/><path d="M9 5V19M15 5V19"/>',
+            "square",
+            _ACCENT,
+            turned=False,
+        ),
+        Symbol(
+            "keep reading",
+            '<circle cx="12" cy="12" r="9" stroke-dasharray="4 3"/>',
+            "circle",
+            turned=False,
+        ),
+        Symbol("cannot be settled", '<path d="M4 4L20 20M20 4L4 20"/>', "x", turned=False),
+    )
 }
 
 
@@ -181,30 +228,34 @@ def _qml(style: Style) -> str:
 
 
 def _sld(style: Style) -> str:
-    rules = []
-    for symbol in style.symbols:
-        turn = (
-            "<se:Rotation><ogc:PropertyName>azimuth_deg</ogc:PropertyName></se:Rotation>"
-            if symbol.turned
-            else ""
-        )
-        rules.append(
-            f"<se:Rule><se:Name>{escape(symbol.name)}</se:Name><ogc:Filter><ogc:PropertyIsEqualTo>"
-            f"<ogc:PropertyName>{style.field}</ogc:PropertyName><ogc:Literal>{escape(symbol.name)}</ogc:Literal>"
-            "</ogc:PropertyIsEqualTo></ogc:Filter><se:PointSymbolizer><se:Graphic><se:ExternalGraphic>"
-            f'<se:InlineContent encoding="base64">{symbol.svg}</se:InlineContent><se:Format>image/svg+xml</se:Format>'
-            f"</se:ExternalGraphic><se:Size>{_SIZE_PX}</se:Size>{turn}</se:Graphic></se:PointSymbolizer>"
-            "<se:TextSymbolizer><se:Label><ogc:PropertyName>label</ogc:PropertyName></se:Label>"
-            '<se:Font><se:SvgParameter name="font-size">10</se:SvgParameter></se:Font>'
-            "<se:LabelPlacement><se:PointPlacement><se:Displacement><se:DisplacementX>12</se:DisplacementX>"
-            "<se:DisplacementY>0</se:DisplacementY></se:Displacement></se:PointPlacement></se:LabelPlacement>"
-            f'<se:Fill><se:SvgParameter name="fill">{_INK}</se:SvgParameter></se:Fill></se:TextSymbolizer></se:Rule>'
-        )
     return (
         '<?xml version="1.0" encoding="UTF-8"?>\n'
         '<StyledLayerDescriptor xmlns="http://www.opengis.net/sld" xmlns:se="http://www.opengis.net/se" '
         'xmlns:ogc="http://www.opengis.net/ogc" version="1.1.0"><NamedLayer>'
         f"<se:Name>{escape(style.name)}</se:Name><UserStyle><se:Name>{escape(style.name)}</se:Name>"
-        f"<se:FeatureTypeStyle>{''.join(rules)}</se:FeatureTypeStyle></UserStyle></NamedLayer>"
-        "</StyledLayerDescriptor>\n"
+        f"<se:FeatureTypeStyle>{''.join(_rule(style.field, symbol) for symbol in style.symbols)}"
+        "</se:FeatureTypeStyle></UserStyle></NamedLayer></StyledLayerDescriptor>\n"
+    )
+
+
+def _rule(field: str, symbol: Symbol) -> str:
+    """The rule of one symbol: the drawing, the mark for want of it, and the dip or plunge beside them."""
+    turn = (
+        "<se:Rotation><ogc:PropertyName>azimuth_deg</ogc:PropertyName></se:Rotation>" if symbol.turned else ""
+    )
+    return (
+        f"<se:Rule><se:Name>{escape(symbol.name)}</se:Name><ogc:Filter><ogc:PropertyIsEqualTo>"
+        f"<ogc:PropertyName>{field}</ogc:PropertyName><ogc:Literal>{escape(symbol.name)}</ogc:Literal>"
+        "</ogc:PropertyIsEqualTo></ogc:Filter><se:PointSymbolizer><se:Graphic><se:ExternalGraphic>"
+        f'<se:InlineContent encoding="base64">{symbol.svg}</se:InlineContent><se:Format>image/svg+xml</se:Format>'
+        f"</se:ExternalGraphic><se:Mark><se:WellKnownName>{symbol.mark}</se:WellKnownName>"
+        f'<se:Fill><se:SvgParameter name="fill">{symbol.colour if symbol.filled else _PAPER}</se:SvgParameter>'
+        f'</se:Fill><se:Stroke><se:SvgParameter name="stroke">{symbol.colour}</se:SvgParameter>'
+        '<se:SvgParameter name="stroke-width">1.8</se:SvgParameter></se:Stroke></se:Mark>'
+        f"<se:Size>{_SIZE_PX}</se:Size>{turn}</se:Graphic></se:PointSymbolizer>"
+        "<se:TextSymbolizer><se:Label><ogc:PropertyName>label</ogc:PropertyName></se:Label>"
+        '<se:Font><se:SvgParameter name="font-size">10</se:SvgParameter></se:Font>'
+        "<se:LabelPlacement><se:PointPlacement><se:Displacement><se:DisplacementX>12</se:DisplacementX>"
+        "<se:DisplacementY>0</se:DisplacementY></se:Displacement></se:PointPlacement></se:LabelPlacement>"
+        f'<se:Fill><se:SvgParameter name="fill">{_INK}</se:SvgParameter></se:Fill></se:TextSymbolizer></se:Rule>'
     )
