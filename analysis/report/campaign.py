@@ -12,7 +12,8 @@ from analysis.orient.features import Feature
 from analysis.orient.position import EARTH_RADIUS_m
 from analysis.orient.righthand import robust_centre
 from analysis.orient.vectors import axis_angle_deg
-from analysis.report.plan_sketch import PlanOutcrop, PlanPlane
+from analysis.report.plan_sketch import PlanOutcrop
+from analysis.report.plan_symbols import PlanPlane
 
 if TYPE_CHECKING:
     from collections.abc import Mapping

@@ -12,7 +12,7 @@ import numpy as np
 
 from analysis.orient.curves import great_circle, net_xy
 from analysis.orient.vectors import equal_area_xy
-from analysis.report.net import mean_mark
+from analysis.report.marks import mean_mark
 from analysis.report.palette import palette_named
 from analysis.report.placing import Box, Placer
 from analysis.report.sheet import Sheet, house_style

@@ -8,17 +8,16 @@ import numpy as np
 
 from analysis.orient.curves import ellipse, great_circle, lower_pieces, net_xy, rim_arc
 from analysis.orient.features import Feature
-from analysis.orient.forms import Notation
-from analysis.orient.notation import write
 from analysis.orient.vectors import equal_area_xy
-from analysis.report.palette import LETTERS, MARKERS, NAMES, palette_named
+from analysis.report.marks import DIAMOND_PT, DISC_PT, mean_mark, scatter_marks
+from analysis.report.net_key import NetKey
+from analysis.report.palette import LETTERS, palette_named
 from analysis.report.placing import Box, Placer
 from analysis.report.sheet import POINTS_PER_INCH, Sheet, house_style
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
-    from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
     from analysis.fold.records import AxisEstimate, FoldCheck
@@ -30,8 +29,6 @@ _NET_IN: Final = 5.9
 _REACH: Final = 1.22  # of the net's axes, in radii
 _KEY_IN: Final = 6.15  # where the key begins
 _LABEL_PT: Final = 9.5
-_DISC_PT: Final = 8.0  # the hinge's marker, points across
-_DIAMOND_PT: Final = 13.0  # the mean intersection's
 _RASTER_FROM: Final = 3000  # readings; more than these are set as an image within an SVG
 _SECOND_CLUSTER_DEG: Final = 40.0
 
@@ -85,7 +82,8 @@ class _Net:
         self._draw_readings()
         self._draw_means()
         self._draw_labels()
-        _Key(self.sheet, self.check, self.palette).draw(end - 0.34)
+        key = NetKey(self.sheet, self.check, self.palette, left=_KEY_IN, right=_WIDE_IN - 0.3)
+        key.draw(end - 0.34)
 
     def _pixels(self, xy: Floats) -> Floats:
         return np.asarray(self.axes.transData.transform(xy), dtype=float)
@@ -215,13 +213,13 @@ class _Net:
         # On the net an angle is about sqrt(2) sin(angle/2) radii long.
         radius_pt = _NET_IN / (2.0 * _REACH) * POINTS_PER_INCH
         across = 2.0 * np.sqrt(2.0) * np.sin(np.radians(estimate.ellipse.minor_deg / 2.0)) * radius_pt
-        return bool(across < 1.3 * _DISC_PT)
+        return bool(across < 1.3 * DISC_PT)
 
     # -- words ---------------------------------------------------------------------------------------------
 
     def _draw_labels(self) -> None:
         check = self.check
-        gap = self._points_as_pixels(_DIAMOND_PT) / 2.0 + 4.0
+        gap = self._points_as_pixels(DIAMOND_PT) / 2.0 + 4.0
         if check.hinge is not None:
             self._label("hinge", equal_area_xy(check.hinge.vector), "label-hinge", gap, bold=True)
         if check.intersection is not None:
@@ -294,146 +292,3 @@ def crowds(vectors: Floats) -> list[Floats]:
         found.append(sample[close[middle] & left])
         left &= cosines[middle] < np.cos(np.radians(_SECOND_CLUSTER_DEG))
     return found
-
-
-def scatter_marks(
-    axes: Axes,
-    xy: Floats,
-    feature: Feature,
-    palette: Palette,
-    size_pt: float,
-    *,
-    gid: str,
-    raster: bool = False,
-) -> None:
-    """Draw a feature's markers at places (n, 2): bedding filled, the others open."""
-    colour = palette.colour_of(feature)
-    scale = {"o": 0.85, "D": 0.85, "s": 0.9}.get(MARKERS[feature], 1.05)
-    axes.scatter(
-        xy[:, 0],
-        xy[:, 1],
-        s=(size_pt * scale) ** 2,
-        marker=MARKERS[feature],
-        facecolors=colour if feature is Feature.BEDDING else palette.card,
-        edgecolors=palette.card if feature is Feature.BEDDING else colour,
-        linewidths=0.5 if feature is Feature.BEDDING else max(0.16 * size_pt, 0.5),
-        gid=gid,
-        zorder=3.0,
-        clip_on=False,
-        rasterized=raster,
-    )
-
-
-def mean_mark(
-    axes: Axes, place: Floats, gid: str, palette: Palette, *, disc: bool, small: bool = False
-) -> float:
-    """Draw the marker of a mean, a disc for the hinge and an open diamond else, and return its size in points."""
-    size = (_DISC_PT if not small else 0.75 * _DISC_PT) if disc else _DIAMOND_PT
-    # Edge colour, edge width and height above the paper of each layer: the disc lies between the diamond's ground
-    # and its line, so that neither hides the other where they coincide.
-    layers = [(palette.card, 1.2, 4.1)] if disc else [(palette.card, 4.0, 4.0), (palette.accent, 1.9, 4.2)]
-    for edge, width, zorder in layers:
-        axes.plot(
-            *place,
-            marker="o" if disc else "D",
-            markersize=size if disc else size / np.sqrt(2.0),
-            markerfacecolor=palette.ink if disc else "none",
-            markeredgecolor=edge,
-            markeredgewidth=width,
-            linestyle="none",
-            gid=f"{gid}-ground" if zorder == 4.0 else gid,
-            zorder=zorder,
-            clip_on=False,
-        )
-    return size
-
-
-class _Key:
-    """The column beside the net: what the marks mean, how many there are, and the figures."""
-
-    def __init__(self, sheet: Sheet, check: FoldCheck, palette: Palette) -> None:
-        self.sheet, self.check, self.palette = sheet, check, palette
-        self.left, self.right = _KEY_IN, _WIDE_IN - 0.3
-
-    def draw(self, top: float) -> None:
-        check, counts = self.check, self.check.readings
-        y = self._readings(top)
-        hinge, pole, mean = check.hinge, check.cleavage, check.intersection
-        sources = {"both": "from bedding and hinge lines"}
-        self._figure(
-            y,
-            "Hinge, trend/plunge",
-            None if hinge is None else write(hinge.line, Notation.TREND_PLUNGE),
-            "" if hinge is None else sources.get(hinge.source, f"from {hinge.source}"),
-            hinge,
-        )
-        planes = f"from {counts.cleavage} plane{'' if counts.cleavage == 1 else 's'}"
-        lines = (
-            f" and {counts.intersection} line{'' if counts.intersection == 1 else 's'}"
-            if counts.intersection
-            else ""
-        )
-        self._figure(
-            y - 1.1,
-            "Mean cleavage, strike/dip",
-            None if pole is None else write(pole.plane, Notation.STRIKE_DIP),
-            f"{planes}{lines}",
-            pole,
-        )
-        self._figure(
-            y - 2.2,
-            "Mean intersection, trend/plunge",
-            None if mean is None else write(mean.axis.line, Notation.TREND_PLUNGE),
-            "" if mean is None else f"{mean.measured} read, {mean.computed} computed",
-            None if mean is None else mean.axis,
-        )
-        self.sheet.words(self.left, 0.42, "Equal area, lower hemisphere.", 8.0, quiet=True)
-        self.sheet.words(self.left, 0.25, "Poles of planes; lines as read.", 8.0, quiet=True)
-
-    def _readings(self, y: float) -> float:
-        counts = self.check.readings
-        self.sheet.words(self.left, y, "Readings", 9.0, quiet=True)
-        for feature in Feature:
-            y -= 0.245
-            number = counts.of(feature)
-            place = np.array([[self.left + 0.09, y + 0.045]])
-            scatter_marks(self.sheet.axes, place, feature, self.palette, 7.5, gid=f"key-{feature}")
-            self.sheet.words(self.left + 0.27, y, LETTERS[feature], 10.0, bold=True)
-            self.sheet.words(self.left + 0.5, y, NAMES[feature], 10.0)
-            self.sheet.words(self.right, y, f"{number}", 10.0, align="right", gid=f"count-{feature}")
-        y -= 0.245
-        where = "outcrop" if counts.outcrops == 1 else "outcrops"
-        self.sheet.words(self.left + 0.5, y, where, 10.0, quiet=True)
-        self.sheet.words(self.right, y, f"{counts.outcrops}", 10.0, quiet=True, align="right")
-        return y - 0.42
-
-    def _figure(
-        self, y: float, name: str, figure: str | None, source: str, estimate: AxisEstimate | None
-    ) -> None:
-        self.sheet.strokes(
-            [np.array([[self.left, y + 0.2], [self.right, y + 0.2]])], 0.7, self.palette.rule, "rule"
-        )
-        self.sheet.words(self.left, y, name, 9.0, quiet=True)
-        middle = np.array([self.right - 0.12, y - 0.24])
-        if estimate is self.check.cleavage:
-            ends = middle + np.array([[-0.16, -0.07], [0.12, 0.07]])
-            self.sheet.strokes([ends], 1.8, self.palette.second, "key-mean")
-        elif estimate is not None:
-            mean_mark(self.sheet.axes, middle, "key", self.palette, disc=estimate is self.check.hinge)
-        if figure is None or estimate is None:
-            self.sheet.words(self.left, y - 0.26, "not known yet", 10.0, gid=f"figure {name}")
-            return
-        self.sheet.words(self.left, y - 0.31, figure, 16.0, bold=True, gid=f"figure {name}")
-        self.sheet.words(self.left, y - 0.51, source, 8.5, quiet=True)
-        share = f"{100.0 * self.check.settings.confidence:g}%"
-        size = estimate.ellipse
-        text = (
-            "no ellipse yet"
-            if size is None
-            else f"{share} ellipse ±{_angle(size.major_deg)} by ±{_angle(size.minor_deg)}"
-        )
-        self.sheet.words(self.left, y - 0.68, text, 8.5, quiet=True)
-
-
-def _angle(value_deg: float) -> str:
-    return f"{value_deg:.1f}°" if value_deg < 9.95 else f"{value_deg:.0f}°"

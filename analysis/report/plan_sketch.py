@@ -1,11 +1,4 @@
-"""The plan sketch, for print: outcrops in metres, north up, with a scale bar and no base map.
-
-Symbols after the FGDC Digital Cartographic Standard for Geologic Map Symbolization (FGDC-STD-013-2006), sections
-6 (bedding), 7 (cleavage) and 9 (lineation), from memory; the sketch explains each symbol it uses. A bar lies
-along strike and a tick points down dip, with the dip beside it. A vertical plane has its tick on both sides, a
-horizontal one is a ring with a cross, the tick of an overturned bed is bent round like a hook, and cleavage
-carries an open box in place of the tick.
-"""
+"""The plan sketch, for print: outcrops in metres, north up, with a scale bar and no base map."""
 
 from __future__ import annotations
 
@@ -21,6 +14,7 @@ from analysis.orient.forms import Notation
 from analysis.orient.notation import write
 from analysis.report.palette import palette_named
 from analysis.report.placing import Box, Placer
+from analysis.report.plan_symbols import FLAT_DEG, UPRIGHT_DEG, PlanPlane, azimuth_ray, plane_symbol
 from analysis.report.sheet import POINTS_PER_INCH, Sheet, house_style
 
 if TYPE_CHECKING:
@@ -28,7 +22,7 @@ if TYPE_CHECKING:
 
     from matplotlib.figure import Figure
 
-    from analysis.orient.attitudes import Line, Plane
+    from analysis.orient.attitudes import Line
     from analysis.orient.vectors import Floats
     from analysis.report.palette import Palette
 
@@ -39,7 +33,6 @@ _HEAD_IN: Final = 0.5
 _HALF_IN: Final = 0.17  # half a strike bar
 _MARGIN_IN: Final = 0.7  # kept free round the outermost outcrops
 _LEAST_SPAN_M: Final = 20.0
-_FLAT_DEG, _UPRIGHT_DEG = 0.5, 89.5  # drawn as horizontal, as vertical
 _WORDS_PT: Final = 9.5
 _STROKE_PT: Final = 1.5
 _DIP_PT: Final = 9.0
@@ -47,31 +40,6 @@ _CLEAR_IN: Final = 0.06  # between two symbols of one outcrop
 _OFF_PLACE_IN: Final = 0.02
 _DOT_COST: Final = 30.0  # of covering another outcrop's place
 _BAR_STEPS: Final = (1.0, 2.0, 5.0)
-
-
-@dataclass(frozen=True, slots=True)
-class PlanPlane:
-    """A plane drawn on the plan: bedding or cleavage, most often the mean of an outcrop."""
-
-    feature: Feature
-    plane: Plane
-    overturned: bool = False
-
-    def __post_init__(self) -> None:
-        if not self.feature.is_plane:
-            raise SettingError(f"{self.feature} is no plane", where="plan", expected="bedding or cleavage")
-
-    @property
-    def kind(self) -> str:
-        """The words that the key explains its symbol with."""
-        dip = self.plane.dip_deg
-        if dip < _FLAT_DEG:
-            return f"{self.feature}, horizontal"
-        if dip > _UPRIGHT_DEG:
-            return f"{self.feature}, vertical"
-        if self.overturned and self.feature is Feature.BEDDING:
-            return "bedding, overturned"
-        return f"{self.feature}, with dip"
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,41 +81,6 @@ def draw_plan(
         drawing = _Plan(outcrops, hinge, fold, palette_named(theme))
         drawing.draw()
         return drawing.sheet.figure
-
-
-def azimuth_ray(azimuth_deg: float) -> Floats:
-    """Unit vector, shape (2,), x east and y north, of an azimuth."""
-    turn = math.radians(azimuth_deg)
-    return np.array([math.sin(turn), math.cos(turn)])
-
-
-def plane_symbol(item: PlanPlane) -> list[Floats]:
-    """Lines, each (n, 2), x east and y north, of a plane's symbol; half its strike bar has length 1."""
-    plane = item.plane
-    along, down = azimuth_ray(plane.strike_deg), azimuth_ray(plane.dip_direction_deg)
-    frame = np.stack([along, down])
-    bar = np.array([[-1.0, 0.0], [1.0, 0.0]])
-    sides = (1.0, -1.0) if plane.dip_deg > _UPRIGHT_DEG else (1.0,)
-    if plane.dip_deg < _FLAT_DEG:
-        turn = np.linspace(0.0, 2.0 * np.pi, 49)
-        ring = 0.6 * np.stack([np.cos(turn), np.sin(turn)], axis=-1)
-        return (
-            [ring, bar, bar[:, ::-1]] if item.feature is Feature.BEDDING else [_square(), bar, bar[:, ::-1]]
-        )
-    if item.feature is Feature.CLEAVAGE:
-        marks = [np.array([[-0.34, 0.0], [-0.34, 0.5 * k], [0.34, 0.5 * k], [0.34, 0.0]]) for k in sides]
-    elif item.kind == "bedding, overturned":
-        # The tick comes from behind the bar, bent round: what was the top of the bed now faces down.
-        turn = np.linspace(np.pi, 0.0, 25)
-        bend = np.stack([0.26 * np.cos(turn), -0.36 * np.sin(turn)], axis=-1)
-        marks = [np.concatenate([bend, [[0.26, 0.55]]])]
-    else:
-        marks = [np.array([[0.0, -0.5 if len(sides) == 2 else 0.0], [0.0, 0.5]])]
-    return [line @ frame for line in (bar, *marks)]
-
-
-def _square() -> Floats:
-    return 0.5 * np.array([[-1.0, -1.0], [1.0, -1.0], [1.0, 1.0], [-1.0, 1.0], [-1.0, -1.0]])
 
 
 def bar_length_m(most_m: float) -> float:
@@ -304,7 +237,7 @@ class _Plan:
 
     def _dip_words(self, item: PlanPlane) -> tuple[str, Floats]:
         """The dip as written, and where its middle stands from the symbol's."""
-        if not _FLAT_DEG <= item.plane.dip_deg <= _UPRIGHT_DEG:
+        if not FLAT_DEG <= item.plane.dip_deg <= UPRIGHT_DEG:
             return "", np.zeros(2)
         text = f"{item.plane.dip_deg:.0f}"
         size = np.array(self.sheet.size_in(text, _DIP_PT))
@@ -405,14 +338,14 @@ class _Plan:
     def _draw_hinge(self, middle: Floats) -> None:
         """An arrow along the trend; a level hinge has two heads, an upright one is a dot in a ring."""
         assert self.hinge is not None  # noqa: S101 - tells the type checker what the caller has made sure of
-        if self.hinge.plunge_deg > _UPRIGHT_DEG:
+        if self.hinge.plunge_deg > UPRIGHT_DEG:
             turn = np.linspace(0.0, 2.0 * np.pi, 49)
             ring = middle + 0.14 * np.stack([np.cos(turn), np.sin(turn)], axis=-1)
             self.sheet.strokes([ring], 1.8, self.palette.ink, "hinge-arrow")
             self.sheet.axes.plot(*middle, "o", color=self.palette.ink, markersize=4.5, gid="hinge-arrow-head")
             return
         ray = 0.4 * azimuth_ray(self.hinge.trend_deg)
-        self._arrow(middle - ray, middle + ray, "hinge-arrow", both=self.hinge.plunge_deg < _FLAT_DEG)
+        self._arrow(middle - ray, middle + ray, "hinge-arrow", both=self.hinge.plunge_deg < FLAT_DEG)
 
 
 def _upright_sample(item: PlanPlane) -> PlanPlane:
