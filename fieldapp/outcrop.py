@@ -24,7 +24,7 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from analysis.errors import HingewiseError
-from analysis.files.reading import checked_name
+from analysis.files.checked import checked_name
 from analysis.orient.features import Feature
 from analysis.orient.north import north_correction
 from fieldapp.draft import Key

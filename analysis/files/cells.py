@@ -12,9 +12,7 @@ import re
 from datetime import datetime
 
 from analysis.errors import ReadingError
-from analysis.files.columns import Column, Kind
-from analysis.files.faults import shown
-from analysis.files.reading import (
+from analysis.files.checked import (
     checked_name,
     checked_number,
     checked_text,
@@ -22,6 +20,8 @@ from analysis.files.reading import (
     checked_whole,
     checked_word,
 )
+from analysis.files.columns import Column, Kind
+from analysis.files.faults import shown
 from analysis.files.taken import TRUE_WORDS, taken_for_another
 
 CellValue = str | float | int | bool | datetime | tuple[str, ...] | None

@@ -13,6 +13,7 @@ import pandas as pd
 
 from analysis.errors import ReadingError
 from analysis.files.cells import cell_value, unguarded
+from analysis.files.checked import with_plain_line_ends
 from analysis.files.columns import DIP_DIRECTION, MAX_NAME, QUADRANTS, Column, Kind
 from analysis.files.held import (
     NO_TIME,
@@ -26,7 +27,7 @@ from analysis.files.held import (
     is_coded,
     stored,
 )
-from analysis.files.reading import QUADRANT_FITS_DEG, with_plain_line_ends
+from analysis.files.reading import QUADRANT_FITS_DEG
 from analysis.files.rows import SAME_STRIKE_DEG
 
 if TYPE_CHECKING:

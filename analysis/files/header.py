@@ -9,9 +9,9 @@ from dataclasses import dataclass
 
 from analysis.errors import CsvError, ReadingError
 from analysis.files.cells import unguarded
+from analysis.files.checked import checked_name
 from analysis.files.columns import BY_NAME, DIP_DIRECTION, Column
 from analysis.files.faults import shown
-from analysis.files.reading import checked_name
 
 MAX_COLUMNS = 1000
 DELIMITERS = (",", ";", "\t")
