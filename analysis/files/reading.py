@@ -39,6 +39,7 @@ from analysis.orient.righthand import ALONG_STRIKE_DEG
 
 if TYPE_CHECKING:
     from datetime import datetime
+
     from analysis.orient.vectors import Floats
 
 MAX_OTHER_TEXT = 200_000  # characters in all the unknown columns of one reading together
