@@ -9,7 +9,7 @@ from datetime import UTC, datetime
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from analysis.errors import CsvError
@@ -60,6 +60,9 @@ def test_round_trip_through_a_spreadsheet(any_reading, read, data):
 
     out = io.StringIO(newline="")
     quoting = data.draw(st.sampled_from([csv.QUOTE_MINIMAL, csv.QUOTE_ALL]))
+    # A last name that ends in a semicolon without quotes is refused: it cannot be told from a file whose rows a
+    # spreadsheet took for one cell each. Our own writer puts it in quotes.
+    assume(delimiter != "," or quoting == csv.QUOTE_ALL or not header[order[-1]].rstrip().endswith(";"))
     ending = data.draw(st.sampled_from(["\n", "\r\n"]))
     # The csv module of some Pythons does not quote the line end of another system, which no spreadsheet does.
     writer = csv.writer(out, delimiter=delimiter, quoting=quoting, lineterminator="\r\n")
@@ -78,6 +81,13 @@ def test_header_is_that_of_the_design(read):
     text = text_of([bed(other={"sample": "7", "=cmd": "x"})])
     assert text.splitlines()[0] == ",".join(NAMES) + ",'=cmd,sample"
     assert read(text).other_names == ("=cmd", "sample")
+
+
+@pytest.mark.parametrize("name", [";", "sample;", "a;b"])
+def test_a_column_named_with_semicolons_is_written_and_read(read, name):
+    """A name that ends in a semicolon comes back from our own file, although it stands last."""
+    reading = bed(other={name: "7"})
+    assert read(text_of([reading])).readings() == [reading]
 
 
 def test_numbers_have_fixed_decimals():
