@@ -28,7 +28,7 @@ class Change(Flag):
     TABS = auto()  # page.tabs
     RECENT = auto()  # page.recent, page.standing
     CHECK = auto()  # page.check, page.outcrop_check, page.net, page.funnel
-    FORECAST = auto()  # page.funnel's dotted part
+    FORECAST = auto()  # the dotted part of page.funnel; in page.check the words on what is still to be read
     NAMED = auto()  # page.named
     PLAN = auto()  # page.plan
     SETTINGS = auto()  # page.settings

@@ -271,7 +271,7 @@ class PageCore:
     def _forecast_came(self, forecast: Forecast) -> None:
         if self._closed or not self._running.take_forecast(forecast.check, forecast.version):
             return
-        self._tell(Change.STRIP | Change.FORECAST | Change.CHECK)
+        self._tell(Change.STRIP | Change.FORECAST)
         self._say_verdict()
 
     # -- backups --------------------------------------------------------------------------------------------
