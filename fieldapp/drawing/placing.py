@@ -39,25 +39,14 @@ def place_beside(
     `taken` are boxes of other words and `points` (n, 2) the readings drawn; words are never put over other
     words or outside the bounds while another side is free.
     """
-    best: Box = (anchor[0], anchor[1], anchor[0] + size[0], anchor[1] + size[1])
-    least = np.inf
-    for ring in (1.0, 2.2, 3.6):
-        for order, (left_share, low_share) in enumerate(SIDES):
-            push_x = (0.5 - left_share) * 2.0 * gap * ring
-            push_y = (0.5 - low_share) * 2.0 * gap * ring
-            left = anchor[0] - left_share * size[0] + push_x
-            low = anchor[1] - low_share * size[1] + push_y
-            box = (left, low, left + size[0], low + size[1])
-            area = size[0] * size[1]
-            cost = 0.05 * order + 1.5 * (ring - 1.0)
-            cost += sum(WORDS_COST * overlap(box, other) / area for other in taken)
-            cost += OUTSIDE_COST * (1.0 - overlap(box, bounds) / area)
-            if len(points):
-                inside = np.all((points > box[:2]) & (points < box[2:]), axis=1)
-                cost += min(float(inside.sum()), 20.0)
-            if cost < least:
-                best, least = box, cost
-    return best
+    spans = np.array([size[0], size[1]], dtype=float)
+    rings = np.repeat((1.0, 2.2, 3.6), len(SIDES))[:, np.newaxis]
+    shares = np.tile(SIDES, (3, 1))
+    low = np.asarray(anchor) + (0.5 - shares) * 2.0 * gap * rings - shares * spans
+    cost = np.tile(0.05 * np.arange(len(SIDES)), 3) + 1.5 * (rings[:, 0] - 1.0)
+    cost += _covered(low, low + spans, taken=taken, points=points, bounds=bounds, most_points=20.0)
+    x, y = (float(edge) for edge in low[np.argmin(cost)])
+    return (x, y, x + float(spans[0]), y + float(spans[1]))
 
 
 def place_along(
@@ -99,7 +88,8 @@ def _covered(
     taken: Sequence[Box],
     points: npt.NDArray[np.float64],
     bounds: Box,
-    apart: float,
+    apart: float = 0.0,
+    most_points: float = np.inf,
 ) -> npt.NDArray[np.float64]:
     """What boxes with these corners (n, 2) cost for the words and points they cover and for leaving the bounds."""
     area = np.prod(high[0] - low[0])
@@ -116,7 +106,7 @@ def _covered(
             across, room = points[:, axis], 0.6 * apart * (axis == 0)
             inside &= across > low[:, axis, np.newaxis] - room
             inside &= across < high[:, axis, np.newaxis] + room
-        cost += inside.sum(axis=1)
+        cost += np.minimum(inside.sum(axis=1), most_points)
     return cost
 
 

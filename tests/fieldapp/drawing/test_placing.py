@@ -49,6 +49,14 @@ def test_words_keep_off_readings():
     assert not inside.any()
 
 
+def test_many_readings_never_push_words_over_other_words():
+    """However many readings lie wherever no words are, words are laid over those and not over words."""
+    taken = (52.0, 40.0, 100.0, 60.0)
+    spread = np.random.default_rng(2).uniform(0.0, 100.0, (20_000, 2))
+    points = spread[~np.all((spread > taken[:2]) & (spread < taken[2:]), axis=1)]
+    assert placing.overlap(place((50.0, 50.0), [taken], points), taken) == 0.0
+
+
 @pytest.mark.parametrize(
     ("span", "most", "step"), [(10, 5, 2), (10, 10, 1), (0.3, 3, 0.1), (100, 4, 50), (7, 1, 10)]
 )
