@@ -52,7 +52,8 @@ def spoil_textures():
     """Empty every texture of the window, as when its GL context is lost."""
     from kivy.graphics import opengl as gl
 
-    found = [number for number in range(1, 5000) if gl.glIsTexture(number)]
+    # Names count up from test to test; those of the window made last are the highest.
+    found = [number for number in range(1, 100_000) if gl.glIsTexture(number)]
     assert found
     for number in found:
         gl.glBindTexture(gl.GL_TEXTURE_2D, number)
