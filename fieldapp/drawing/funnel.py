@@ -200,7 +200,7 @@ class NarrowingFunnel(Widget):
             text = "settles about here" if near else f"settles near {scene.settles_at:.0f} →"
             words = PAINTS.words(text, size, bold=True)
             x = self.to_page(np.array([min(scene.settles_at, last)]), np.zeros(1))[0][0] - words.width - dp(6)
-            x = max(x, left + dp(4))
+            x = min(max(x, left + dp(4)), self.right - words.width)
             red, green, blue, _ = theme.card
             y = top - words.height - dp(2)
             group.add(Color(red, green, blue, 0.8))

@@ -11,13 +11,12 @@ from kivy.metrics import dp
 from kivy.properties import BooleanProperty, ListProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
-from kivy.uix.scrollview import ScrollView
 
 from fieldapp.drawing.funnel import NarrowingFunnel
 from fieldapp.drawing.net import EqualAreaNet
 from fieldapp.drawing.plan import PlanSketch
 from fieldapp.leaves import load_kv, scenes
-from fieldapp.leaves.parts import Choice
+from fieldapp.leaves.parts import Choice, Scrolled
 from fieldapp.look.form import TOUCH_DP
 from fieldapp.states import Change
 
@@ -242,14 +241,14 @@ class CheckLeaf(FloatLayout):
             one.size_hint_y = None
         return words
 
-    def _scrolled(self, column: BoxLayout) -> ScrollView:
+    def _scrolled(self, column: BoxLayout) -> Scrolled:
         column.size_hint_y = None
         column.bind(minimum_height=column.setter("height"))
-        scroll = ScrollView(do_scroll_x=False, bar_width=dp(5), scroll_type=["bars", "content"])
+        scroll = Scrolled()
         scroll.add_widget(column)
         return scroll
 
-    def _column(self, form: Form) -> ScrollView:
+    def _column(self, form: Form) -> Scrolled:
         """Portrait: picture, means, funnel and words below one another."""
         edge, gap = dp(form.edge_dp), dp(form.gap_dp)
         column = BoxLayout(orientation="vertical", padding=(edge, gap, edge, gap), spacing=gap)
@@ -281,7 +280,7 @@ class CheckLeaf(FloatLayout):
         top = BoxLayout(spacing=gap * 2)
         self._picture_box.size_hint_x = 0.58
         top.add_widget(self._picture_box)
-        side = BoxLayout(orientation="vertical", spacing=gap)
+        side = BoxLayout(orientation="vertical", spacing=gap, padding=(0, 0, dp(10), 0))  # clear of the bar
         self.funnel.size_hint_y = None
         self.funnel.height = dp(max(form.log_height_dp * 0.42, 150))
         if form.low:

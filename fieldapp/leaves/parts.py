@@ -17,6 +17,7 @@ from kivy.uix.behaviors import ButtonBehavior
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
 from kivy.uix.label import Label
+from kivy.uix.scrollview import ScrollView
 
 from fieldapp.drawing.signs import Marker, Sign  # noqa: F401 - the .kv files use them
 from fieldapp.leaves import load_kv
@@ -62,6 +63,9 @@ class Words(Label):
                 break
             share *= SHRINK
         self.shown_share = share
+        if self.texture is not None:
+            # Kivy lays it texel on pixel: the nearest texel is the right one, and cheaper than a mixture of four.
+            self.texture.min_filter = self.texture.mag_filter = "nearest"
 
     def _fits(self) -> bool:
         wide, high = self.texture_size
@@ -94,6 +98,16 @@ class SignKey(ButtonBehavior, BoxLayout):
     text = StringProperty("")
     look = StringProperty("plain")
     sign_dp = NumericProperty(22.0)
+
+
+class Scrolled(ScrollView):
+    """A column that is moved up and down with the finger or by its bar, by whole pixels so that all stays crisp."""
+
+    def update_from_scroll(self, *args: object) -> None:
+        """Move the column to where it is scrolled to."""
+        super().update_from_scroll(*args)
+        x, y = self.g_translate.xy
+        self.g_translate.xy = round(x), round(y)
 
 
 class Sheet(FloatLayout):
