@@ -377,9 +377,9 @@ def _record_end(text: bytes, start: int, delimiter: bytes, end_byte: bytes) -> t
 
 
 def _has_line_end(part: bytes, end_byte: bytes) -> bool:
-    """Whether a line end stands in a line, other than at its end."""
+    """Whether a line end stands in a line, or in a part of it, other than at the line's own end."""
     inner = part.removesuffix(end_byte)
-    if end_byte == b"\n":
+    if end_byte == b"\n" and len(inner) < len(part):
         inner = inner.removesuffix(b"\r")
     return b"\r" in inner or b"\n" in inner
 

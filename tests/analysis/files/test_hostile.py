@@ -209,6 +209,7 @@ PIECES = [
 @example(b'"', True, 1)
 @example(b"\r", True, 1)
 @example(b"bedding,1,1,\r", True, 1)
+@example(b'\r,1"\n', True, 10_000)
 def test_any_bytes_are_read_or_refused(read, content, with_header, block):
     """Any bytes give readings and faults, or a CsvError; what was read can be written and read again."""
     with pytest.MonkeyPatch.context() as patched:
@@ -223,6 +224,14 @@ def test_any_bytes_are_read_or_refused(read, content, with_header, block):
     again = read("".join(csv_text(table)))
     assert again.readings() == readings
     assert not again.faults
+
+
+@pytest.mark.parametrize("cell", [b"\r", b"a\r"])
+def test_a_stray_line_end_before_a_separator_spoils_its_own_row_only(read, cell):
+    """A carriage return ends a cell in a row with a quote out of place; found by the coverage-guided fuzzer."""
+    table = read(PLANES.encode() + cell + b',1"\n' + GOOD.encode())
+    assert (len(table), table.faulty_rows) == (1, 1)
+    assert "out of place" in table.faults[0].found
 
 
 @pytest.mark.parametrize("digits", ["3" + "5" * 34, "18446744073709551615", "9223372036854775808"])
