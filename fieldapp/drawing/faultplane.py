@@ -15,7 +15,7 @@ from kivy.uix.widget import Widget
 
 from fieldapp.drawing import placing, strokes
 from fieldapp.drawing.faultscene import DASHES, WIDTHS_DP, cut_area, cut_line, lonely, spaced
-from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.paint import PAINTS, add_fill, add_mesh, add_words
 from fieldapp.look.theme import LIGHT
 
 if TYPE_CHECKING:
@@ -139,7 +139,7 @@ class FaultPlane(Widget):
     def _draw_frame(self, group: InstructionGroup) -> None:
         theme, scene = self.theme, self.scene
         left, bottom, right, top = self._box
-        add_mesh(
+        add_fill(
             group, theme.card, [strokes.polygon([(left, bottom), (right, bottom), (right, top), (left, top)])]
         )
         low, high = scene.y_range_deg
@@ -237,7 +237,7 @@ class FaultPlane(Widget):
             outline = self.to_page(scene.ellipse)
             red, green, blue, _ = theme.ink
             inside = cut_area(outline[:-1], self._box)
-            add_mesh(group, (red, green, blue, 0.09), [strokes.polygon(inside)])
+            add_fill(group, (red, green, blue, 0.09), [strokes.polygon(inside)])
             add_mesh(group, theme.ink, [strokes.line(part, dp(1.4)) for part in cut_line(outline, self._box)])
             # Words keep off the outline and off the middle; the far parts of a wide ellipse they may cover.
             keep_off += [spaced(outline, dp(6)), centre + 0.4 * (outline - centre)]

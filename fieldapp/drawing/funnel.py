@@ -12,7 +12,7 @@ from kivy.properties import NumericProperty, ObjectProperty
 from kivy.uix.widget import Widget
 
 from fieldapp.drawing import placing, strokes
-from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.paint import PAINTS, add_fill, add_mesh, add_words, on_pixels
 from fieldapp.drawing.scene import FunnelScene
 from fieldapp.look.theme import LIGHT
 
@@ -103,10 +103,9 @@ class NarrowingFunnel(Widget):
         band = self.to_page(
             np.array([first, first, last, last]), np.array([-margin, margin, margin, -margin])
         )
-        add_mesh(
-            group, theme.card, [strokes.polygon([(left, bottom), (right, bottom), (right, top), (left, top)])]
-        )
-        add_mesh(group, theme.band, [strokes.polygon(band)])
+        ground = [(left, bottom), (right, bottom), (right, top), (left, top)]
+        add_fill(group, theme.card, [strokes.polygon(ground)])
+        add_fill(group, theme.band, [strokes.polygon(band)])
         zero = self.to_page(np.array([first, last]), np.zeros(2))
         edges = [strokes.line([(left, top), (left, bottom), (right, bottom)], dp(1.2))]
         line = sp(self.words_sp) * 1.35
@@ -141,7 +140,7 @@ class NarrowingFunnel(Widget):
         if known.any():
             upper = self.to_page(scene.counts[known], scene.high_deg[known])
             lower = self.to_page(scene.counts[known], scene.low_deg[known])
-            add_mesh(group, theme.shade, [strokes.between(upper, lower)])
+            add_fill(group, theme.shade, [strokes.between(upper, lower)])
             add_mesh(group, theme.accent, [strokes.line(upper, dp(2)), strokes.line(lower, dp(2))])
             # The angle is never shown without its interval.
             middle = self.to_page(scene.counts[known], scene.delta_deg[known])
@@ -149,9 +148,8 @@ class NarrowingFunnel(Widget):
             dots = middle if len(middle) <= MOST_DOTS else middle[-1:]
             size = round(dp(8))
             group.add(Color(*theme.ink))
-            group.add(
-                Point(points=dots.ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size))
-            )
+            points = on_pixels(dots, size).ravel().tolist()
+            group.add(Point(points=points, pointsize=size / 2.0, texture=PAINTS.marker("disc", size)))
 
     def _draw_forecast(self, group: InstructionGroup) -> None:
         scene, theme = self.scene, self.theme

@@ -36,6 +36,9 @@ def _texture_of(rgba: np.ndarray) -> Texture:
     data = rgba.tobytes()
     texture = Texture.create(size=(rgba.shape[1], rgba.shape[0]), colorfmt="rgba")
 
+    # Cards and markers are drawn texel on pixel, or stretched where all texels are alike.
+    texture.mag_filter = texture.min_filter = "nearest"
+
     def fill(target: Texture) -> None:
         target.blit_buffer(data, colorfmt="rgba", bufferfmt="ubyte")
 
@@ -113,6 +116,7 @@ class Paints:
                 text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1)
             )
             label.refresh()
+            label.texture.mag_filter = label.texture.min_filter = "nearest"
             self._words[key] = label
         return label.texture
 
@@ -150,8 +154,24 @@ def marker_alpha(shape: str, size: int) -> np.ndarray:
     return np.asarray(alpha * 255.0, dtype=np.uint8)
 
 
+def on_pixels(places: np.ndarray, size: int) -> np.ndarray:
+    """Move middles (n, 2) so that a texture of this size lies texel on pixel there."""
+    return np.asarray(np.floor(places - size / 2.0 + 0.5) + size / 2.0)
+
+
 def add_mesh(group: InstructionGroup, colour: Rgba, parts: Iterable[strokes.Triangles]) -> None:
     """Add lines and fills of one colour as few meshes as 16-bit indices allow."""
+    _add(group, colour, parts, PAINTS.edge())
+
+
+def add_fill(group: InstructionGroup, colour: Rgba, parts: Iterable[strokes.Triangles]) -> None:
+    """Add fills alone of one colour: they need no soft edge, and cost less without."""
+    _add(group, colour, parts, None)
+
+
+def _add(
+    group: InstructionGroup, colour: Rgba, parts: Iterable[strokes.Triangles], texture: Texture | None
+) -> None:
     waiting: list[strokes.Triangles] = []
     size = 0
 
@@ -164,7 +184,7 @@ def add_mesh(group: InstructionGroup, colour: Rgba, parts: Iterable[strokes.Tria
                     vertices=mesh.vertices.ravel(),
                     indices=mesh.indices,
                     mode="triangles",
-                    texture=PAINTS.edge(),
+                    texture=texture,
                 )
             )
 

@@ -22,7 +22,7 @@ from kivy.uix.widget import Widget
 from analysis.orient.features import Feature
 from analysis.orient.forms import azimuth_text, inclination_text
 from fieldapp.drawing import placing, strokes
-from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.paint import PAINTS, add_fill, add_mesh, add_words
 from fieldapp.drawing.scene import PlanOutcrop, PlanPlane, PlanScene
 from fieldapp.look.theme import LIGHT
 
@@ -125,7 +125,7 @@ class PlanSketch(Widget):
         group.clear()
         self.words_boxes, self._places = {}, {}
         corners = [(self.x, self.y), (self.right, self.y), (self.right, self.top), (self.x, self.top)]
-        add_mesh(group, theme.card, [strokes.polygon(corners)])
+        add_fill(group, theme.card, [strokes.polygon(corners)])
         add_mesh(group, theme.rule, [strokes.line(corners, dp(1.2), closed=True)])
         self._draw_north(group)
         if not scene.outcrops:
