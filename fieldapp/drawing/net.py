@@ -17,7 +17,7 @@ from kivy.uix.widget import Widget
 
 from analysis.orient import curves, vectors
 from fieldapp.drawing import placing, strokes
-from fieldapp.drawing.paint import PAINTS, add_mesh, add_words
+from fieldapp.drawing.paint import PAINTS, add_fill, add_mesh, add_words, on_pixels
 from fieldapp.drawing.scene import LETTERS, MARKERS, Mean, NetScene
 from fieldapp.look.theme import LIGHT
 
@@ -108,7 +108,7 @@ class EqualAreaNet(Widget):
         group, theme, radius = self._frame, self.theme, self.radius
         group.clear()
         rim = strokes.circle(self.middle, radius)
-        add_mesh(group, theme.card, [strokes.polygon(rim)])
+        add_fill(group, theme.card, [strokes.polygon(rim)])
         centre = np.array(self.middle)
         turns = np.radians(np.arange(0, 360, 10))
         rays = np.stack([np.sin(turns), np.cos(turns)], axis=1)
@@ -171,9 +171,10 @@ class EqualAreaNet(Widget):
             texture = PAINTS.marker(MARKERS[feature], size)
             # Readings of other outcrops stay in the picture, softer.
             for part, alpha in ((~points.here, 0.5), (points.here, 1.0)):
-                chosen = places[part]
-                if not len(chosen):
+                if not part.any():
                     continue
+                # What would lie on the same pixels is drawn once; each can be touched.
+                chosen = np.unique(on_pixels(places[part], size), axis=0)
                 group.add(Color(red, green, blue, alpha))
                 for start in range(0, len(chosen), MOST_POINTS):
                     batch = chosen[start : start + MOST_POINTS]
@@ -192,11 +193,8 @@ class EqualAreaNet(Widget):
         red, green, blue, _ = self.theme.accent
         group.add(Color(red, green, blue, 0.8))
         size = round(dp(5))
-        group.add(
-            Point(
-                points=places[:-1].ravel().tolist(), pointsize=size / 2.0, texture=PAINTS.marker("disc", size)
-            )
-        )
+        dots = on_pixels(places[:-1], size).ravel().tolist()
+        group.add(Point(points=dots, pointsize=size / 2.0, texture=PAINTS.marker("disc", size)))
 
     def _draw_mean(self, group: InstructionGroup, name: str, mean: Mean, colour: Rgba, shape: str) -> None:
         place = self.to_page(mean.vector[np.newaxis, :])[0]
@@ -210,7 +208,7 @@ class EqualAreaNet(Widget):
             self._outlines.extend(pieces)
             if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
                 red, green, blue, _ = colour
-                add_mesh(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
+                add_fill(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
             # An ellipse that says little more than "somewhere here" stays in the background.
             red, green, blue, _ = colour
             strength = 1.0 if e.major_deg < WIDE_DEG else 0.4
