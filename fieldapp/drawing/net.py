@@ -22,6 +22,8 @@ from fieldapp.drawing.scene import LETTERS, MARKERS, Mean, NetScene
 from fieldapp.look.theme import LIGHT
 
 if TYPE_CHECKING:
+    from kivy.graphics.texture import Texture
+
     from analysis.orient.features import Feature
     from fieldapp.look.theme import Rgba
 
@@ -199,34 +201,32 @@ class EqualAreaNet(Widget):
     def _draw_mean(self, group: InstructionGroup, name: str, mean: Mean, colour: Rgba, shape: str) -> None:
         place = self.to_page(mean.vector[np.newaxis, :])[0]
         self._means[name] = place
+        middle = np.round(place)
+        size = 2 * round(dp(self.marker_dp * (1.0 if shape == "disc" else 1.6)) / 2.0)
+
+        def stamp(tint: Rgba, *textures: Texture) -> None:
+            group.add(Color(*tint))
+            for texture in textures:
+                corner = middle - texture.width / 2.0
+                group.add(Rectangle(texture=texture, pos=tuple(corner), size=texture.size))
+
+        stamp(self.theme.card, PAINTS.marker("disc", size + 2 * round(dp(2))))
         if mean.ellipse is not None:
-            e = mean.ellipse
-            curve = curves.ellipse(
-                mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg, ARC_POINTS
-            )
-            pieces = [self._curve(piece) for piece in curves.lower_pieces(curve)]
-            self._outlines.extend(pieces)
-            if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
-                red, green, blue, _ = colour
-                add_fill(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
-            # An ellipse that says little more than "somewhere here" stays in the background.
-            red, green, blue, _ = colour
-            strength = 1.0 if e.major_deg < WIDE_DEG else 0.4
-            add_mesh(group, (red, green, blue, strength), [strokes.line(piece, dp(2)) for piece in pieces])
-        size = round(dp(self.marker_dp * (1.15 if shape == "disc" else 1.6)))
-        ground = PAINTS.marker("disc", size + round(dp(4)))
-        half = ground.width / 2.0
-        group.add(Color(*self.theme.card))
-        group.add(Rectangle(texture=ground, pos=(place[0] - half, place[1] - half), size=ground.size))
-        group.add(Color(*colour))
-        texture = PAINTS.marker(shape, size)
-        group.add(
-            Rectangle(texture=texture, pos=(place[0] - size / 2.0, place[1] - size / 2.0), size=(size, size))
-        )
-        if shape == "diamond":
-            inner = PAINTS.marker("disc", round(size * 0.34))
-            half = inner.width / 2.0
-            group.add(Rectangle(texture=inner, pos=(place[0] - half, place[1] - half), size=inner.size))
+            self._draw_ellipse(group, mean, colour)
+        inner = [PAINTS.marker("disc", 2 * round(size * 0.17))] if shape == "diamond" else []
+        stamp(colour, PAINTS.marker(shape, size), *inner)
+
+    def _draw_ellipse(self, group: InstructionGroup, mean: Mean, colour: Rgba) -> None:
+        e = mean.ellipse
+        curve = curves.ellipse(mean.vector, e.major_axis, e.minor_axis, e.major_deg, e.minor_deg, ARC_POINTS)
+        pieces = [self._curve(piece) for piece in curves.lower_pieces(curve)]
+        self._outlines.extend(pieces)
+        red, green, blue, _ = colour
+        if len(pieces) == 1 and max(e.major_deg, e.minor_deg) < 60.0:
+            add_fill(group, (red, green, blue, 0.13), [strokes.polygon(pieces[0])])
+        # An ellipse that says little more than "somewhere here" stays in the background.
+        strength = 1.0 if e.major_deg < WIDE_DEG else 0.4
+        add_mesh(group, (red, green, blue, strength), [strokes.line(piece, dp(2)) for piece in pieces])
 
     def _draw_chosen(self, group: InstructionGroup) -> None:
         if self.scene.chosen_key in self._keys:
