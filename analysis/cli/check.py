@@ -24,7 +24,17 @@ from analysis.cli.common import (
 from analysis.fold.check import check_fold
 from analysis.fold.outliers import find_outliers
 from analysis.fold.settings import CheckSettings
-from analysis.fold.words import degrees, figure_line, headline, line_text, more, plane_text, turned
+from analysis.fold.words import (
+    counted,
+    degrees,
+    ellipse_text,
+    figure_line,
+    headline,
+    line_text,
+    more,
+    plane_text,
+    turned,
+)
 from analysis.orient.features import Feature
 from analysis.stats.descriptors import shape, share_near_girdle
 from analysis.stats.sums import FEATURES
@@ -137,13 +147,11 @@ def text_of(check: FoldCheck, bedding: Floats | None = None) -> str:
     lines = [check.fold or "(unnamed fold)", f"  {headline(check)}", f"  {figure_line(check)}", ""]
     counts = check.readings
     read = ", ".join(f"{counts.of(feature)} {feature}" for feature in Feature)
-    lines.append(
-        _row("Readings", f"{read}, at {counts.outcrops} outcrop{'' if counts.outcrops == 1 else 's'}")
-    )
+    lines.append(_row("Readings", f"{read}, at {counted(counts.outcrops, 'outcrop')}"))
     if check.hinge is not None:
         lines.append(_row("Hinge", f"{_line(check.hinge)}, from {check.hinge.source}"))
     if check.cleavage is not None:
-        lines.append(_row("Cleavage", f"{plane_text(check.cleavage.plane)}{_ellipse(check.cleavage)}"))
+        lines.append(_row("Cleavage", f"{plane_text(check.cleavage.plane)}{ellipse_text(check.cleavage)}"))
     if check.intersection is not None:
         mean = check.intersection
         lines.append(
@@ -187,10 +195,4 @@ def _row(name: str, text: str) -> str:
 
 
 def _line(axis: AxisEstimate) -> str:
-    return f"{line_text(axis.line)}{_ellipse(axis)}"
-
-
-def _ellipse(axis: AxisEstimate) -> str:
-    if axis.ellipse is None:
-        return ""
-    return f" (±{degrees(axis.ellipse.major_deg)} by ±{degrees(axis.ellipse.minor_deg)})"
+    return f"{line_text(axis.line)}{ellipse_text(axis)}"

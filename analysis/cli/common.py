@@ -13,6 +13,7 @@ import click
 import numpy as np
 
 from analysis.errors import HingewiseError, SettingError
+from analysis.fold.words import counted
 from analysis.stats.sums import FEATURES, RunningSums
 
 if TYPE_CHECKING:
@@ -263,11 +264,6 @@ def axes_by_feature(table: ReadingTable) -> dict[Feature, np.ndarray[Any, np.dty
     return dict(
         zip(FEATURES, np.split(axes, np.searchsorted(codes, np.arange(1, len(FEATURES)))), strict=True)
     )
-
-
-def counted(count: int, word: str) -> str:
-    """A number with its word, in the plural where there is not one."""
-    return f"{count} {word}{'' if count == 1 else 's'}"
 
 
 def write_map(output: Path, layers: list[MapLayer], tables: dict[str, pd.DataFrame] | None = None) -> None:

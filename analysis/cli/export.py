@@ -9,7 +9,6 @@ import numpy as np
 
 from analysis.cli.check import check_table
 from analysis.cli.common import (
-    counted,
     files_argument,
     fold_options,
     no_such,
@@ -22,6 +21,7 @@ from analysis.cli.common import (
 )
 from analysis.errors import SettingError
 from analysis.fold.settings import CheckSettings
+from analysis.fold.words import counted
 
 if TYPE_CHECKING:
     from pathlib import Path

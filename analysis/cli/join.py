@@ -6,7 +6,8 @@ from pathlib import Path
 
 import click
 
-from analysis.cli.common import counted, file_to_write, output_option, read_files, strict_option
+from analysis.cli.common import file_to_write, output_option, read_files, strict_option
+from analysis.fold.words import counted
 
 
 @click.command("join")

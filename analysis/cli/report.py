@@ -17,7 +17,6 @@ from analysis.cli.check import check_table
 from analysis.cli.common import (
     axes_by_feature,
     chosen_folds,
-    counted,
     files_argument,
     fold_options,
     output_option,
@@ -33,6 +32,7 @@ from analysis.errors import SettingError
 from analysis.files.atomic import whole_file
 from analysis.fold.outliers import find_outliers
 from analysis.fold.settings import CheckSettings
+from analysis.fold.words import counted
 from analysis.stats.sums import FEATURES
 from analysis.strain.frame import Sense
 

@@ -9,7 +9,6 @@ from typing import TYPE_CHECKING
 import click
 
 from analysis.cli.common import (
-    counted,
     nothing_stands,
     output_option,
     say_left_out,
@@ -18,6 +17,7 @@ from analysis.cli.common import (
 )
 from analysis.errors import SettingError
 from analysis.fold.settings import CheckSettings
+from analysis.fold.words import counted
 
 if TYPE_CHECKING:
     from analysis.survey.run import Survey

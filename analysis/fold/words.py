@@ -9,7 +9,7 @@ from analysis.orient.features import Feature
 from analysis.orient.forms import azimuth_text, inclination_text
 
 if TYPE_CHECKING:
-    from analysis.fold.records import FoldCheck, MoreReadings
+    from analysis.fold.records import AxisEstimate, FoldCheck, MoreReadings
     from analysis.orient.attitudes import Line, Plane
 
 _PLURAL = {
@@ -34,6 +34,18 @@ def plane_text(plane: Plane) -> str:
 def line_text(line: Line) -> str:
     """Write a line as trend/plunge, to whole degrees: '040/20'."""
     return f"{azimuth_text(line.trend_deg)}/{inclination_text(line.plunge_deg)}"
+
+
+def ellipse_text(axis: AxisEstimate) -> str:
+    """Write the half axes of an axis' ellipse to stand behind it: ' (±4° by ±2.8°)'; nothing where there is none."""
+    if axis.ellipse is None:
+        return ""
+    return f" (±{degrees(axis.ellipse.major_deg)} by ±{degrees(axis.ellipse.minor_deg)})"
+
+
+def counted(number: int, word: str) -> str:
+    """Write a number with its word, in the plural where it is not one: '3 readings'."""
+    return f"{number} {word}{'' if number == 1 else 's'}"
 
 
 def turned(value: float, *, signed: bool = True) -> str:

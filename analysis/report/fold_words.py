@@ -7,7 +7,9 @@ from typing import TYPE_CHECKING, Final
 from analysis.fold.words import (
     against_hinge,
     between,
+    counted,
     degrees,
+    ellipse_text,
     figure_line,
     headline,
     line_text,
@@ -30,7 +32,7 @@ from analysis.report.sheet import verdict_sign
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
-    from analysis.fold.records import AxisEstimate, FoldCheck
+    from analysis.fold.records import FoldCheck
     from analysis.report.blocks import Block
     from analysis.report.campaign import FoldPart
 
@@ -85,15 +87,15 @@ def _facts(check: FoldCheck) -> Iterator[tuple[str, str]]:
     signed = check.sense != "unsigned"
     counts = check.readings
     read = ", ".join(f"{counts.of(feature)} {feature}" for feature in Feature)
-    yield "Readings", f"{read}; at {counts.outcrops} outcrop{'' if counts.outcrops == 1 else 's'}"
+    yield "Readings", f"{read}; at {counted(counts.outcrops, 'outcrop')}"
     if check.hinge is not None:
-        yield "Hinge", f"{line_text(check.hinge.line)}{_ellipse(check.hinge)}, from {check.hinge.source}"
+        yield "Hinge", f"{line_text(check.hinge.line)}{ellipse_text(check.hinge)}, from {check.hinge.source}"
     if check.cleavage is not None:
-        yield "Mean cleavage", f"{plane_text(check.cleavage.plane)}{_ellipse(check.cleavage)}"
+        yield "Mean cleavage", f"{plane_text(check.cleavage.plane)}{ellipse_text(check.cleavage)}"
     if check.intersection is not None:
         mean = check.intersection
         numbers = f"{mean.measured} measured, {mean.computed} computed"
-        yield "Mean intersection", f"{line_text(mean.axis.line)}{_ellipse(mean.axis)}, {numbers}"
+        yield "Mean intersection", f"{line_text(mean.axis.line)}{ellipse_text(mean.axis)}, {numbers}"
     if check.transection_deg is not None and check.interval_deg is not None:
         figure = against_hinge(check.transection_deg, signed=signed)
         yield "Transection", f"{figure}, {between(*check.interval_deg, signed=signed)}"
@@ -115,12 +117,6 @@ def _facts(check: FoldCheck) -> Iterator[tuple[str, str]]:
         yield "Forecast", f"{more(m)}; likely between {m.low} and {m.high} in all"
     if check.next_reading is not None:
         yield "Read next", cut(f"{check.next_reading.feature}, {check.next_reading.where}")
-
-
-def _ellipse(axis: AxisEstimate) -> str:
-    if axis.ellipse is None:
-        return ""
-    return f" (±{degrees(axis.ellipse.major_deg)} by ±{degrees(axis.ellipse.minor_deg)})"
 
 
 def _net_seen(check: FoldCheck) -> str:

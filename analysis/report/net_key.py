@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from analysis.fold.words import counted
 from analysis.orient.features import Feature
 from analysis.orient.forms import Notation
 from analysis.orient.notation import write
@@ -40,12 +41,8 @@ class NetKey:
             "" if hinge is None else sources.get(hinge.source, f"from {hinge.source}"),
             hinge,
         )
-        planes = f"from {counts.cleavage} plane{'' if counts.cleavage == 1 else 's'}"
-        lines = (
-            f" and {counts.intersection} line{'' if counts.intersection == 1 else 's'}"
-            if counts.intersection
-            else ""
-        )
+        planes = f"from {counted(counts.cleavage, 'plane')}"
+        lines = f" and {counted(counts.intersection, 'line')}" if counts.intersection else ""
         self._figure(
             y - 1.1,
             "Mean cleavage, strike/dip",

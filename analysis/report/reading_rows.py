@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
+from analysis.fold.words import counted
 from analysis.orient.entrychecks import EntryCheck
 from analysis.orient.features import Feature
 from analysis.orient.forms import azimuth_text, inclination_text
@@ -49,7 +50,7 @@ def readings_table(part: FoldPart) -> Table:
         rows.sort(key=lambda row: _time(row[0]))
     total = len(part.table) + len(part.struck)
     struck = f", {len(part.struck)} of them struck out" if part.struck else ""
-    caption = f"{total} reading{'' if total == 1 else 's'}{struck}"
+    caption = f"{counted(total, 'reading')}{struck}"
     if total > len(rows):
         caption += f"; the first {len(rows)} are listed, all are used"
     listed = tuple(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -15,7 +16,9 @@ from analysis.fold.settings import CheckSettings
 from analysis.fold.words import (
     against_hinge,
     between,
+    counted,
     degrees,
+    ellipse_text,
     figure_line,
     headline,
     line_text,
@@ -24,8 +27,9 @@ from analysis.fold.words import (
     turned,
 )
 from analysis.orient.attitudes import Line, Plane
+from analysis.orient.features import Feature
 from analysis.stats.sums import RunningSums
-from analysis.stats.synthetic import FoldDesign
+from analysis.stats.synthetic import FoldDesign, draw
 
 
 @pytest.mark.parametrize(
@@ -36,6 +40,24 @@ from analysis.stats.synthetic import FoldDesign
 def test_degrees(value, text):
     """Angles below ten have a tenth, others none; no sign, and no minus zero."""
     assert degrees(value) == text
+
+
+def test_counts_have_their_plural():
+    """Only one is singular; none is not."""
+    assert [counted(number, "reading") for number in (0, 1, 2)] == ["0 readings", "1 reading", "2 readings"]
+
+
+def test_an_ellipse_stands_behind_its_axis_once_there_is_one():
+    """Half axes are given, the longer first; an axis without an ellipse has no words for one."""
+    design = FoldDesign(hinge_trend_deg=40.0, hinge_plunge_deg=10.0)
+    sums = RunningSums()
+    for vector in draw(design, 12, 1, np.random.default_rng(1)).bedding[0]:
+        sums.add(Feature.BEDDING, "A", vector)
+    hinge = check_fold(sums, CheckSettings()).hinge
+    major, minor = hinge.ellipse.major_deg, hinge.ellipse.minor_deg
+    assert major >= minor > 0.0
+    assert ellipse_text(hinge) == f" (±{degrees(major)} by ±{degrees(minor)})"
+    assert ellipse_text(replace(hinge, ellipse=None)) == ""
 
 
 @given(st.floats(-90, 90))
