@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
-from analysis.fold.words import between, degrees, turned
+from analysis.fold.words import between, counted, degrees, turned
 from analysis.orient.features import Feature
 from analysis.report import method_words
 from analysis.report.blocks import Column, Points, Report, Row, Section, Table, Typed, Words, cut
@@ -46,7 +46,7 @@ def contents(campaign: Campaign, progress: Callable[[float], None] | None = None
 def _head(campaign: Campaign) -> Iterator[str]:
     folds = len(campaign.folds)
     total = sum(len(part.table) for part in campaign.folds)
-    line = f"{folds} fold{'' if folds == 1 else 's'}, {total} reading{'' if total == 1 else 's'}"
+    line = f"{counted(folds, 'fold')}, {counted(total, 'reading')}"
     observers: set[str] = set()
     days: set[str] = set()
     for part in campaign.folds:
@@ -69,10 +69,10 @@ def _summary(campaign: Campaign) -> Section:
         columns = (
             Column("Fold", 20),
             Column("Verdict", 14),
-            Column("Transection", 16),
-            Column("Interval", 20),
+            Column("Transection", 15),
+            Column("Interval", 19),
             *(Column(LETTERS[feature], 6.5, figures=True) for feature in Feature),
-            Column("Outcrops", 10, figures=True),
+            Column("Outcrops", 12, figures=True),
         )
         letters = ", ".join(f"{LETTERS[feature]} {NAMES[feature]}" for feature in Feature)
         caption = (
@@ -88,7 +88,7 @@ def _summary(campaign: Campaign) -> Section:
         blocks.append(Words("No readings stand in these files."))
     if campaign.struck_only:
         gone = (
-            f"{name or UNNAMED}: {number} reading{'' if number == 1 else 's'}, all struck out"
+            f"{name or UNNAMED}: {counted(number, 'reading')}, all struck out"
             for name, number in campaign.struck_only.items()
         )
         blocks.append(Points(tuple(gone), title="Folds of which no reading stands"))

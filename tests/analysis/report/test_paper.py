@@ -50,6 +50,16 @@ def test_pages_are_counted_and_named(pages):
         assert f"{number} of {len(pages)}" in text
 
 
+def test_no_heading_of_a_table_is_torn_within_a_word(pages):
+    """Columns are wide enough for the longest word above them."""
+    whole = " ".join(pages)
+    for heading in (
+        "Verdict Transection Interval B C L H Outcrops",
+        "Explanation Predicted transection Shear strain",
+    ):
+        assert heading in whole
+
+
 def test_it_says_what_the_page_says(pages):
     """Verdicts, struck-out readings, warnings kept, hostile notes, cautions, method and command are all there."""
     whole = " ".join(pages)
