@@ -13,6 +13,7 @@ from analysis.fold.ahead import interval_ahead
 from analysis.fold.records import Verdict
 from analysis.fold.words import degrees
 from analysis.orient.features import Feature
+from analysis.report.labels import put_words
 from analysis.report.palette import palette_named
 from analysis.report.placing import Box, Placer
 from analysis.report.sheet import Sheet, house_style
@@ -343,36 +344,17 @@ class _Funnel:
         self._put(text, self._pixels([at], y), gid)
 
     def _put(self, text: str, anchors: Floats, gid: str, *, inside: bool = False) -> None:
-        made = self.axes.text(
-            self.first,
-            0.0,
+        put_words(
+            self.sheet,
+            self.axes,
+            self.placer,
             text,
-            fontsize=_WORDS_PT,
-            color=self.palette.ink,
-            horizontalalignment="center",
-            verticalalignment="center_baseline",
+            anchors,
+            size_pt=_WORDS_PT,
             gid=gid,
-            zorder=5.0,
+            gap=1.0 if inside else 5.0,
+            inside=inside,
         )
-        drawn = self.sheet.box_of(made)
-        size = (drawn.right - drawn.left, drawn.top - drawn.bottom)
-        place = self.placer.place(anchors, size, gap=1.0 if inside else 5.0, on_anchor=inside)
-        shift = np.array(place.box.centre) - np.array(drawn.centre)
-        origin = self._pixels([self.first], [0.0])[0] + shift
-        x, y = self.axes.transData.inverted().transform(origin)
-        made.set_position((float(x), float(y)))
-        if place.leader and not inside:
-            ends = np.asarray(
-                self.axes.transData.inverted().transform([place.box.nearest(*place.anchor), place.anchor])
-            )
-            self.axes.plot(
-                ends[:, 0],
-                ends[:, 1],
-                color=self.palette.muted,
-                linewidth=0.7,
-                gid=f"{gid}-leader",
-                zorder=4.5,
-            )
 
 
 _DASHES: Final = {"solid": "solid", "dotted": (0, (1.0, 1.8)), "dashed": (0, (5.0, 3.0))}

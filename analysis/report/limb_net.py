@@ -12,6 +12,7 @@ import numpy as np
 
 from analysis.orient.curves import great_circle, net_xy
 from analysis.orient.vectors import equal_area_xy
+from analysis.report.labels import put_words
 from analysis.report.marks import mean_mark
 from analysis.report.palette import palette_named
 from analysis.report.placing import Box, Placer
@@ -132,19 +133,15 @@ class _Limbs:
         self.placer.block(self._pixels(xy), 1.0, 2.0)
 
     def _label(self, text: str, anchors: Floats, gap: float, *, bold: bool = False) -> None:
-        made = self.axes.text(
-            0.0, 0.0, text, fontsize=_WORDS_PT, fontweight="bold" if bold else "normal", color=self.palette.ink,
-            ha="center", va="center_baseline", gid=f"label-{text}", zorder=5.0,
-        )  # fmt: skip
-        drawn = self.sheet.box_of(made)
-        place = self.placer.place(
-            self._pixels(anchors), (drawn.right - drawn.left, drawn.top - drawn.bottom), gap=gap
+        put_words(
+            self.sheet,
+            self.axes,
+            self.placer,
+            text,
+            self._pixels(anchors),
+            size_pt=_WORDS_PT,
+            gid=f"label-{text}",
+            gap=gap,
+            bold=bold,
+            clear=gap - 3.0,
         )
-        shift = np.array(place.box.centre) - np.array(drawn.centre)
-        origin = self._pixels(np.zeros((1, 2)))[0] + shift
-        made.set_position(tuple(self.axes.transData.inverted().transform(origin)))
-        if place.leader:
-            start, stop = np.array(place.box.nearest(*place.anchor)), np.array(place.anchor)
-            way = (stop - start) / max(float(np.linalg.norm(stop - start)), 1e-9)
-            ends = self.axes.transData.inverted().transform(np.array([start, stop - way * (gap - 3.0)]))
-            self.axes.plot(*np.asarray(ends).T, color=self.palette.muted, linewidth=0.7, zorder=3.5)

@@ -9,6 +9,7 @@ import numpy as np
 from analysis.orient.curves import ellipse, great_circle, lower_pieces, net_xy, rim_arc
 from analysis.orient.features import Feature
 from analysis.orient.vectors import equal_area_xy
+from analysis.report.labels import put_words
 from analysis.report.marks import DIAMOND_PT, DISC_PT, mean_mark, scatter_marks
 from analysis.report.net_key import NetKey
 from analysis.report.palette import LETTERS, palette_named
@@ -237,34 +238,18 @@ class _Net:
                 )
 
     def _label(self, text: str, anchors: Floats, gid: str, gap: float, *, bold: bool = False) -> None:
-        made = self.axes.text(
-            0.0,
-            0.0,
+        put_words(
+            self.sheet,
+            self.axes,
+            self.placer,
             text,
-            fontsize=_LABEL_PT,
-            fontweight="bold" if bold else "normal",
-            color=self.palette.ink,
-            horizontalalignment="center",
-            verticalalignment="center_baseline",
+            self._pixels(np.atleast_2d(anchors)),
+            size_pt=_LABEL_PT,
             gid=gid,
-            zorder=5.0,
+            gap=gap,
+            bold=bold,
+            clear=gap - 3.0,
         )
-        drawn = self.sheet.box_of(made)
-        size = (drawn.right - drawn.left, drawn.top - drawn.bottom)
-        place = self.placer.place(self._pixels(np.atleast_2d(anchors)), size, gap=gap)
-        # The text's own middle is not quite the middle of its box.
-        shift = np.array(place.box.centre) - np.array(drawn.centre)
-        origin = self._pixels(np.zeros((1, 2)))[0] + shift
-        made.set_position(tuple(self.axes.transData.inverted().transform(origin)))
-        if place.leader:
-            start, stop = np.array(place.box.nearest(*place.anchor)), np.array(place.anchor)
-            # The line ends at the edge of the marker, not in its middle.
-            way = (stop - start) / np.linalg.norm(stop - start)
-            ends = np.array([start, stop - way * (gap - 3.0)])
-            xy = np.asarray(self.axes.transData.inverted().transform(ends))
-            self.axes.plot(
-                xy[:, 0], xy[:, 1], color=self.palette.muted, linewidth=0.7, gid=f"{gid}-leader", zorder=3.5
-            )
 
 
 def _along(pole: Floats) -> Floats:
