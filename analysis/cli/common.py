@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import codecs
+import io
 import json
 import os
 import sys
@@ -45,6 +47,7 @@ class OneLineErrors(click.Group):
         **extra: Any,  # noqa: ANN401 - as click has it
     ) -> click.Context:
         """Read the command line of the group."""
+        _bear_any_name()
         with _one_line():
             return super().make_context(info_name, args, parent, **extra)
 
@@ -52,6 +55,13 @@ class OneLineErrors(click.Group):
         """Run a command."""
         with _one_line(ctx):
             return super().invoke(ctx)
+
+
+def _bear_any_name() -> None:
+    """Write what the terminal's own letters lack as an escape: the name of a fold must not end a command."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper) and stream.errors == "strict":
+            stream.reconfigure(errors="backslashreplace")
 
 
 @contextmanager
@@ -279,5 +289,6 @@ def write_map(output: Path, layers: list[MapLayer], tables: dict[str, pd.DataFra
 
 
 def print_json(value: object, *, indent: int | None = 1) -> None:
-    """Print one JSON value."""
-    click.echo(json.dumps(value, indent=indent, ensure_ascii=False, allow_nan=False))
+    """Print one JSON value, with escapes where the output is not in UTF-8."""
+    plain = codecs.lookup(getattr(sys.stdout, "encoding", None) or "utf-8").name != "utf-8"
+    click.echo(json.dumps(value, indent=indent, ensure_ascii=plain, allow_nan=False))

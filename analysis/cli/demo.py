@@ -10,6 +10,7 @@ from analysis.cli.check import check_table, text_of
 from analysis.cli.common import axes_by_feature
 from analysis.cli.replay import checks_in_order
 from analysis.demo import demo_readings
+from analysis.errors import SettingError
 from analysis.files.csvfile import write_readings
 from analysis.files.table import ReadingTable
 from analysis.fold.settings import CheckSettings
@@ -25,7 +26,14 @@ def show_demo(output: Path) -> None:
     from analysis.report.net import draw_net  # noqa: PLC0415
     from analysis.report.sheet import save  # noqa: PLC0415
 
-    output.mkdir(parents=True, exist_ok=True)
+    try:
+        output.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise SettingError(
+            f"the folder cannot be made: {error.strerror or error}",
+            where=str(output),
+            expected="a place that can be written to",
+        ) from error
     table = ReadingTable.from_readings(demo_readings())
     write_readings(output / "mossgarth.csv", table)
     settings = CheckSettings()

@@ -100,6 +100,8 @@ def report_command(
     _only_files_that_stay(files)
     library("matplotlib")
     library(*(("fpdf", "fpdf2") if ending == ".pdf" else ("jinja2",)))
+    if not title.strip():
+        raise SettingError("the title is empty", where="--title", expected="words for the head of the report")
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = None
     if fault_strike is not None:

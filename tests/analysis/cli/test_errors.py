@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import json
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -102,6 +104,14 @@ def test_where_a_file_cannot_go_is_said_before_any_work(run, two_folds, monkeypa
     assert sorted(two_folds.parent.rglob("*")) == before
 
 
+def test_a_demo_that_can_make_no_folder_says_where(run, two_folds):
+    """A folder asked for inside a file cannot be made; the command says which and goes."""
+    result = run("demo", "--no-window", "-o", two_folds / "out")
+    assert result.exit_code == 2
+    (line,) = result.stderr.splitlines()
+    assert line.startswith(f"hingewise: {two_folds / 'out'}: the folder cannot be made")
+
+
 @pytest.mark.parametrize("command", [("check",), ("replay",), ("explain", "--fault-strike", "52")])
 def test_where_nothing_stands_every_command_says_so(run, tmp_path, command):
     """A file of a header only is no error, but it is not passed over in silence."""
@@ -118,6 +128,25 @@ def test_more_names_than_one_can_read_are_counted(run, tmp_path):
     result = run("check", path, "--fold", "F100")
     assert "'F00', 'F01'" in result.stderr
     assert "'F11' and 88 more" in result.stderr
+
+
+@pytest.mark.parametrize("encoding", ["ascii", "latin-1", "cp1252", "utf-8"])
+def test_a_name_that_the_terminal_has_no_letters_for_ends_no_command(tmp_path, encoding):
+    """Where the output is not in UTF-8, such letters are written as escapes, in words and in JSON."""
+    path = tmp_path / "named.csv"
+    path.write_text(HEADER + "\U0001faa8 \u017fold,A,bedding,45,30,,\n", encoding="utf-8")
+    for options in ((), ("--json",), ("--fold", "\u4e00")):
+        done = subprocess.run(
+            [sys.executable, "-c", "from fieldapp.command import main; main()", "check", str(path), *options],
+            capture_output=True,
+            check=False,
+            cwd=Path(__file__).parents[3],
+            env={**os.environ, "PYTHONIOENCODING": encoding},
+        )
+        assert b"Traceback" not in done.stderr, done.stderr
+        assert done.returncode == (2 if "--fold" in options else 0)
+        if options == ("--json",):
+            assert json.loads(done.stdout)[0]["fold"] == "\U0001faa8 \u017fold"
 
 
 def test_the_command_as_installed_ends_without_a_traceback(tmp_path):

@@ -25,6 +25,7 @@ from tests.analysis.cli.conftest import HEADER
         (("two.csv", "-o", "report.html", "--sense", "left"), "--sense"),
         (("two.csv", "-o", "report.html", "--fold", "Nowhere"), "'Nowhere'"),
         (("missing.csv", "-o", "report.html"), "missing.csv"),
+        (("two.csv", "-o", "report.html", "--title", " "), "--title: the title is empty"),
     ],
 )
 def test_errors_are_one_line_and_nothing_is_written(run, two_folds, monkeypatch, arguments, said):
