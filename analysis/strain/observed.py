@@ -45,7 +45,7 @@ class Fault:
         strike = float(self.strike_deg)
         if not (math.isfinite(strike) and 0.0 <= strike <= 360.0):
             raise SettingError(
-                f"fault strike {strike:g} is no azimuth", where="fault strike", expected="0 to 360 degrees"
+                f"{strike:g} is no azimuth", where="fault strike", expected="0 to 360 degrees"
             )
         object.__setattr__(self, "strike_deg", math.fmod(strike, 180.0))
         try:
@@ -60,14 +60,14 @@ class Fault:
             math.isfinite(self.zone_width_km) and self.zone_width_km > 0.0
         ):
             raise SettingError(
-                f"zone width {self.zone_width_km:g} km is no width",
+                f"{self.zone_width_km:g} km is no width",
                 where="zone width",
                 expected="more than 0 km",
                 mend="Leave it out where it is not known.",
             )
         if not (math.isfinite(self.strike_se_deg) and self.strike_se_deg >= 0.0):
             raise SettingError(
-                f"fault strike error {self.strike_se_deg:g} is no error",
+                f"{self.strike_se_deg:g} is no standard error",
                 where="fault strike error",
                 expected="0 degrees or more",
             )
