@@ -56,7 +56,8 @@ class ExplainSettings:
     Attributes
     ----------
     confidence
-        Of intervals, of the 95% in "points the right way", and of what counts as fitting; 0.5 to 0.999.
+        Of intervals, of the 95% in "points the right way", and of what counts as fitting; 0.5 to 0.9999, so that every
+        confidence of a check is one here.
     forecast_limit
         Readings of hinge, and of cleavage, beyond which a comparison counts as out of reach.
     floor_deg
@@ -71,9 +72,11 @@ class ExplainSettings:
     floor_deg: float = 1.0
 
     def __post_init__(self) -> None:
-        if not 0.5 <= self.confidence <= 0.999:
+        if not 0.5 <= self.confidence <= 0.9999:
             raise SettingError(
-                f"confidence {self.confidence:g} is out of range", where="confidence", expected="0.5 to 0.999"
+                f"confidence {self.confidence:g} is out of range",
+                where="confidence",
+                expected="0.5 to 0.9999",
             )
         if not self.forecast_limit >= 1:
             raise SettingError(

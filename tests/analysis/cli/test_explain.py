@@ -117,6 +117,14 @@ def test_a_fault_that_is_none_is_refused_in_one_line(run, mossgarth, options, wo
     assert words in line
 
 
+@pytest.mark.parametrize("confidence", [0.51, 0.9999])
+def test_every_confidence_of_a_check_is_one_of_an_explanation(run, mossgarth, confidence):
+    """At both ends of what check takes, explain and report give an answer."""
+    for command in (("explain",), ("report", "-o", mossgarth.parent / "out.html")):
+        result = run(*command, mossgarth, "--fault-strike", 52, "--confidence", confidence)
+        assert result.exit_code == 0, result.output
+
+
 def test_a_fold_without_scatter_is_explained_without_a_sense_that_rounding_made(run, tmp_path):
     """Readings without scatter leave a variance of zero, which rounding once made negative and refused."""
     path = tmp_path / "exact.csv"
