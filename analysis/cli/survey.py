@@ -76,6 +76,12 @@ def survey_command(
     )
     _say_left_out(found)
     if not found.verdicts:
+        if found.unplaced:
+            raise SettingError(
+                "no reading that stands has a position",
+                where="--cell",
+                expected="latitude_deg and longitude_deg, by which squares are filled",
+            )
         raise nothing_stands(paths)
     _write(found, output)
     unit = "fold" if cell_km is None else "window" if moving else "square"

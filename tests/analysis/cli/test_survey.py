@@ -101,4 +101,8 @@ def test_what_cannot_be_surveyed_is_said_in_one_line(run, archive, tmp_path):
     assert run("survey", archive, "-o", out, "--workers", 0).exit_code == 2
     (empty / "none.csv").write_text("feature,strike_deg,dip_deg\n", encoding="utf-8")
     assert "no reading stands" in run("survey", empty, "-o", out).stderr
+    (empty / "none.csv").write_text("feature,strike_deg,dip_deg\nbedding,45,30\n", encoding="utf-8")
+    assert (
+        "--cell: no reading that stands has a position" in run("survey", empty, "-o", out, "--cell", 2).stderr
+    )
     assert not out.exists()
