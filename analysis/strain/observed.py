@@ -44,9 +44,7 @@ class Fault:
     def __post_init__(self) -> None:
         strike = float(self.strike_deg)
         if not (math.isfinite(strike) and 0.0 <= strike <= 360.0):
-            raise SettingError(
-                f"{strike:g} is no azimuth", where="fault strike", expected="0 to 360 degrees"
-            )
+            raise SettingError(f"{strike:g} is no azimuth", where="fault strike", expected="0 to 360 degrees")
         object.__setattr__(self, "strike_deg", math.fmod(strike, 180.0))
         try:
             object.__setattr__(self, "sense", Sense(self.sense))
