@@ -19,6 +19,7 @@ from analysis.files.checked import (
     checked_time,
     checked_whole,
     checked_word,
+    checked_words,
 )
 from analysis.files.columns import Column, Kind
 from analysis.files.faults import shown
@@ -73,7 +74,7 @@ def cell_value(cell: str, column: Column, delimiter: str = ",") -> CellValue:
         case Kind.WORD:
             return _word(text, column)
         case Kind.WORDS:
-            return tuple(text.split())
+            return checked_words(tuple(text.split()))
         case _:
             return _measured(text or column.blank, column, delimiter)
 

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import math
 import unicodedata
+from collections.abc import Iterable
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING, SupportsFloat, cast
 
@@ -42,6 +43,18 @@ def checked_text(value: object, where: str) -> str:
     if "\0" in value or not (value.isascii() or _encodable(value)):
         raise ReadingError("a character that no file can hold", where=where, expected="text without NUL")
     return with_plain_line_ends(str(value))
+
+
+def checked_words(value: object) -> tuple[str, ...]:
+    """Names without spaces or control characters, or ReadingError."""
+    if isinstance(value, str) or not isinstance(value, Iterable):
+        raise ReadingError(f"{value!r} are no names", where="warnings_kept", expected="a tuple of names")
+    words = tuple(checked_text(word, "warnings_kept") for word in value)
+    if any(word.split() != [word] or not word.isprintable() for word in words):
+        raise ReadingError(f"{words!r} are no names", where="warnings_kept", expected="names without spaces")
+    if sum(map(len, words)) + len(words) > MAX_TEXT:
+        raise ReadingError("too many names", where="warnings_kept", expected=f"{MAX_TEXT} characters in all")
+    return words
 
 
 def with_plain_line_ends(text: str) -> str:

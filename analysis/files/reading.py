@@ -21,13 +21,13 @@ from analysis.files.checked import (
     checked_time,
     checked_whole,
     checked_word,
+    checked_words,
     kept,
 )
 from analysis.files.columns import (
     BY_NAME,
     CONTENT_NAMES,
     DIP_DIRECTION,
-    MAX_TEXT,
     NAMES,
     QUADRANTS,
     Column,
@@ -151,7 +151,7 @@ class Reading:
             put(self, name, checked_time(getattr(self, name), name))
         for name in ("dip_quadrant", "north_reference", "instrument"):
             put(self, name, checked_word(getattr(self, name), BY_NAME[name]))
-        put(self, "warnings_kept", _checked_words(self.warnings_kept))
+        put(self, "warnings_kept", checked_words(self.warnings_kept))
         put(self, "other", _checked_other(self.other))
         self._check_attitude()
         self._check_position()
@@ -312,17 +312,6 @@ def _feature(value: object) -> Feature:
         raise ReadingError(
             f"{value!r} is unknown", where="feature", expected=BY_NAME["feature"].expected
         ) from None
-
-
-def _checked_words(value: object) -> tuple[str, ...]:
-    if isinstance(value, str) or not isinstance(value, Iterable):
-        raise ReadingError(f"{value!r} are no names", where="warnings_kept", expected="a tuple of names")
-    words = tuple(checked_text(word, "warnings_kept") for word in value)
-    if any(word.split() != [word] or not word.isprintable() for word in words):
-        raise ReadingError(f"{words!r} are no names", where="warnings_kept", expected="names without spaces")
-    if sum(map(len, words)) + len(words) > MAX_TEXT:
-        raise ReadingError("too many names", where="warnings_kept", expected=f"{MAX_TEXT} characters in all")
-    return words
 
 
 def _checked_other(value: object) -> Other:

@@ -234,6 +234,14 @@ def test_a_stray_line_end_before_a_separator_spoils_its_own_row_only(read, cell)
     assert "out of place" in table.faults[0].found
 
 
+@pytest.mark.parametrize("kept", ["\x12", "strike reversed\x07", "\x01 a"])
+def test_names_of_warnings_hold_no_control_character(read, kept):
+    """A control character among the warnings kept spoils its own row only; found by the coverage-guided fuzzer."""
+    table = read(f"feature,strike_deg,dip_deg,warnings_kept\nbedding,45,30,{kept}\nbedding,45,30,steep\n")
+    assert [reading.warnings_kept for reading in table.readings()] == [("steep",)]
+    assert [fault.column for fault in table.faults] == ["warnings_kept"]
+
+
 @pytest.mark.parametrize("digits", ["3" + "5" * 34, "18446744073709551615", "9223372036854775808"])
 @pytest.mark.parametrize("column", ["samples", "revision", "altitude_m", "strike_deg"])
 def test_a_whole_number_of_any_length_spoils_its_own_row_only(read, column, digits):

@@ -61,11 +61,13 @@ NAMES = [
     "x" * 201,
     "nan",
     '5"',
+    "\x12",
+    "a\x12b",
 ]
 SEPARATORS = st.sampled_from([",", ";", "\t"])
 HEADERS = [
     "feature,strike_deg,dip_deg",
-    "reading_id,revision,struck_out,recorded_at,fold,feature,strike_deg,dip_deg,note,samples,extra",
+    "reading_id,revision,struck_out,recorded_at,fold,feature,strike_deg,dip_deg,note,samples,warnings_kept,extra",
     "feature,dip_direction_deg,strike_deg,dip_deg,trend_deg,plunge_deg,dip_quadrant,overturned,altitude_m",
 ]
 
