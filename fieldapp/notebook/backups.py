@@ -42,8 +42,12 @@ def is_due(notebook: Path, day: date) -> bool:
 _one_at_a_time = threading.Lock()  # a worker and a closing page may both be at the backup of the day
 
 
-def back_up(notebook: Path, day: date, *, kept: int = KEPT, name: str = "") -> Path:
+def back_up(
+    notebook: Path, day: date, *, kept: int = KEPT, name: str = "", spared: Path | None = None
+) -> Path:
     """Write the backup of a day and drop the oldest beyond `kept`; may run on any thread.
+
+    The one just written is never dropped, though a clock set back may have dated it the oldest; nor is `spared`.
 
     The copy is checked row by row before it takes its name, so that a damaged notebook never pushes a good
     backup out. Raises DamagedError for such a notebook, and other NotebookErrors for trouble with the
@@ -70,7 +74,8 @@ def back_up(notebook: Path, day: date, *, kept: int = KEPT, name: str = "") -> P
             with suppress(OSError):
                 partial.unlink(missing_ok=True)
         for old in backups_of(notebook)[kept:]:
-            old.unlink(missing_ok=True)
+            if old not in (target, spared):
+                old.unlink(missing_ok=True)
     return target
 
 

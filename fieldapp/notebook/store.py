@@ -198,9 +198,16 @@ class Notebook:
         """Give the draft last saved; empty where there is none, or where it cannot be read."""
         return _as_mapping(self._read("SELECT content FROM draft"))
 
-    def save_settings(self, values: Mapping[str, object]) -> None:
-        """Keep settings by name; names not given keep their values."""
+    def save_settings(
+        self, values: Mapping[str, object], *, draft: Mapping[str, object] | None = None
+    ) -> None:
+        """Keep settings by name; names not given keep their values. `draft` is put in with them, or nothing is.
+
+        In one transaction, because digits typed in one notation mean another plane in the other.
+        """
         with self._writing() as db:
+            if draft is not None:
+                self._put_draft(db, draft)
             db.executemany(
                 "INSERT OR REPLACE INTO settings VALUES (?, ?)",
                 [(name, json.dumps(value)) for name, value in values.items()],
@@ -289,8 +296,8 @@ class Notebook:
 
     def last_hand_over(self) -> datetime | None:
         """Time of the newest hand-over."""
-        rows = self._read("SELECT max(made_at) FROM hand_overs")
-        return datetime.fromisoformat(str(rows[0][0])) if rows[0][0] else None
+        rows = self._read("SELECT made_at FROM hand_overs ORDER BY hand_over DESC LIMIT 1")
+        return datetime.fromisoformat(str(rows[0][0])) if rows else None
 
     # -- backups -------------------------------------------------------------------------------------------
 
@@ -298,7 +305,8 @@ class Notebook:
         """Put the whole notebook back to a backup; how it is now is kept as a backup of its own first."""
         readings_in(backup)  # a backup that cannot be read must not replace anything
         now = self._clock()
-        back_up(self.path, now.date(), name=f"{now:%Y-%m-%dT%H%M%SZ} before restoring", kept=KEPT + 1)
+        name = f"{now:%Y-%m-%dT%H%M%SZ} before restoring"
+        back_up(self.path, now.date(), name=name, kept=KEPT + 1, spared=backup)
         with (
             plain_errors(self.path),
             closing(sqlite3.connect(f"{backup.resolve().as_uri()}?mode=ro", uri=True)) as source,

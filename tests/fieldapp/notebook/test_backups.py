@@ -82,6 +82,29 @@ def test_restoring_brings_the_backup_back_and_keeps_what_was(notebook, path, mak
     assert notebook.count() == 3
 
 
+def test_the_oldest_backup_can_be_restored_again_and_again(notebook, path, make_reading):
+    """What is kept before restoring never pushes out the very backup that is to be restored."""
+    for number in range(KEPT):
+        notebook.keep(make_reading())
+        back_up(path, DAY + timedelta(days=number))
+    oldest = backups_of(path)[-1]
+    for _ in range(4):
+        notebook.keep(make_reading())
+        notebook.restore(oldest)
+        assert notebook.count() == 1
+    assert oldest in backups_of(path)
+
+
+def test_a_clock_set_back_does_not_cost_the_backup_of_the_day(notebook, path, make_reading):
+    """A backup that is dated before all others is still there after it was written."""
+    for number in range(KEPT):
+        back_up(path, DAY + timedelta(days=number))
+    reading = make_reading()
+    notebook.keep(reading)
+    backup = back_up(path, DAY - timedelta(days=3000))
+    assert readings_in(backup) == [reading]
+
+
 def test_a_backup_that_cannot_be_read_restores_nothing(notebook, make_reading, tmp_path):
     """A broken backup is refused and the notebook stays as it is."""
     notebook.keep(make_reading())

@@ -2,6 +2,7 @@ from __future__ import annotations
 
 import sqlite3
 from dataclasses import replace
+from datetime import timedelta
 
 import pytest
 from hypothesis import HealthCheck, given, settings
@@ -187,6 +188,30 @@ def test_hand_over_carries_each_revision_once(notebook, make_reading, clock):
     theirs = make_reading()
     notebook.take_in([theirs], "b.csv")
     assert notebook.not_handed_over() == [struck, theirs]
+
+
+def test_the_last_hand_over_is_the_one_made_last(notebook, make_reading, clock):
+    """A clock set back between two hand-overs does not bring the older one to the front."""
+    notebook.keep(make_reading())
+    notebook.note_hand_over("a.csv", [])
+    clock.later(days=-400)
+    notebook.note_hand_over("b.csv", [])
+    assert clock.now - timedelta(minutes=1) < notebook.last_hand_over() <= clock.now
+
+
+def test_settings_bring_the_draft_in_their_notation_or_not_at_all(notebook, monkeypatch):
+    """Digits of one notation are never stored beside the other: both are written, or neither."""
+    notebook.save_settings({"notation": "strike/dip"}, draft={"azimuth": "045"})
+    assert notebook.draft() == {"azimuth": "045"}
+
+    def fails(*_values):
+        raise sqlite3.OperationalError("the storage is gone")
+
+    monkeypatch.setattr(notebook, "_put_draft", fails)
+    with pytest.raises(sqlite3.OperationalError):
+        notebook.save_settings({"notation": "dip direction/dip"}, draft={"azimuth": "135"})
+    assert notebook.settings() == {"notation": "strike/dip"}
+    assert notebook.draft() == {"azimuth": "045"}
 
 
 @st.composite
