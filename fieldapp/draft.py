@@ -7,9 +7,9 @@ Rules
 2. A decimal is optional. The point, straight after the entry moved on, goes back to the azimuth and takes one
    decimal; the inclination takes its decimal after its last digit. A point after fewer digits fills up with
    zeros in front ("45." is 045.).
-3. Back takes away the last sign, wherever it stands; Clear takes away everything. 4. A draft filled by the
-sensors or from a reading being mended is LOADED: the first digit starts it anew,
-   Back takes its last digit away and goes on from there.
+3. Back takes away the last sign, wherever it stands; Clear takes away everything.
+4. A draft filled by the sensors or from a reading being mended is LOADED: the first digit starts it anew, Back
+   takes its last digit away and goes on from there.
 5. A key that has no entry in the table does nothing.
 
 The draft is a frozen record and knows no reading, no notation and no clock; the presenter gives it meaning.
@@ -17,6 +17,7 @@ The draft is a frozen record and knows no reading, no notation and no clock; the
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass, replace
 from enum import StrEnum
 
@@ -89,6 +90,10 @@ TABLE: dict[tuple[Place, Key], tuple[Edit, Place | None]] = {
 }
 
 
+_WHOLE = re.compile(r"\d{3}(\.\d)?/\d{2}(\.\d)?", re.ASCII)
+_TYPED = re.compile(r"\d{0,2}/|\d{3}(\.\d?)?/|\d{3}(\.\d)?/(\d|\d{2}(\.\d?)?)", re.ASCII)
+
+
 @dataclass(frozen=True, slots=True)
 class Digits:
     """The digits of one entry: azimuth and inclination as typed, and where the next key lands."""
@@ -112,6 +117,16 @@ class Digits:
     def loaded(cls, azimuth: str, inclination: str) -> Digits:
         """Digits filled in by the sensors or from a reading being mended."""
         return cls(azimuth, inclination, Place.LOADED)
+
+    @classmethod
+    def stored(cls, azimuth: str, inclination: str, place: Place) -> Digits:
+        """Digits as they were stored; raises ValueError for what no keys and no filling in can have made."""
+        digits = cls(azimuth, inclination, place)
+        whole = bool(_WHOLE.fullmatch(f"{azimuth}/{inclination}"))
+        typed = bool(_TYPED.fullmatch(f"{azimuth}/{inclination}"))
+        if not (whole if place is Place.LOADED else typed and _place_of(digits) is place):
+            raise ValueError(f"{digits} cannot have been typed")
+        return digits
 
     @property
     def whole(self) -> bool:

@@ -6,6 +6,7 @@ Azimuths stay as they were typed; the correction to true north is added once, wh
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
@@ -92,9 +93,14 @@ class EntryDraft:
     def in_notation(self, old: PlaneNotation, new: PlaneNotation) -> EntryDraft:
         """Give the draft with its digits meaning the same plane in another notation.
 
-        An azimuth that is not whole yet stays as typed: it was begun with the new notation in mind.
+        An azimuth that is not whole yet stays as typed: it was begun with the new notation in mind. A dip direction
+        says the side that the plane dips to, and the side tapped goes.
         """
-        if old is new or not self.feature.is_plane or not self.digits.azimuth_whole:
+        if old is new or not self.feature.is_plane:
+            return self
+        if new is not PlaneNotation.STRIKE_DIP and self.quadrant:
+            return replace(self, quadrant="").in_notation(old, new)
+        if not self.digits.azimuth_whole:
             return self
         turn = 90.0 if new is PlaneNotation.DIP_DIRECTION_DIP else -90.0
         typed = self.digits.azimuth
@@ -113,7 +119,8 @@ class EntryDraft:
     @property
     def empty(self) -> bool:
         """Whether nothing would be lost by clearing it."""
-        return self.digits.place is Place.EMPTY and not (self.quadrant or self.note or self.mending)
+        chosen = self.quadrant or self.note or self.overturned or self.mending
+        return self.digits.place is Place.EMPTY and not chosen
 
     @property
     def text(self) -> str:
@@ -162,12 +169,12 @@ class EntryDraft:
             north, sensed = values.get("north"), values.get("sensed")
             return cls(
                 feature=Feature(str(values.get("feature", Feature.BEDDING))),
-                digits=Digits(
+                digits=Digits.stored(
                     str(values.get("azimuth", "")),
                     str(values.get("inclination", "")),
                     Place(str(values.get("place", Place.EMPTY))),
                 ),
-                quadrant=str(values.get("quadrant", "")),
+                quadrant=_quadrant(str(values.get("quadrant", ""))),
                 note=str(values.get("note", "")),
                 overturned=bool(values.get("overturned", False)),
                 mending=str(values.get("mending", "")),
@@ -223,9 +230,17 @@ def turned(attitude: Plane | Line, by_deg: float) -> Plane | Line:
     return Plane(float(wrap_azimuth_deg(attitude.strike_deg + by_deg)), attitude.dip_deg)
 
 
+def _quadrant(stored: str) -> str:
+    if stored and stored not in QUADRANTS:
+        raise ValueError(f"{stored!r} is no quadrant")
+    return stored
+
+
 def _north(stored: list[object]) -> North:
     reference, correction, model = stored
     added = None if correction is None else float(str(correction))
+    if added is not None and not math.isfinite(added):
+        raise ValueError(f"{added} is no correction")
     return North(reference=str(reference), correction_deg=added, model=str(model))
 
 

@@ -91,3 +91,31 @@ def test_back_always_ends_at_the_empty_draft(keys):
     digits = after(keys)
     signs = len(digits.azimuth) + len(digits.inclination)
     assert after("<" * (signs + 1), digits) == Digits()
+
+
+@given(st.text(alphabet="0123456789.<C", max_size=20), st.booleans())
+def test_whatever_was_typed_is_read_back_from_storage(keys, filled):
+    """Digits that keys or filling in have made are taken as they were stored."""
+    digits = after(keys, Digits.loaded("045.5", "30") if filled else None)
+    assert Digits.stored(digits.azimuth, digits.inclination, digits.place) == digits
+
+
+@given(
+    st.text(alphabet="0123456789.-x", max_size=6),
+    st.text(alphabet="0123456789.-x", max_size=5),
+    st.sampled_from(Place),
+)
+def test_stored_digits_that_nobody_typed_are_refused_or_harmless(azimuth, inclination, place):
+    """What a spoilt file says is refused unless it says whole exactly what is there."""
+    try:
+        digits = Digits.stored(azimuth, inclination, place)
+    except ValueError:
+        return
+    assert digits.whole == bool(re.fullmatch(r"\d{2}(\.\d?)?", inclination))
+    assert not digits.azimuth_whole or 0.0 <= float(azimuth.rstrip(".")) <= 999.9
+    for key in Key:
+        assert digits.pressed(key, "1") == Digits.stored(*_parts(digits.pressed(key, "1")))
+
+
+def _parts(digits: Digits) -> tuple[str, str, Place]:
+    return digits.azimuth, digits.inclination, digits.place

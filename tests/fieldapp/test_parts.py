@@ -134,7 +134,17 @@ def test_a_draft_survives_storing(draft):
 
 
 @pytest.mark.parametrize(
-    "values", [{"feature": "granite"}, {"place": "nowhere"}, {"north": [1]}, {"sensed": [1]}]
+    "values",
+    [
+        {"feature": "granite"},
+        {"place": "nowhere"},
+        {"place": "both whole"},
+        {"place": "filled in", "azimuth": "0x5", "inclination": "30"},
+        {"quadrant": "up"},
+        {"north": [1]},
+        {"north": ["magnetic", "nan", "m"]},
+        {"sensed": [1]},
+    ],
 )
 def test_a_spoilt_draft_is_an_empty_one(values):
     """What makes no sense does not keep the page from opening."""
