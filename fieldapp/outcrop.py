@@ -4,18 +4,16 @@ Rules
 -----
 1. A reading is committed to the notebook before anything on the page says that it was kept. When the notebook
    refuses, the message says why in plain words and the draft stays.
-2. The draft is saved at each key, and gives way to an empty one in the very transaction that keeps the
-reading, so
-   that a killed process neither loses a key nor keeps a reading twice.
-3. Nothing is deleted: taking back is striking out, mending is a further revision. 4. Checks warn and offer a
-mend; they never keep a geologist from keeping what was seen. Only digits that are no
+2. The draft is saved at each key, and gives way to an empty one in the very transaction that keeps the reading,
+   so that a killed process neither loses a key nor keeps a reading twice.
+3. Nothing is deleted: taking back is striking out, mending is a further revision.
+4. Checks warn and offer a mend; they never keep a geologist from keeping what was seen. Only digits that are no
    attitude, and a dip quadrant that the settings require, are asked for first.
 5. The sums follow each reading. What is slow is computed elsewhere and taken only if it is still about the
    readings as they stand.
 6. Each public method ends by telling the listeners, once, what has changed.
 
-State records are in `fieldapp.states`, settings in `fieldapp.settings`. All methods belong to the user's
-thread.
+State records are in `fieldapp.states`, settings in `fieldapp.settings`. All methods belong to the user's thread.
 """
 
 from __future__ import annotations
@@ -44,7 +42,7 @@ from fieldapp.states import (
     Offer,
     SignalKind,
 )
-from fieldapp.undoing import Step, StepKind
+from fieldapp.undoing import Step, StepKind, content_of
 from fieldapp.wording import FIRST_OUTCROP
 
 if TYPE_CHECKING:
@@ -71,13 +69,16 @@ def open_page(
 ) -> OutcropPage:
     """Open the notebook at `path`, or make it, and the page on it; raises NotebookError where neither works.
 
-    `clock` gives aware UTC times. What opening found (a damaged file, read-only storage) is in
-    `page.message`.
+    `clock` gives aware UTC times. What opening found (a damaged file, read-only storage) is in `page.message`.
     """
     opening = open_notebook(path, clock)
-    return OutcropPage(
-        opening.notebook, clock=clock, dispatch=dispatch, demo=demo, report=opening.report, north=north
-    )
+    try:
+        return OutcropPage(
+            opening.notebook, clock=clock, dispatch=dispatch, demo=demo, report=opening.report, north=north
+        )
+    except BaseException:
+        opening.notebook.close()
+        raise
 
 
 class OutcropPage(PageFaulting):
@@ -102,7 +103,13 @@ class OutcropPage(PageFaulting):
         self._change_draft(self._draft.cleared())
 
     def _press(self, key: Key, digit: str = "") -> None:
-        self._change_draft(self._draft.pressed(key, digit))
+        self._change_draft(self._with_own_side(self._draft.pressed(key, digit)))
+
+    def _with_own_side(self, draft: EntryDraft) -> EntryDraft:
+        """A dip direction says the side itself: one that a mended reading has belongs to the digits before."""
+        if self._settings.notation is PlaneNotation.STRIKE_DIP or draft.digits == self._draft.digits:
+            return draft
+        return replace(draft, quadrant="")
 
     def choose_feature(self, feature: Feature) -> None:
         """Choose what is being read; digits typed stay."""
@@ -136,7 +143,8 @@ class OutcropPage(PageFaulting):
     def measured(self, measured: Measured) -> None:
         """Fill the entry from the sensors; a digit typed over it makes it a compass reading."""
         north = North() if measured.north == "true" else self._magnetic_north()
-        self._change_draft(self._draft.of_sensors(measured, north, self._settings.notation))
+        draft = self._draft.of_sensors(measured, north, self._settings.notation)
+        self._change_draft(self._with_own_side(draft))
 
     def _change_draft(self, draft: EntryDraft) -> None:
         if draft == self._draft:
@@ -159,7 +167,7 @@ class OutcropPage(PageFaulting):
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         before = self._all.get(reading.reading_id)
         kind = StepKind.KEPT if before is None else StepKind.REVISED
-        self._undo.push(Step(kind, reading.reading_id, before, self._draft))
+        self._undo.push(Step(kind=kind, reading_id=reading.reading_id, before=before, draft=self._draft))
         self._draft, self._draft_saved = self._draft.cleared(), True
         self._just_struck = ""
         self._signal(SignalKind.KEPT)
@@ -206,29 +214,30 @@ class OutcropPage(PageFaulting):
         revised = self._revise(reading, {"struck_out": struck})
         if revised is None:
             return False
-        self._undo.push(Step(StepKind.REVISED, reading_id, reading, None))
+        self._undo.push(Step(kind=StepKind.REVISED, reading_id=reading_id, before=reading))
         self._just_struck = reading_id if struck else ""
         words = "Struck out" if struck else "Counts again:"
         self._settle(revised, Message(f"{words} {self._text(reading)}.", offer=Offer.UNDO))
         return True
 
     def undo(self) -> bool:
-        """Take back what was done last: a keep, a mend, a striking out, a take-in."""
+        """Take back what was done last: a keep, a mend, a striking out, a correction to north, a take-in."""
         step = self._undo.newest()
         if step is None:
             return False
         if step.kind is StepKind.TAKEN_IN:
             return self.undo_take_in()
-        reading = self._all.get(step.reading_id)
-        if reading is None:
-            self._undo.pop()
-            return False
+        if step.kind is StepKind.CORRECTED:
+            return self._undo_correction(step)
+        reading = self._all[
+            step.reading_id
+        ]  # what was kept here goes only with the whole stack, on restoring
         # What was typed comes back into the entry, unless something else has been begun since.
         draft = step.draft if self._draft.empty else None
         if step.before is None:
             revised = self._revise(reading, {"struck_out": True}, draft)
         else:
-            revised = self._revise(reading, _content_of(step.before), draft)
+            revised = self._revise(reading, content_of(step.before), draft)
         if revised is None:
             return False
         self._undo.pop()
@@ -306,18 +315,18 @@ class OutcropPage(PageFaulting):
         """Use other settings from now on; False where they could not be stored (used all the same)."""
         old, self._settings = self._settings, settings
         draft = self._draft.in_notation(old.notation, settings.notation)
-        if settings.notation is not PlaneNotation.STRIKE_DIP and old.notation is not settings.notation:
-            draft = replace(draft, quadrant="")
+        self._undo.turn_drafts(lambda one: one.in_notation(old.notation, settings.notation))
         self._running.use(check_settings(settings))
         stored = True
         try:
-            self._notebook.save_settings(settings.to_values())
+            self._notebook.save_settings(
+                settings.to_values(), draft=None if draft == self._draft else draft.to_values()
+            )
         except HingewiseError as error:
             self._message = Message(str(error), MessageKind.TROUBLE)
             stored = False
         if draft != self._draft:
-            self._draft = draft
-            self._save_draft()
+            self._draft, self._draft_saved = draft, stored
         self._tell(EVERYTHING)
         if check_settings(old) != check_settings(settings):
             self._refresh_history()
@@ -331,17 +340,13 @@ class OutcropPage(PageFaulting):
         message, self._message = self._message, None
         match message.offer if message else Offer.NONE:
             case Offer.UNDO:
-                return self.undo()
+                done = self.undo()
             case Offer.ADD_BACKUP if self._report.newest_backup is not None:
-                return self.add_backup(self._report.newest_backup)
+                done = self.add_backup(self._report.newest_backup)
             case Offer.CORRECT_NORTH:
-                return self.correct_north() > 0
+                done = self.correct_north() > 0
             case _:
-                self._tell(Change.MESSAGE)
-                return False
-
-
-def _content_of(reading: Reading) -> dict[str, object]:
-    """All of a reading that a revision may change."""
-    fixed = ("reading_id", "revision", "revised_at")
-    return {name: getattr(reading, name) for name in reading.__dataclass_fields__ if name not in fixed}
+                done = False
+        if not done and self._message is None:
+            self._tell(Change.MESSAGE)
+        return done

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import StrEnum
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from analysis.files.reading import Reading
     from fieldapp.entry import EntryDraft
 
@@ -19,17 +21,28 @@ class StepKind(StrEnum):
     KEPT = "kept"
     REVISED = "revised"
     TAKEN_IN = "taken in"
+    CORRECTED = "corrected to true north"
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Step:
-    """One thing done: the reading (or the take-in), how it was before, the draft it came from."""
+    """One thing done: the reading (or the take-in), how it was before, the draft it came from.
+
+    `all_before` are the readings before a correction of many.
+    """
 
     kind: StepKind
-    reading_id: str
+    reading_id: str = ""
     before: Reading | None = None
     draft: EntryDraft | None = None
     take_in: int = 0
+    all_before: tuple[Reading, ...] = ()
+
+
+def content_of(reading: Reading) -> dict[str, object]:
+    """All of a reading that a revision may change."""
+    fixed = ("reading_id", "revision", "revised_at")
+    return {name: getattr(reading, name) for name in reading.__dataclass_fields__ if name not in fixed}
 
 
 class UndoStack:
@@ -52,6 +65,10 @@ class UndoStack:
     def pop(self) -> None:
         """Forget the thing done last: it was taken back."""
         self._steps.pop()
+
+    def turn_drafts(self, turn: Callable[[EntryDraft], EntryDraft]) -> None:
+        """Bring the drafts that may come back into another notation, as the one in hand is brought."""
+        self._steps = [s if s.draft is None else replace(s, draft=turn(s.draft)) for s in self._steps]
 
     def forget_take_in(self, take_in: int) -> None:
         """Forget a take-in that was undone from its own leaf."""

@@ -53,7 +53,7 @@ class PageExchange(PageView):
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         if taken is None:
             return self._refuse(Message("Look at the file again before taking it in.", MessageKind.WARNING))
-        self._undo.push(Step(StepKind.TAKEN_IN, "", take_in=taken.take_in))
+        self._undo.push(Step(kind=StepKind.TAKEN_IN, take_in=taken.take_in))
         words = f"{counted(taken.revisions, 'revision')} taken in from {taken.source}."
         self._message = Message(words, offer=Offer.UNDO)
         self._reload()

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
+from analysis.errors import HingewiseError
 from analysis.orient.position import Position
 from fieldapp.entry import North
 from fieldapp.late_north import corrected_late, waits_for_north
@@ -15,13 +16,12 @@ from fieldapp.settings import NorthMode
 from fieldapp.states import (
     Change,
     Message,
+    MessageKind,
     Offer,
     PositionFix,
 )
-from fieldapp.wording import (
-    age_text,
-    counted,
-)
+from fieldapp.undoing import Step, StepKind, content_of
+from fieldapp.wording import age_text, counted
 
 if TYPE_CHECKING:
     from datetime import datetime
@@ -115,34 +115,59 @@ class PageNorth(PageCore):
         return [reading for reading in self._all.values() if waits_for_north(reading)]
 
     def correct_north(self) -> int:
-        """Correct readings kept before a correction to north was known; give their number."""
-        corrected = 0
-        for reading in self._not_corrected():
-            found = self._find_north(
-                reading.north_reference,
-                self._place_of(reading),
-                (reading.recorded_at or self._clock()).date(),
-            )
-            if not found.is_true:
-                continue
-            waited = tuple(w for w in reading.warnings_kept if w != NOT_CORRECTED)
-            late = corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
-            changes = {
-                "strike_deg": late.strike_deg,
-                "trend_deg": late.trend_deg,
-                "correction_deg": late.correction_deg,
-                "correction_model": late.correction_model,
-                "warnings_kept": late.warnings_kept,
-            }
-            revised = self._revise(reading, changes)
-            if revised is None:
-                break
-            self._all[reading.reading_id] = revised
-            corrected += 1
-        if corrected:
-            self._message = Message(f"{counted(corrected)} corrected to true north.")
-            self._rebuild()
-        return corrected
+        """Correct readings kept before a correction to north was known, all or none; give their number."""
+        before = self._not_corrected()
+        try:
+            corrected = [late for late in map(self._corrected_late, before) if late is not None]
+            self._notebook.keep_all(corrected)
+        except HingewiseError as error:
+            self._refuse(Message(str(error), MessageKind.TROUBLE))
+            return 0
+        if not corrected:
+            words = "The correction to north is still not known: it comes with a position."
+            self._refuse(Message(words, MessageKind.WARNING))
+            return 0
+        done = {reading.reading_id for reading in corrected}
+        all_before = tuple(reading for reading in before if reading.reading_id in done)
+        self._undo.push(Step(kind=StepKind.CORRECTED, all_before=all_before))
+        self._message = Message(f"{counted(len(corrected))} corrected to true north.", offer=Offer.UNDO)
+        self._revised(corrected)
+        return len(corrected)
+
+    def _corrected_late(self, reading: Reading) -> Reading | None:
+        """The next revision of a reading, corrected; None where its correction is still not known."""
+        on = (reading.recorded_at or self._clock()).date()
+        found = self._find_north(reading.north_reference, self._place_of(reading), on)
+        if not found.is_true:
+            return None
+        waited = tuple(w for w in reading.warnings_kept if w != NOT_CORRECTED)
+        late = corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
+        return replace(late, revision=self._notebook.next_revision(reading.reading_id))
+
+    def _undo_correction(self, step: Step) -> bool:
+        try:
+            again = [
+                replace(
+                    self._all[one.reading_id].revised(at=self._clock(), **content_of(one)),
+                    revision=self._notebook.next_revision(one.reading_id),
+                )
+                for one in step.all_before
+            ]
+            self._notebook.keep_all(again)
+        except HingewiseError as error:
+            return self._refuse(Message(str(error), MessageKind.TROUBLE))
+        self._undo.pop()
+        words = f"Taken back: {counted(len(again))} without the correction to north again."
+        self._message = Message(words, offer=Offer.CORRECT_NORTH)
+        self._revised(again)
+        return True
+
+    def _revised(self, readings: list[Reading]) -> None:
+        """Bring the page up to date with revisions of many readings."""
+        self._all.update((reading.reading_id, reading) for reading in readings)
+        self._not_backed_up_yet += len(readings)
+        self._rebuild()
+        self._back_up_if_due()
 
     def _place_of(self, reading: Reading) -> Position | None:
         """Where a reading was taken; else where we are."""
