@@ -63,6 +63,11 @@ class Forecaster:
         if not self._under_way:
             self._start()
 
+    def stop(self) -> None:
+        """Ask for no more: the page is closed, and what is under way comes back to nobody."""
+        self._waiting = None
+        self._came = lambda _forecast: None
+
     def _start(self) -> None:
         if self._waiting is None:
             return

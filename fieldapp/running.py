@@ -8,6 +8,7 @@ and whose values it takes back only if they are still about the same readings.
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -54,15 +55,17 @@ class History:
 class RunningFold:
     """Standing and struck-out readings of one fold with their sums.
 
-    `epoch` rises whenever the past changes (striking out, mending, another fold or setting), `version` with
-    every change: values computed elsewhere belong to one of them.
+    `epoch` changes whenever the past does (striking out, mending, another setting), `version` with every change:
+    values computed elsewhere belong to one of them. No two folds ever share a number, so that what comes late, when
+    the page has gone to another fold, is known to be about the one before.
     """
+
+    _numbers = itertools.count(1)
 
     def __init__(self, fold: str, settings: CheckSettings, readings: Iterable[Reading] = ()) -> None:
         self.fold = fold
         self.settings = settings
-        self.version = 0
-        self.epoch = 0
+        self.version = self.epoch = next(self._numbers)
         self.readings: dict[str, Reading] = {}
         self._neighbours: dict[str, Neighbour] = {}
         self.sums = RunningSums()
@@ -99,7 +102,7 @@ class RunningFold:
             self._count_in(reading)
         else:
             self.readings.pop(reading.reading_id, None)
-        self.version += 1
+        self.version = next(self._numbers)
         self._check = self._in_order = None
         if old is None:
             self._since.append(_point(self.check, self.standing_count))
@@ -110,12 +113,12 @@ class RunningFold:
         """Check with other settings from now on."""
         if settings != self.settings:
             self.settings = settings
-            self.version += 1
+            self.version = next(self._numbers)
             self._check = None
             self._past_changed()
 
     def _past_changed(self) -> None:
-        self.epoch += 1
+        self.epoch = next(self._numbers)
         self._since = []
 
     def _count_in(self, reading: Reading) -> None:

@@ -39,7 +39,6 @@ from fieldapp.wording import (
 if TYPE_CHECKING:
     from collections.abc import Callable, Mapping
     from datetime import date, datetime
-    from pathlib import Path
 
     from analysis.files.reading import Reading
     from analysis.orient.north import NorthCorrection
@@ -100,7 +99,11 @@ class PageCore:
         self._position_shown = ""
         self._draft_saved = True
         self._backup_day: date | None = None
-        self._not_backed_up_yet = 0
+        self._not_backed_up_yet = 0  # revisions since the last backup that is there
+        self._back_up_at = (
+            BACKUP_EVERY  # of them; later after a backup that failed, which is not said each time
+        )
+        self._backing_up = False
         self._said: str | None = None  # the verdict last signalled; None until there is one to compare with
         self._closed = False
         self._report = report or OpeningReport()
@@ -278,9 +281,9 @@ class PageCore:
 
     def back_up(self) -> None:
         """Write today's backup now, over an earlier one of today."""
-        path, day = self._notebook.path, self._clock().date()
-        self._not_backed_up_yet = 0
-        self._dispatch(lambda: back_up(path, day), self._backed_up, self._not_backed_up)
+        path, day, count = self._notebook.path, self._clock().date(), self._not_backed_up_yet
+        self._backing_up = True
+        self._dispatch(lambda: back_up(path, day), lambda _path: self._backed_up(count), self._not_backed_up)
 
     def _back_up_if_due(self) -> None:
         day = self._clock().date()
@@ -290,27 +293,41 @@ class PageCore:
             self._backup_day = day
             if not is_due(self._notebook.path, day):
                 return
-        elif self._not_backed_up_yet < BACKUP_EVERY:
+        elif self._backing_up or self._not_backed_up_yet < self._back_up_at:
             return
         self.back_up()
 
-    def _backed_up(self, _path: Path) -> None:
-        self._tell(Change.HAND_OVER)
+    def _backed_up(self, count: int) -> None:
+        """Hear that there is a backup with the first `count` revisions that had none; later ones may be in it."""
+        self._backing_up = False
+        self._not_backed_up_yet = max(self._not_backed_up_yet - count, 0)
+        self._back_up_at = BACKUP_EVERY
+        if not self._closed:
+            self._tell(Change.HAND_OVER)
 
     def _not_backed_up(self, error: Exception) -> None:
+        self._backing_up = False
+        self._back_up_at = self._not_backed_up_yet + BACKUP_EVERY
         if not isinstance(error, HingewiseError):
             raise error
+        if self._closed:
+            return
         self._message = Message(f"No backup today: {error}", MessageKind.WARNING)
         self._tell(Change.HAND_OVER | Change.MESSAGE)
 
     def close(self) -> None:
-        """Save the draft if it is not, and close the notebook."""
-        self.flush()
-        if self._not_backed_up_yet and not self._notebook.read_only:
-            with suppress(HingewiseError):  # the readings themselves are on the disk
-                back_up(self._notebook.path, self._clock().date())
+        """Save the draft if it is not, and close the notebook; does nothing for a page that is closed."""
+        if self._closed:
+            return
         self._closed = True
-        self._notebook.close()
+        self._forecaster.stop()
+        try:
+            self.flush()
+            if self._not_backed_up_yet and not self._notebook.read_only:
+                with suppress(HingewiseError):  # the readings themselves are on the disk
+                    back_up(self._notebook.path, self._clock().date())
+        finally:
+            self._notebook.close()
 
 
 def _raise(error: Exception) -> None:
