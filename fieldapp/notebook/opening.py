@@ -120,15 +120,20 @@ def _for_writing(path: Path) -> sqlite3.Connection:
 
 
 def _for_reading(path: Path) -> sqlite3.Connection:
-    for options in ("mode=ro", "mode=ro&immutable=1"):  # the second where no side file can be made either
-        db = sqlite3.connect(f"{path.resolve().as_uri()}?{options}", uri=True, isolation_level=None)
-        try:
-            db.execute("SELECT count(*) FROM sqlite_master").fetchone()
-        except sqlite3.OperationalError:
-            db.close()
-            continue
-        return db
-    return sqlite3.connect(f"{path.resolve().as_uri()}?mode=ro&immutable=1", uri=True, isolation_level=None)
+    try:
+        return _for_reading_as(path, "mode=ro")
+    except sqlite3.OperationalError:  # where no side file can be made either
+        return _for_reading_as(path, "mode=ro&immutable=1")
+
+
+def _for_reading_as(path: Path, options: str) -> sqlite3.Connection:
+    db = sqlite3.connect(f"{path.resolve().as_uri()}?{options}", uri=True, isolation_level=None)
+    try:
+        db.execute("SELECT count(*) FROM sqlite_master").fetchone()
+    except BaseException:
+        db.close()
+        raise
+    return db
 
 
 def _made_ready(

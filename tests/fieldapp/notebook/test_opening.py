@@ -2,15 +2,17 @@ from __future__ import annotations
 
 import random
 import sqlite3
-from contextlib import closing
+from contextlib import closing, suppress
 
 import pytest
 
-from fieldapp.notebook import open_notebook
+from fieldapp.dispatch import at_once
+from fieldapp.notebook import Notebook, NotebookError, open_notebook, opening
 from fieldapp.notebook.backups import back_up
 from fieldapp.notebook.carving import carve
 from fieldapp.notebook.errors import NotANotebookError
 from fieldapp.notebook.schema import APPLICATION_ID
+from fieldapp.outcrop import open_page
 
 PAGE = 4096
 
@@ -82,7 +84,9 @@ def test_a_lost_header_loses_no_reading(full, clock):
     assert list(opened.notebook.standing().values()) == readings
     opened.notebook.keep(readings[0].revised(at=clock(), note="usable"))
     opened.notebook.close()
-    assert open_notebook(path, clock).report.set_aside is None
+    again = open_notebook(path, clock)
+    assert again.report.set_aside is None
+    again.notebook.close()
 
 
 def test_one_spoilt_page_loses_only_its_own_readings(full, clock):
@@ -241,3 +245,81 @@ def test_the_file_says_whose_it_is(full):
     """The header carries the program's own mark."""
     path, _ = full
     assert int.from_bytes(path.read_bytes()[68:72]) == APPLICATION_ID
+
+
+# -- connections --------------------------------------------------------------------------------------------
+
+
+class Counted(sqlite3.Connection):
+    """A connection that says whether it was closed."""
+
+    is_open = True
+
+    def close(self):
+        """Close and note it."""
+        super().close()
+        self.is_open = False
+
+
+@pytest.fixture
+def connections(monkeypatch):
+    """Every connection made from now on."""
+    made = []
+    connect = sqlite3.connect
+
+    def counting(*args, **options):
+        made.append(connect(*args, factory=Counted, **options))
+        return made[-1]
+
+    monkeypatch.setattr(sqlite3, "connect", counting)
+    return made
+
+
+def no_notebook(path):
+    path.write_text("feature,strike_deg,dip_deg\nbedding,45,30\n" * 50)
+
+
+def no_header(path):
+    damage(path, [(0, bytes(PAGE))])
+
+
+def newer(path):
+    with closing(sqlite3.connect(path)) as db:
+        db.execute("PRAGMA user_version = 99")
+        db.execute("INSERT INTO migrations VALUES (99, 'later', 'later')")
+        db.commit()
+
+
+@pytest.mark.parametrize("may_write", [True, False])
+@pytest.mark.parametrize("spoil", [no_notebook, no_header, newer])
+def test_only_the_notebook_that_is_given_stays_open(full, clock, connections, monkeypatch, spoil, may_write):
+    """Whether opening fails, recovers or finds that it may only read: no other connection is left behind."""
+    path, _ = full
+    spoil(path)
+
+    def refused(_path):
+        error = sqlite3.OperationalError("attempt to write a readonly database")
+        error.sqlite_errorcode = sqlite3.SQLITE_READONLY
+        raise error
+
+    if not may_write:
+        monkeypatch.setattr(opening, "_for_writing", refused)
+    connections.clear()
+    with suppress(NotebookError):
+        open_notebook(path, clock).notebook.close()
+    assert connections
+    assert [db.is_open for db in connections] == [False] * len(connections)
+
+
+def test_a_page_that_does_not_come_up_leaves_the_notebook_closed(full, clock, connections, monkeypatch):
+    """An error while the page is made closes the notebook that was opened for it."""
+    path, _ = full
+
+    def fails(_self):
+        raise OSError("the storage is gone")
+
+    monkeypatch.setattr(Notebook, "settings", fails)
+    with pytest.raises(OSError, match="gone"):
+        open_page(path, clock=clock, dispatch=at_once)
+    assert connections
+    assert not any(db.is_open for db in connections)
