@@ -16,6 +16,8 @@ if TYPE_CHECKING:
     from analysis.orient.vectors import Floats
 
 FAULT_STRIKE_SE_DEG = 2.0
+# Strikes strewn evenly over the half circle have a standard deviation of 52 degrees (180 over root 12).
+_STRIKE_SE_AT_MOST_DEG = 45.0
 """How well a fault's strike is taken to be known unless said otherwise: our choice, no source."""
 
 
@@ -63,11 +65,11 @@ class Fault:
                 expected="more than 0 km",
                 mend="Leave it out where it is not known.",
             )
-        if not (math.isfinite(self.strike_se_deg) and self.strike_se_deg >= 0.0):
+        if not 0.0 <= self.strike_se_deg <= _STRIKE_SE_AT_MOST_DEG:
             raise SettingError(
                 f"{self.strike_se_deg:g} is no standard error",
                 where="fault strike error",
-                expected="0 degrees or more",
+                expected=f"0 to {_STRIKE_SE_AT_MOST_DEG:g} degrees",
             )
 
 

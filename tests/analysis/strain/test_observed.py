@@ -144,6 +144,8 @@ def test_a_fault_is_an_axis_and_its_fields_are_checked():
         ({"strike_deg": 0.0, "zone_width_km": 0.0}, "zone width"),
         ({"strike_deg": 0.0, "zone_width_km": math.inf}, "zone width"),
         ({"strike_deg": 0.0, "strike_se_deg": -1.0}, "fault strike error"),
+        ({"strike_deg": 0.0, "strike_se_deg": 45.1}, "fault strike error"),
+        ({"strike_deg": 0.0, "strike_se_deg": float("nan")}, "fault strike error"),
     ):
         with pytest.raises(SettingError) as caught:
             Fault(**wrong)
