@@ -112,9 +112,12 @@ class PageCore:
         self._settings = Settings.from_values(stored)
         self._draft = EntryDraft.from_values(notebook.draft())
         self._all = notebook.standing()
-        if self._draft.mending and self._draft.mending not in self._all:
-            self._draft = self._draft.cleared()
+        self._give_up_lost_mend()
         self._fold, self._outcrop = self._first_place(stored)
+        if "page.fold" not in stored and not notebook.read_only:
+            # Else readings taken in from elsewhere would say, at the next start, where this tablet stands.
+            with suppress(HingewiseError):
+                notebook.save_settings({"page.fold": self._fold, "page.outcrop": self._outcrop})
         self._running = self._run()
         self._forecaster = Forecaster(dispatch, self._forecast_came)
         self._message = _opening_message(self._report)
@@ -247,9 +250,16 @@ class PageCore:
     def _reload(self) -> None:
         """Read everything from the notebook again."""
         self._all = self._notebook.standing()
-        if self._draft.mending and self._draft.mending not in self._all:
-            self._draft = replace(self._draft, mending="")
+        if self._give_up_lost_mend():
+            self._save_draft()
         self._rebuild()
+
+    def _give_up_lost_mend(self) -> bool:
+        """Make a new reading of a mend whose reading is gone (its take-in was undone); tell whether it was so."""
+        if not self._draft.mending or self._draft.mending in self._all:
+            return False
+        self._draft = replace(self._draft, mending="")
+        return True
 
     def _rebuild(self) -> None:
         self._running = self._run()

@@ -82,8 +82,10 @@ class PageExchange(PageView):
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         self._undo = UndoStack()
-        self._settings = Settings.from_values(self._notebook.settings())
+        stored = self._notebook.settings()
+        self._settings = Settings.from_values(stored)
         self._draft = EntryDraft.from_values(self._notebook.draft())
+        self._fold, self._outcrop = self._first_place(stored)
         self._message = Message(f"The notebook is as in the backup {backup.stem}.")
         self._reload()
         return True

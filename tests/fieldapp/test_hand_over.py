@@ -199,3 +199,43 @@ assert "pandas" in sys.modules
         timeout=60,
     )
     assert done.returncode == 0, done.stderr
+
+
+def test_what_a_colleague_read_last_does_not_move_this_tablet(page, page_at, kept, tmp_path):
+    """After readings from another outcrop were taken in, the page opens again where it stood."""
+    theirs = page_at(tmp_path / "theirs.notebook")
+    theirs.choose_fold("Another")
+    theirs.choose_outcrop("AN-7")
+    kept(theirs, BEDDING, "200/40")
+    assert theirs.write_hand_over(tmp_path / "theirs.csv")
+    kept(page, BEDDING, "100/30")
+    before = (page.place.fold, page.place.outcrop)
+    assert page.take_in(page.preview_take_in(tmp_path / "theirs.csv"))
+    again = page_at(page.hand_over.notebook_path)
+    assert (again.place.fold, again.place.outcrop) == before
+
+
+def test_a_backup_brings_back_where_the_page_stood(page, page_at, kept):
+    """Restored, the page stands where the backup says, now and after it is opened again."""
+    page.choose_outcrop("MG-3")
+    kept(page, BEDDING, "100/30")
+    page.back_up()
+    page.choose_outcrop("MG-9")
+    assert page.restore(page.hand_over.backups[0])
+    assert page.place.outcrop == "MG-3"
+    assert page_at(page.hand_over.notebook_path).place.outcrop == "MG-3"
+
+
+def test_a_mend_whose_reading_is_taken_back_becomes_a_new_reading(page, page_at, kept, tmp_path):
+    """Digits typed over a colleague's reading outlive the undoing of its take-in, also over a restart."""
+    theirs = page_at(tmp_path / "theirs.notebook")
+    kept(theirs, BEDDING, "200/40")
+    assert theirs.write_hand_over(tmp_path / "theirs.csv")
+    assert page.take_in(page.preview_take_in(tmp_path / "theirs.csv"))
+    page.mend(page.recent[0].reading_id)
+    page.back()
+    page.digit(5)
+    assert page.undo_take_in()
+    again = page_at(page.hand_over.notebook_path)
+    for one in (page, again):
+        assert (one.entry.azimuth_text, one.entry.inclination_text, one.entry.mending) == ("200", "45", "")
