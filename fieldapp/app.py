@@ -33,7 +33,9 @@ from kivy.core.window import Window
 from kivy.metrics import Metrics
 from kivy.properties import BooleanProperty, ObjectProperty
 
+from analysis.errors import HingewiseError
 from fieldapp.devices.insets import NO_INSETS, Insets, read_insets
+from fieldapp.devices.night import is_night
 from fieldapp.leaves.keyboard import Keyboard
 from fieldapp.leaves.log import LogLeaf
 from fieldapp.leaves.outline import Outline
@@ -41,6 +43,7 @@ from fieldapp.look.form import Form
 from fieldapp.look.theme import DARK, LIGHT
 from fieldapp.mishaps import MishapLog, watch
 from fieldapp.outcrop import open_page
+from fieldapp.settings import Appearance
 from fieldapp.states import EVERYTHING, Change
 
 if TYPE_CHECKING:
@@ -102,6 +105,7 @@ class HingewiseApp(App):
         self._held: list[Callable[[], None]] = []
         self._insets = NO_INSETS
         self.read_insets: Callable[[], Insets] = read_insets
+        self.is_night: Callable[[], bool | None] = is_night
 
     # Coming and going
 
@@ -154,6 +158,7 @@ class HingewiseApp(App):
         if PAINTS.were_lost():
             get_context().reload()
         self._start_devices()
+        self._choose_theme()  # the device may have been set dark meanwhile
         self._fit_to_bars()
         self.outline.refresh(EVERYTHING)
 
@@ -190,8 +195,8 @@ class HingewiseApp(App):
 
         from fieldapp.dispatch import ThreadDispatch
 
-        self._executor = ThreadPoolExecutor(max_workers=1, thread_name_prefix="forecast")
-        elsewhere = ThreadDispatch(self._executor, mainthread(lambda call: call()))
+        executor = ThreadPoolExecutor(max_workers=1, thread_name_prefix="forecast")
+        elsewhere = ThreadDispatch(executor, mainthread(lambda call: call()))
 
         def dispatch(*work: Any) -> None:  # noqa: ANN401 - a work, its end and its failure, as ThreadDispatch takes them
             if self._stands:
@@ -199,13 +204,19 @@ class HingewiseApp(App):
             else:
                 self._held.append(lambda: elsewhere(*work))
 
-        if demo:
-            from fieldapp.notebook.demo import make_demo
+        try:
+            if demo:
+                from fieldapp.notebook.demo import make_demo
 
-            make_demo(path, self.clock_utc)
-        self.page = open_page(path, clock=self.clock_utc, dispatch=dispatch, demo=demo)
+                make_demo(path, self.clock_utc)
+            page = open_page(path, clock=self.clock_utc, dispatch=dispatch, demo=demo)
+        except BaseException:
+            executor.shutdown(wait=False, cancel_futures=True)
+            raise
+        self._close()
+        self._executor, self.page = executor, page
         self.notebook_path, self.demo = path, demo
-        self._stop_listening = [self.page.listen(self._changed), self.page.on_signal(self._signalled)]
+        self._stop_listening = [page.listen(self._changed), page.on_signal(self._signalled)]
 
     def _close(self) -> None:
         for stop in self._stop_listening:
@@ -217,10 +228,13 @@ class HingewiseApp(App):
             self._executor.shutdown(wait=False, cancel_futures=True)
 
     def change_notebook(self, path: Path, *, demo: bool) -> None:
-        """Open another notebook: the demo, or the geologist's own again."""
+        """Open another notebook: the demo, or the geologist's own again. Where it cannot be, this one stays open."""
+        try:
+            self._open(path, demo=demo)
+        except HingewiseError as error:
+            self._tell_mishap(str(error))
+            return
         self._stop_devices()
-        self._close()
-        self._open(path, demo=demo)
         self._choose_theme()
         self.outline.refresh(EVERYTHING)
         self._start_devices()
@@ -251,6 +265,7 @@ class HingewiseApp(App):
         from fieldapp.devices.choose import choose_devices
         from fieldapp.devices.clock import SystemClock
 
+        self._stop_devices()  # a device may call the app back that never went away
         if self.devices is None:
             self.devices = choose_devices(Window)
         self.attendant = Attendant(
@@ -302,7 +317,9 @@ class HingewiseApp(App):
         self.open_sheet("measure")
 
     def _choose_theme(self) -> None:
-        self.theme = DARK if self.page.settings.appearance.value == "dark" else LIGHT
+        chosen = self.page.settings.appearance
+        dark = bool(self.is_night()) if chosen is Appearance.SYSTEM else chosen is Appearance.DARK
+        self.theme = DARK if dark else LIGHT
         # The ground of the page is what the window is cleared with: a rectangle over all of it would cost a fifth
         # of a frame.
         Window.clearcolor = self.theme.paper

@@ -93,7 +93,7 @@ CHOICES: tuple[tuple[str, str, str, tuple[tuple[object, str], ...]], ...] = (
     ("Keys for", "", "left_handed", ((False, "Right hand"), (True, "Left hand"))),
     (
         "Look",
-        "",
+        "As the device: dark where Android is, as the page opens or comes back. Other systems: light.",
         "appearance",
         ((Appearance.SYSTEM, "As the device"), (Appearance.LIGHT, "Light"), (Appearance.DARK, "Dark")),
     ),

@@ -169,6 +169,38 @@ def test_a_lost_context_is_noticed(driver):
     assert not PAINTS.were_lost()
 
 
+def lose_the_context():
+    """Take away all that a GL context holds: textures, vertices and shaders."""
+    import struct
+
+    from kivy.graphics import opengl as gl
+
+    kinds = (
+        (gl.glIsTexture, lambda number: gl.glDeleteTextures(1, struct.pack("=I", number))),
+        (gl.glIsBuffer, lambda number: gl.glDeleteBuffers(1, struct.pack("=I", number))),
+        (gl.glIsProgram, gl.glDeleteProgram),
+    )
+    for is_there, delete in kinds:
+        found = [number for number in range(1, 200_000) if is_there(number)]
+        assert found
+        for number in found:
+            delete(number)
+
+
+@pytest.mark.parametrize("leaf", ["Log", "Check"])
+def test_a_whole_lost_context_is_made_anew_on_resume(driver, clock, leaf):
+    """With textures, vertices and shaders gone the loss is noticed, and the page looks as before after resuming."""
+    type_into(driver.app.page, fold(20), clock)
+    driver.app.outline.show(leaf)
+    pixels(driver)
+    before = pixels(driver)
+    driver.app.dispatch("on_pause")
+    lose_the_context()
+    driver.app.dispatch("on_resume")
+    pixels(driver)
+    assert share_that_differs(before, pixels(driver)) == 0.0
+
+
 def test_low_memory_stores_the_entry(driver, tmp_path, clock):
     """A warning of the system loses nothing, and the page goes on."""
     from fieldapp.dispatch import at_once
@@ -231,6 +263,92 @@ def test_the_field_typed_into_stays_in_sight_over_the_keyboard(driver):
     driver.app.close_sheets()
     driver.frames(2)
     assert not field.focus
+
+
+def test_a_keyboard_over_the_field_lifts_the_page(driver):
+    """A keyboard of the device that would hide the field lifts the page by so much that the field stands over it."""
+    driver.app.open_sheet("note")
+    driver.frames(2)
+    field = driver.app.outline.sheet.fields.ids.note
+    field.focus = True
+    before = pixels(driver)
+    bottom = round(field.to_window(0, field.y)[1])
+    high = bottom + 120
+    driver.window._kheight = high  # what Kivy sets from the height that Android tells
+    lifted = pixels(driver)
+    driver.window._kheight = 0
+    assert share_that_differs(before, lifted) > 0.05
+    # Rows are counted from below. The cursor blinks.
+    rows = round(field.height)
+    assert share_that_differs(before[bottom : bottom + rows], lifted[high : high + rows]) < 0.02
+    assert share_that_differs(before, pixels(driver)) < 0.02
+
+
+def test_the_page_follows_the_device_between_light_and_dark(driver):
+    """As the device: looked at when the page comes back; light and dark that were chosen stay."""
+    from dataclasses import replace
+
+    from fieldapp.look.theme import DARK, LIGHT
+    from fieldapp.settings import Appearance
+
+    app = driver.app
+    assert app.page.settings.appearance is Appearance.SYSTEM
+    assert app.theme is LIGHT  # a desk is not asked
+    light = pixels(driver).mean()
+    app.is_night = lambda: True
+    app.dispatch("on_pause")
+    app.dispatch("on_resume")
+    assert app.theme is DARK
+    assert pixels(driver).mean() < light / 2.0
+    app.page.change_settings(replace(app.page.settings, appearance=Appearance.LIGHT))
+    assert app.theme is LIGHT
+    app.is_night = lambda: False
+    app.page.change_settings(replace(app.page.settings, appearance=Appearance.DARK))
+    app.dispatch("on_resume")
+    assert app.theme is DARK
+    app.page.change_settings(replace(app.page.settings, appearance=Appearance.SYSTEM))
+    assert app.theme is LIGHT
+
+
+def test_a_demo_that_cannot_be_made_leaves_the_own_notebook_open(driver, monkeypatch, clock):
+    """On a full storage the demo does not open; the page says so and goes on keeping readings."""
+    from fieldapp.notebook import demo
+    from fieldapp.notebook.errors import StorageFullError
+
+    def full(path, _clock):
+        raise StorageFullError("the storage is full, nothing was written", where=path.name)
+
+    monkeypatch.setattr(demo, "make_demo", full)
+    app = driver.app
+    app.open_demo()
+    assert "full" in app.outline.trouble
+    assert not app.page.place.demo
+    assert not app.demo
+    type_into(app.page, fold(3, outcrops=1), clock)
+    driver.frames(3)
+    assert len(app.page.standing) == 3
+
+
+def test_another_notebook_while_a_forecast_is_worked_out_does_no_harm(driver, clock):
+    """Work of the page before, under way and waiting, comes to nothing and says nothing."""
+    app = driver.app
+    type_into(app.page, fold(12, outcrops=1), clock)
+    before = app.page
+    app.open_demo()
+    driver.frames(10)
+    app._executor.submit(int).result()
+    driver.frames(10)  # the driver fails on any mishap
+    assert app.page is not before
+    assert app.page.place.demo
+
+
+def test_a_return_without_a_leave_listens_once(open_app, counting):
+    """Coming back without having gone starts no second receiver beside the first."""
+    driver = open_app(devices=counting)
+    driver.frames(3)
+    driver.app.dispatch("on_resume")
+    driver.app.dispatch("on_resume")
+    assert counting.position.calls == ["start", "stop", "start", "stop", "start"]
 
 
 def test_stopping_twice_or_while_a_sheet_is_open_does_no_harm(open_app, tmp_path, clock):
