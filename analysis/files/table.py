@@ -177,12 +177,20 @@ class ReadingTable:
             plane = self.feature < 2
             made = axis_vectors(
                 plane,
-                np.where(plane, self.column("strike_deg"), self.column("trend_deg")),
-                np.where(plane, self.column("dip_deg"), self.column("plunge_deg")),
+                self._of_either(plane, "strike_deg", "trend_deg"),
+                self._of_either(plane, "dip_deg", "plunge_deg"),
             )
             made.flags.writeable = False
             self._vectors = made
         return self._vectors
+
+    def _of_either(self, plane: Bools, of_planes: str, of_lines: str) -> Floats:
+        """Give one column for planes and another for lines, (N,); columns are taken only where there are some."""
+        if plane.all():
+            return self.column(of_planes)
+        if not plane.any():
+            return self.column(of_lines)
+        return np.where(plane, self.column(of_planes), self.column(of_lines))
 
     @property
     def reading_id(self) -> Array:
@@ -242,14 +250,15 @@ class ReadingTable:
 
     def _fold_rows(self) -> dict[str, npt.NDArray[np.intp]]:
         if self._rows_by_fold is None:
-            rows = np.flatnonzero(self.standing)
-            fold = self.fold
-            codes = fold.codes[rows]
+            standing, fold = self.standing, self.fold
+            rows = None if standing.all() else np.flatnonzero(standing)
+            codes = fold.codes if rows is None else fold.codes[rows]
             if len(fold.names) <= 2**16:  # sorted by radix, in a fraction of the time
                 codes = codes.astype(np.uint8 if len(fold.names) <= 2**8 else np.uint16)
             ordered = np.argsort(codes, kind="stable")
-            present, starts = np.unique(codes[ordered], return_index=True)
-            groups = np.split(rows[ordered], starts[1:])
+            counts = np.bincount(codes, minlength=1)
+            present = np.flatnonzero(counts)
+            groups = np.split(ordered if rows is None else rows[ordered], np.cumsum(counts[present])[:-1])
             found = sorted(zip(present.tolist(), groups, strict=False), key=lambda group: int(group[1][0]))
             self._rows_by_fold = {fold.names[code]: group for code, group in found}
         return self._rows_by_fold
