@@ -304,6 +304,8 @@ def measure(what, path):
     import pandas as pd  # noqa: PLC0415 - the imports are no part of the measurement
     from bench_csv import _memory_kib  # noqa: PLC0415
 
+    import analysis.files.arrowed  # noqa: PLC0415 - the command imports both when it reads a file
+    import analysis.files.csvfile  # noqa: F401, PLC0415
     from analysis.cli.check import check_tables  # noqa: PLC0415
     from analysis.cli.common import chosen_folds, read_files  # noqa: PLC0415
     from analysis.fold.settings import CheckSettings  # noqa: PLC0415
