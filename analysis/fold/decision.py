@@ -25,8 +25,10 @@ from analysis.stats.quantiles import t_quantile
 
 if TYPE_CHECKING:
     from analysis.fold.fits import FoldFits
+    from analysis.fold.limbs import Limbs
     from analysis.fold.settings import CheckSettings
     from analysis.fold.transection import Transection
+    from analysis.stats.axes import AxisFit
     from analysis.stats.sums import RunningSums
 
 
@@ -44,10 +46,12 @@ def decide(
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
         angle = {} if transection is None or check.hinge is None else _angle(transection)
         because = tuple(waiting) or (blocks.undetermined(check.hinge, check.cleavage, counts),)
-        return _advised(check.changed(**angle, because=because, warnings=tuple(warnings)), sums)
+        usable = check.hinge is not None and _is_usable(check.hinge.fit, check.limbs)
+        return _advised(check, sums, hinge_usable=usable, **angle, because=because, warnings=tuple(warnings))
 
     clear = bool(hinge_is_clear(check.hinge.fit))
     cluster = blocks.one_cluster(check.hinge.fit, check.limbs)
+    usable = clear and not cluster
     waits, blocked, notes = _kept_back(check, sums, transection, fits)
     waiting += waits
     progress = (
@@ -76,11 +80,16 @@ def decide(
     )
     if blocked:
         return _advised(
-            check.changed(verdict=Verdict.CANNOT_BE_SETTLED, because=tuple(blocked), blocked=True), sums
+            check,
+            sums,
+            hinge_usable=usable,
+            verdict=Verdict.CANNOT_BE_SETTLED,
+            because=tuple(blocked),
+            blocked=True,
         )
     if cluster and (seen.transected or seen.axial_planar):
         verdict = Verdict.CANNOT_BE_SETTLED if blocks.should_be_clear(counts) else Verdict.KEEP_READING
-        return _advised(check.changed(verdict=verdict, because=(cluster,), blocked=True), sums)
+        return _advised(check, sums, hinge_usable=usable, verdict=verdict, because=(cluster,), blocked=True)
     if seen.transected:
         return check.changed(verdict=Verdict.TRANSECTED, because=_why_transected(check, transection))
     if seen.axial_planar:
@@ -89,7 +98,7 @@ def decide(
         waiting.append(
             f"The interval neither leaves out 0 nor lies within ±{degrees(settings.margin_deg)} closely enough yet."
         )
-    check = _advised(check.changed(because=tuple(waiting)), sums)
+    check = _advised(check, sums, hinge_usable=usable, because=tuple(waiting))
     return add_forecast(check) if forecast else check
 
 
@@ -240,8 +249,12 @@ def _why_axial_planar(check: FoldCheck, transection: Transection) -> tuple[str, 
     return why, _scale(transection)
 
 
-def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
-    """Add the next best reading."""
+def _is_usable(hinge: AxisFit, limbs: Limbs | None) -> bool:
+    return bool(hinge_is_clear(hinge)) and not blocks.one_cluster(hinge, limbs)
+
+
+def _advised(check: FoldCheck, sums: RunningSums, *, hinge_usable: bool, **fields: Any) -> FoldCheck:  # noqa: ANN401 - whatever a check holds
+    """Add some fields and the next best reading."""
     counts, numbers = check.readings, check.numbers
     other = Feature.INTERSECTION if check.cleavage is None and counts.intersection else Feature.CLEAVAGE
     if blocks.missing_for_hinge(counts) or blocks.missing_for_cleavage(counts):
@@ -249,11 +262,7 @@ def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
             1.0 - float(stream_progress(counts.bedding, counts.hinge)),
             1.0 - float(stream_progress(counts.cleavage, counts.intersection)),
         )
-    elif (
-        check.hinge is None
-        or not hinge_is_clear(check.hinge.fit)
-        or blocks.one_cluster(check.hinge.fit, check.limbs)
-    ):
+    elif not hinge_usable:
         gains = (1.0, 0.0)  # nothing can be said before the hinge is clear
     elif numbers is None:
         gains = (0.0, 1.0)
@@ -264,6 +273,7 @@ def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
         )
     pole = None if check.cleavage is None else check.cleavage.vector
     return check.changed(
+        **fields,
         next_reading=next_reading(
             sums,
             None if check.hinge is None else check.hinge.fit,
@@ -273,5 +283,5 @@ def _advised(check: FoldCheck, sums: RunningSums) -> FoldCheck:
             gain_cleavage=gains[1],
             other=other,
             new_outcrop=numbers is not None and numbers.by_outcrop,
-        )
+        ),
     )

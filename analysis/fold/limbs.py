@@ -65,7 +65,7 @@ def sides(cells: Floats, across: Floats) -> npt.NDArray[np.int64]:
     `across` (3, 2) are two directions at right angles to the hinge. Angles about the hinge are doubled, since
     poles are axes; the cloud of doubled angles is cut across its longest extent.
     """
-    doubled = _doubled_angles(cells, across)
+    doubled = _about_hinge(cells, across)[:, :2]
     counts = cells[:, COUNT]
     away = doubled / counts[:, np.newaxis] - doubled.sum(axis=0) / counts.sum()
     _, vectors = np.linalg.eigh((away * counts[:, np.newaxis]).T @ away)
@@ -87,23 +87,19 @@ def find_limbs(
     """
     if not (side.any() and not side.all()):
         return None
-    sums = np.stack([cells[side == k].sum(axis=0) for k in (0, 1)])
-    moment = tensor(sums)
-    doubled = _doubled_angles(sums, across)
-    radius = np.linalg.norm(doubled, axis=-1)
-    about_hinge = np.trace(across.T @ moment @ across, axis1=-2, axis2=-1)
-    gathered = np.clip(radius / np.maximum(about_hinge, 1e-300), 1e-9, 1.0)
-    spread = 0.5 * np.degrees(np.sqrt(-2.0 * np.log(gathered)))
-    angles = np.arctan2(doubled[:, 1], doubled[:, 0])
-    apart = 0.5 * math.degrees(abs((float(angles[1] - angles[0]) + math.pi) % (2.0 * math.pi) - math.pi))
-    counts = sums[:, COUNT]
-    pooled = math.sqrt(float(counts @ spread**2) / float(counts.sum()))
+    sums = np.array([1 - side, side], dtype=float) @ cells
+    about = _about_hinge(sums, across).tolist()
+    counts = sums[:, COUNT].tolist()
+    spread = [_spread_deg(*limb) for limb in about]
+    turn = math.atan2(about[1][1], about[1][0]) - math.atan2(about[0][1], about[0][0])
+    apart = 0.5 * math.degrees(abs((turn + math.pi) % (2.0 * math.pi) - math.pi))
+    pooled = math.sqrt(sum(n * d * d for n, d in zip(counts, spread, strict=True)) / sum(counts))
     if apart < _TWO_LIMBS_FROM * pooled or apart < 1.0:
         return None
-    poles = eigen(moment)[1][..., 0]
+    poles = eigen(tensor(sums))[1][..., 0]
     planes = (Plane.from_pole(poles[0]), Plane.from_pole(poles[1]))
     first, second = (
-        Limb(plane, round(float(count)), float(width), name)
+        Limb(plane, round(count), width, name)
         for plane, count, width, name in zip(planes, counts, spread, _names(*planes), strict=True)
     )
     return Limbs(first, second, *_bisected(poles, cleavage))
@@ -124,17 +120,25 @@ def _names(first: Plane, second: Plane) -> tuple[str, str]:
 def _bisected(poles: Floats, cleavage: Floats | None) -> tuple[float, Plane]:
     """Interlimb angle, degrees, and axial surface of two limbs with these poles, shape (2, 3)."""
     up = -lower_hemisphere(poles)
-    between = float(np.degrees(np.arccos(np.clip(up[0] @ up[1], -1.0, 1.0))))
+    between = math.degrees(math.acos(max(-1.0, min(1.0, float(up[0] @ up[1])))))
     upright, lying = up[0] - up[1], up[0] + up[1]
     if cleavage is not None:
-        towards = [abs(float(axis @ cleavage)) / float(np.linalg.norm(axis)) for axis in (upright, lying)]
+        towards = [abs(float(axis @ cleavage)) / math.sqrt(float(axis @ axis)) for axis in (upright, lying)]
         if towards[1] > towards[0]:
             return between, Plane.from_pole(lying)
     return 180.0 - between, Plane.from_pole(upright)
 
 
-def _doubled_angles(rows: Floats, across: Floats) -> Floats:
-    """Sum of (cos 2a, sin 2a) r^2, shape (..., 2), over axes at angle a about the hinge and r off it."""
-    x, y = across.T
-    cosine = product_pairs(x, x) - product_pairs(y, y)
-    return np.asarray(rows[..., TENSOR] @ np.stack([cosine, 2.0 * product_pairs(x, y)], axis=-1))
+def _about_hinge(rows: Floats, across: Floats) -> Floats:
+    """Sums of (cos 2a, sin 2a, 1) r^2, shape (N, 3), over axes at angle a about the hinge and r off it.
+
+    `rows` (N, 24) are moments, and `across` (3, 2) two directions at right angles to the hinge.
+    """
+    x_x, y_y, x_y = product_pairs(across.T[[0, 1, 0]], across.T[[0, 1, 1]])
+    return np.asarray(rows[:, TENSOR] @ np.array([x_x - y_y, 2.0 * x_y, x_x + y_y]).T)
+
+
+def _spread_deg(cosine: float, sine: float, squared: float) -> float:
+    """Spread, degrees, about the hinge of axes with these sums of `_about_hinge` (circular standard deviation)."""
+    gathered = min(max(math.hypot(cosine, sine) / max(squared, 1e-300), 1e-9), 1.0)
+    return 0.5 * math.degrees(math.sqrt(-2.0 * math.log(gathered)))

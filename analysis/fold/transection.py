@@ -62,7 +62,7 @@ class Transection(NamedTuple):
     """
 
     delta_deg: Floats
-    has_sense: Floats
+    has_sense: npt.NDArray[np.bool_]
     hinge_variance: Floats
     cleavage_variance: Floats
     steady_hinge_variance: Floats
@@ -169,8 +169,8 @@ def fit_fold(rows: Floats, axes: Sequence[FoldAxis]) -> AxisFit:
 def transection(hinge: AxisFit, cleavage: AxisFit) -> Transection:
     """Transection from the fits of hinge and cleavage pole, whose leading shapes broadcast."""
     pole = cleavage.vector
-    sine = np.sum(hinge.vector * pole, axis=-1)
-    turning = np.sum(cross(hinge.vector, pole) * -DOWN, axis=-1)
+    sine = (hinge.vector * pole).sum(axis=-1)
+    turning = -cross(hinge.vector, pole)[..., 2]
     has_sense = np.abs(turning) >= _NO_SENSE_BELOW
     clockwise = np.where(sine * turning >= 0.0, 1.0, -1.0)
     size = np.degrees(np.arcsin(np.minimum(np.abs(sine), 1.0)))
@@ -188,8 +188,8 @@ def transection(hinge: AxisFit, cleavage: AxisFit) -> Transection:
     outcrops = np.count_nonzero(hinge.outcrop_readings + cleavage.outcrop_readings > 0.5, axis=-1).astype(
         float
     )
-    pull = np.sum(hinge.influence * hinge_pull + cleavage.influence * cleavage_pull, axis=-1)
-    between = np.sum(pull * pull, axis=-1) * scale * outcrops / outcrop_freedom(outcrops)
+    pull = (hinge.influence * hinge_pull + cleavage.influence * cleavage_pull).sum(axis=-1)
+    between = (pull * pull).sum(axis=-1) * scale * outcrops / outcrop_freedom(outcrops)
     spare_hinge = hinge.readings - np.where(hinge.readings_across > 0.5, 2.0, 1.0)
     spare_cleavage = cleavage.readings - 1.0
     fixed = np.where(
@@ -219,7 +219,7 @@ def outcrop_freedom(outcrops: Floats) -> Floats:
 def _along(pull: Floats, covariance: Floats) -> Floats:
     """Variance, (...), along a pull (..., 1, 2)."""
     with np.errstate(invalid="ignore"):
-        part = np.sum((pull @ covariance) * pull, axis=(-2, -1))
+        part = ((pull @ covariance) * pull).sum(axis=(-2, -1))
     # Infinite times zero is not known; a tiny negative is rounding where there is no scatter.
     return np.where(np.isnan(part), np.inf, np.maximum(part, 0.0))
 

@@ -71,7 +71,7 @@ def girdle_by_chance(hinge: AxisFit) -> Floats:
     from_lines = hinge.freedom > hinge.readings - 1.5  # a line gives two residuals, a bedding pole one
     with np.errstate(invalid="ignore", divide="ignore"):
         evenness = 4.0 * np.maximum(least, 0.0) * middle / (least + middle) ** 2
-        chance = np.clip(evenness, 0.0, 1.0) ** (0.5 * np.maximum(hinge.freedom, 0.0))
+        chance = np.minimum(np.maximum(evenness, 0.0), 1.0) ** (0.5 * np.maximum(hinge.freedom, 0.0))
     return np.where(from_lines, 0.0, np.where(np.isfinite(chance), chance, 1.0))
 
 

@@ -171,14 +171,14 @@ class _Held:
 
     def variances(self, along_axis: Floats, freedom: Floats) -> Floats:
         """Variance of one reading about the fits, which share their degrees of freedom among the streams."""
-        squares = np.where(self._along, np.sum(self.tensors[..., :3], axis=-1) - along_axis, along_axis)
+        squares = np.where(self._along, self.tensors[..., :3].sum(axis=-1) - along_axis, along_axis)
         share = np.maximum(freedom, 0.0) / np.maximum(freedom + 2.0, 1.0)
         return self._known_or(squares, self.residuals * share[..., np.newaxis])
 
     def even_meat(self, weight: Floats, along_axis: Floats, across: Floats) -> Floats:
         """Middle of the sandwich, (fits, ..., 2, 2), if readings scatter evenly; `weight` is w^2 times variance."""
         of_poles = tensor_of(_mixed(np.where(self._along, 0.0, weight), self.tensors))
-        of_lines = np.sum(np.where(self._along, weight * along_axis, 0.0), axis=-1)
+        of_lines = np.where(self._along, weight * along_axis, 0.0).sum(axis=-1)
         even = across.swapaxes(-1, -2) @ of_poles @ across + of_lines[..., np.newaxis, np.newaxis] * _EVEN
         return np.asarray(even)
 
@@ -236,15 +236,15 @@ def fit_axes(rows: Floats, roles: npt.ArrayLike, known: KnownAxis | None = None)
     weight = held.weights()
     values, vectors = eigen(tensor_of(_mixed(weight, held.tensors)))
     axis, across = vectors[..., 0], vectors[..., 1:]
-    turned = across.swapaxes(-1, -2)
-    reach = _reach(values, np.sum(np.abs(weight) * held.counts, axis=-1))
+    pairs = product_pairs(vectors.swapaxes(-1, -2), axis[..., np.newaxis, :])
+    along, pairs = pairs[..., 0, :], pairs[..., 1:, :]
+    reach = _reach(values, (np.abs(weight) * held.counts).sum(axis=-1))
 
-    freedom = np.sum(held.residuals, axis=-1) - 2.0
-    along_axis = (held.tensors @ product_pairs(axis, axis)[..., np.newaxis])[..., 0]
+    freedom = held.residuals.sum(axis=-1) - 2.0
+    along_axis = (held.tensors @ along[..., np.newaxis])[..., 0]
     variance = held.variances(along_axis, freedom)
     squared = weight * weight
     even_meat = held.even_meat(squared * variance, along_axis, across)
-    pairs = product_pairs(turned, axis[..., np.newaxis, :])
     meat = pairs @ fourth_of(_mixed(squared[..., :measured], totals[..., :measured, FOURTH]))
     meat = meat @ pairs.swapaxes(-1, -2)
     if known is not None:
@@ -257,7 +257,7 @@ def fit_axes(rows: Floats, roles: npt.ArrayLike, known: KnownAxis | None = None)
     by_outcrop = rows[..., TENSOR].reshape(*rows.shape[:-2], -1) @ pulls
     bears = (role[..., :measured] != UNUSED).astype(float)[..., np.newaxis]
 
-    count = np.sum(held.used, axis=-1)
+    count = held.used.sum(axis=-1)
     determined = np.isfinite(reach) & (count > 1.0)[..., np.newaxis]
     both = determined[..., :, np.newaxis] & determined[..., np.newaxis, :]
     reach = np.where(determined, reach, 0.0)
