@@ -17,6 +17,7 @@ from typing import TYPE_CHECKING, Any, Final
 import numpy as np
 
 from analysis.errors import SettingError
+from analysis.files.arrowed import parse_clean
 from analysis.files.csvfile import read_table
 from analysis.files.pieces import header_of, pieces_of, pieces_of_stream
 from analysis.survey.parquet import columns_of, is_parquet, parquet_parts, parquet_texts
@@ -101,13 +102,14 @@ def tables_of(part: Part) -> Iterator[ReadingTable]:
     """Read a part in pieces. Raises CsvError."""
     if part.row_groups is None:
         if part.whole:
-            yield read_table(part.path)
+            yield read_table(part.path, clean_parser=parse_clean)
         else:
             yield from pieces_of(part.path)
         return
     texts = parquet_texts(Path(part.path), part.row_groups)
     if part.whole:
-        yield read_table(_named(part.path, b"".join(_one_header(texts))))
+        named = _named(part.path, b"".join(_one_header(texts)))
+        yield read_table(named, clean_parser=parse_clean)
         return
     line = part.first_row
     for text in texts:
