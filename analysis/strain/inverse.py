@@ -14,7 +14,7 @@ import numpy.typing as npt
 
 from analysis.stats.quantiles import f2_quantile
 from analysis.strain import shear
-from analysis.strain.misfit import Metric
+from analysis.strain.misfit import Metric, misfit_to_segments
 from analysis.strain.observed import Fault, FoldPair, fold_fault_angle_deg, pair_covariance
 
 if TYPE_CHECKING:
@@ -36,8 +36,9 @@ class Region:
         (g,), shear strain along the fault, t cos(convergence); evenly spaced in its logarithm.
     onset
         (o,), share of the strain that had passed when cleavage began to record.
-    misfit
-        (a, g, o), squared Mahalanobis distance of the pair from what each cell predicts.
+    away
+        (a, g, o, 2), from the pair to what each grid point predicts, in standard errors along two directions at right
+        angles in the metric of the pair's covariance.
     limit
         Misfit on the outline of the region of this confidence.
     confidence
@@ -48,26 +49,27 @@ class Region:
     convergence_deg: Floats
     gamma: Floats
     onset: Floats
-    misfit: Floats
+    away: Floats
     limit: float
     confidence: float
 
     @property
+    def misfit(self) -> Floats:
+        """Squared Mahalanobis distance, (a, g, o), of the pair from what each grid point predicts."""
+        return np.asarray(np.sum(self.away * self.away, axis=-1))
+
+    @property
     def inside(self) -> npt.NDArray[np.bool_]:
-        """Which cells, (a, g, o), the readings do not rule out."""
+        """Which grid points, (a, g, o), the readings do not rule out."""
         return self.misfit <= self.limit
 
     def map(self) -> Floats:
-        """Misfit, (a, g), over convergence and shear at the onset that fits best."""
-        return np.asarray(np.min(self.misfit, axis=2))
+        """Misfit, (a, g), over convergence and shear at the onset that fits best, on the grid or between."""
+        return _least_along(self.away)
 
     def onset_map(self) -> Floats:
-        """Misfit, (g, o), over shear and onset at the convergence that fits best."""
-        return np.asarray(np.min(self.misfit, axis=0))
-
-    def best_onset(self) -> Floats:
-        """Onset, (a, g), that fits best in each cell of `map`."""
-        return np.asarray(self.onset[np.argmin(self.misfit, axis=2)])
+        """Misfit, (g, o), over shear and onset at the convergence that fits best, on the grid or between."""
+        return _least_along(np.moveaxis(self.away, 0, 2))
 
     def outline(self) -> Floats:
         """Outline on `map` as line pieces, (n, 2, 2): ends by (convergence_deg, gamma); maybe none."""
@@ -92,7 +94,7 @@ def fitting_region(
     """Find the convergence, shear and onset that fit the pair; None while it has no transection.
 
     `cells` are the sizes of the grid: convergence 0 to 86 degrees, shear up to what the hinge's lowest likely
-    angle allows, onset 0 to 0.98. The region is that of the ellipse of the pair: F(2, df).
+    angle allows, onset 0 to 1. The region is that of the ellipse of the pair: F(2, df).
     """
     covariance = pair_covariance(pair, fault)
     if pair.transection_deg is None or not np.all(np.isfinite(covariance)):
@@ -102,7 +104,7 @@ def fitting_region(
     greatest = max(1.2 * float(shear.gamma_of_angle(lowest)), 1.0)
     convergence = np.linspace(0.0, 86.0, cells[0])
     gamma = np.geomspace(_LEAST_GAMMA, greatest, cells[1])
-    onset = np.linspace(0.0, 0.98, cells[2])
+    onset = np.linspace(0.0, 1.0, cells[2])
     along = np.cos(np.radians(convergence))[:, np.newaxis, np.newaxis]
     predicted = shear.transpression(
         convergence[:, np.newaxis, np.newaxis], gamma[np.newaxis, :, np.newaxis] / along, onset
@@ -119,10 +121,20 @@ def fitting_region(
         convergence_deg=convergence,
         gamma=gamma,
         onset=onset,
-        misfit=Metric.of(covariance).misfit(places, datum),
+        away=(places - datum) @ Metric.of(covariance).whitener.T,
         limit=float(limit),
         confidence=confidence,
     )
+
+
+def _least_along(away: Floats) -> Floats:
+    """Least misfit, (m, n), along the curves (m, n, points, 2) that grid points lie on.
+
+    What is predicted changes from point to point by more than errors allow where shear is strong: the nearest place
+    of a curve may lie anywhere between two of them.
+    """
+    misfit, _ = misfit_to_segments(away[..., :-1, :], np.diff(away, axis=-2))
+    return np.asarray(misfit.min(axis=-1))
 
 
 # The edges of a cell, and which of them a contour joins for each pattern of corners below the level. Corners

@@ -61,12 +61,7 @@ class Metric(NamedTuple):
     def nearest(self, curve: Floats, datum: Floats) -> Nearest:
         """Nearest point of a polyline (n, 2), n >= 2, to the datum (2,)."""
         start, end = curve[:-1], curve[1:]
-        from_start = (datum - start) @ self.whitener.T
-        along = (end - start) @ self.whitener.T
-        length = np.maximum(np.sum(along * along, axis=-1), 1e-300)
-        share = np.clip(np.sum(from_start * along, axis=-1) / length, 0.0, 1.0)
-        away = from_start - share[:, np.newaxis] * along
-        misfit = np.sum(away * away, axis=-1)
+        misfit, share = misfit_to_segments((start - datum) @ self.whitener.T, (end - start) @ self.whitener.T)
         best = int(np.argmin(misfit))
         return Nearest(float(misfit[best]), start[best] + share[best] * (end[best] - start[best]))
 
@@ -79,6 +74,17 @@ class Metric(NamedTuple):
         if math.isinf(df):
             return density - 0.5 * misfit
         return density - 0.5 * (df + 2.0) * math.log1p(misfit / df)
+
+
+def misfit_to_segments(start: Floats, along: Floats) -> tuple[Floats, Floats]:
+    """Misfit, (...), of the nearest point of straight pieces, and the share of each, 0 to 1, at which it lies.
+
+    `start` and `along` (..., 2), in standard errors, run from the datum to where a piece starts, and along it.
+    """
+    length = np.maximum(np.sum(along * along, axis=-1), 1e-300)
+    share = np.clip(-np.sum(start * along, axis=-1) / length, 0.0, 1.0)
+    away = start + share[..., np.newaxis] * along
+    return np.asarray(np.sum(away * away, axis=-1)), share
 
 
 @lru_cache(maxsize=1)

@@ -76,6 +76,19 @@ def test_the_outline_lies_where_the_map_crosses_its_limit():
             assert near.min() <= region.limit <= near.max()
 
 
+def test_the_maps_do_not_hang_on_how_fine_the_grid_is_that_they_look_along():
+    """Beside the fault, where shear is strong, coarse steps of onset or convergence leave no holes in the region."""
+    near_fault = FoldPair(
+        hinge_trend_deg=5.3, transection_deg=3.0, trend_variance_deg2=5.0, cleavage_part_deg2=0.25
+    )
+    coarse, fine = (fitting_region(near_fault, FAULT, cells=(44, 64, n)) for n in (24, 1501))
+    assert np.array_equal(coarse.map() <= coarse.limit, fine.map() <= fine.limit)
+    finer = fitting_region(near_fault, FAULT, cells=(862, 64, 24))
+    assert np.array_equal(coarse.onset_map() <= coarse.limit, finer.onset_map() <= finer.limit)
+    # The nearest grid point alone would leave holes.
+    assert np.any((np.min(coarse.misfit, axis=2) > coarse.limit) & (coarse.map() <= coarse.limit))
+
+
 def test_a_contour_of_a_cone_is_a_circle():
     """Marching squares on a distance gives points at that distance, and a closed ring."""
     x, y = np.linspace(-2, 2, 81), np.linspace(-3, 3, 121)
