@@ -18,7 +18,7 @@ from analysis.strain import shear
 from analysis.strain.cautions import CAUTIONS
 from analysis.strain.curves import FaultCurves, fault_curves
 from analysis.strain.frame import Sense
-from analysis.strain.wording import headline
+from analysis.strain.wording import headline, two_digits
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -31,6 +31,7 @@ if TYPE_CHECKING:
 
 _SHEAR_TICKS: Final = (0.0, 0.5, 1.0, 2.0, 5.0, 10.0)
 _DOTS_PER_INCH: Final = 150.0
+_HALF_LENGTH: Final = 2.6  # of the piece of a shear zone that is drawn, in halves of its width
 _ZONE_TYPE: Final[dict[str, Any]] = {"fontsize": 10.5, "va": "center"}
 
 
@@ -105,7 +106,7 @@ def _turning(
         _draw_zone(palette, axes, passed, recorded, sign)
         _zone_words(palette, figure, 0.7925 - 0.255 * row, passed, recorded=recorded, sign=sign)
     name = "Dextral" if sign < 0 else "Sinistral"
-    title = f"{name} shear of {gamma:g}: folds and strain ellipse from above"
+    title = f"{name} shear of {two_digits(gamma)}: folds and strain ellipse from above"
     figure.text(0.04, 0.965, title, fontsize=13, color=palette.ink, weight="bold", va="top")
     if fault_strike_deg is not None:
         _north_arrow(palette, figure, fault_strike_deg)
@@ -303,7 +304,7 @@ def _draw_zone(palette: Palette, axes: Axes, gamma: float, recorded: float, sign
     from matplotlib.patches import FancyArrowPatch  # noqa: PLC0415 - loaded when a figure is drawn
 
     axes.set_facecolor(palette.paper)
-    axes.set_xlim(-2.65, 2.65)
+    axes.set_xlim(-_HALF_LENGTH, _HALF_LENGTH)
     axes.set_ylim(-1.35, 1.35)
     axes.set_aspect("equal")
     axes.axis("off")
@@ -311,7 +312,8 @@ def _draw_zone(palette: Palette, axes: Axes, gamma: float, recorded: float, sign
     hinge, axis = _directions(gamma, recorded)
     # Hinges that began 0.7 apart along the fault at 45 degrees, carried along: they cross the zone at y = 0.
     across = np.array([-1.0, 1.0]) * 1.0
-    for start in np.arange(-8.0, 8.01, 0.7):
+    furthest = np.ceil((_HALF_LENGTH + 1.0 / np.tan(hinge)) / 0.7)
+    for start in 0.7 * np.arange(-furthest, furthest + 1.0):
         trace = np.stack([start + across / np.tan(hinge), across], axis=-1) * page
         axes.plot(*trace.T, color=palette.rule, lw=2.2, zorder=1, clip_on=True)
     turn = np.linspace(0.0, 2.0 * np.pi, 181)
@@ -329,7 +331,7 @@ def _draw_zone(palette: Palette, axes: Axes, gamma: float, recorded: float, sign
         line = np.array([[-1.0], [1.0]]) * reach * np.array([np.cos(angle), np.sin(angle)]) * page
         axes.plot(*line.T, color=colour, ls=style, lw=width, zorder=4)
     for y in (-1.0, 1.0):
-        axes.plot([-2.6, 2.6], [y, y], color=palette.ink, lw=1.8, zorder=5)
+        axes.plot([-_HALF_LENGTH, _HALF_LENGTH], [y, y], color=palette.ink, lw=1.8, zorder=5)
         # The wall on the side of positive frame y moves to positive x.
         way = 1.0 if y * page[1] > 0.0 else -1.0
         axes.add_patch(
@@ -352,7 +354,7 @@ def _zone_words(
     sense = "" if round(turned, 1) == 0.0 else " clockwise" if sign > 0 else " anticlockwise"
     x = 0.665
     figure.text(
-        x, middle + 0.055, f"shear strain {gamma:.2g}", color=palette.ink, weight="bold", **_ZONE_TYPE
+        x, middle + 0.055, f"shear strain {two_digits(gamma)}", color=palette.ink, weight="bold", **_ZONE_TYPE
     )
     rows = [("━━", palette.accent, f"folds {float(predicted.hinge_deg):.1f}° from the fault")]
     if recorded > 0.0:
