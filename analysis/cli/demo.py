@@ -8,9 +8,9 @@ import click
 
 from analysis.cli.check import check_table, text_of
 from analysis.cli.common import axes_by_feature
+from analysis.cli.pictures import file_names, make_folder
 from analysis.cli.replay import checks_in_order
 from analysis.demo import demo_readings
-from analysis.errors import SettingError
 from analysis.files.csvfile import write_readings
 from analysis.files.table import ReadingTable
 from analysis.fold.settings import CheckSettings
@@ -24,30 +24,19 @@ def show_demo(output: Path) -> None:
     """Print the verdict on each demo fold; write the CSV, and net and funnel of each as PNG and SVG."""
     from analysis.report.funnel import draw_funnel, history_of  # noqa: PLC0415 - matplotlib is loaded only here
     from analysis.report.net import draw_net  # noqa: PLC0415
-    from analysis.report.sheet import save  # noqa: PLC0415
+    from analysis.report.sheet import save_all  # noqa: PLC0415
 
-    try:
-        output.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise SettingError(
-            f"the folder cannot be made: {error.strerror or error}",
-            where=str(output),
-            expected="a place that can be written to",
-        ) from error
+    make_folder(output)
     table = ReadingTable.from_readings(demo_readings())
     write_readings(output / "mossgarth.csv", table)
     settings = CheckSettings()
-    for fold in table.folds():
+    folds = table.folds()
+    for fold, name in zip(folds, file_names(list(folds)), strict=True):
         part = table.of_fold(fold)
         check = check_table(part, settings, fold)
         axes = axes_by_feature(part)
         click.echo(f"\n{text_of(check, axes[Feature.BEDDING])}")
         history = history_of(checks_in_order(part, settings, fold, forecast=False))
-        name = fold.lower().replace(" ", "-")
-        for kind, figure in (
-            ("net", draw_net(check, axes)),
-            ("funnel", draw_funnel(history, check)),
-        ):
-            for ending in ("png", "svg"):
-                save(figure, output / f"{name}-{kind}.{ending}")
+        save_all(draw_net(check, axes), output, f"{name}-net")
+        save_all(draw_funnel(history, check), output, f"{name}-funnel")
     click.echo(f"\nPictures and readings are in {output}")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
@@ -18,6 +19,7 @@ from analysis.cli.common import (
     sums_of_table,
 )
 from analysis.cli.fault import fault_of, fault_options
+from analysis.cli.pictures import file_names, make_folder
 from analysis.fold import words
 from analysis.fold.check import check_fold
 from analysis.fold.settings import CheckSettings
@@ -26,8 +28,6 @@ from analysis.strain.ofcheck import pair_of_check
 from analysis.strain.wording import headline, two_digits
 
 if TYPE_CHECKING:
-    from pathlib import Path
-
     from analysis.fold.records import FoldCheck
     from analysis.strain.explanations import Explanation
     from analysis.strain.observed import Fault
@@ -36,6 +36,13 @@ if TYPE_CHECKING:
 @click.command("explain")
 @files_argument
 @fault_options("Strike of the fault, either end.", required=True)
+@click.option(
+    "--pictures",
+    metavar="FOLDER",
+    type=click.Path(path_type=Path, file_okay=False),
+    help="Also draw, for each fold: the plane of explanations, the convergence, shear and onset of cleavage that fit, "
+    "and folds turning by the shear that rotation needs.",
+)
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON array, an object per fold.")
 @fold_options
 @settings_options
@@ -46,6 +53,7 @@ def explain_command(
     fault_strike_se: float,
     sense: str,
     zone_width_km: float | None,
+    pictures: Path | None,
     fold: str | None,
     outcrop: str | None,
     margin_deg: float,
@@ -58,10 +66,12 @@ def explain_command(
 
     \b
     Example:
-      hingewise explain readings.csv --fault-strike 052 --sense sinistral --zone-width-km 2
+      hingewise explain readings.csv --fault-strike 052 --sense sinistral --zone-width-km 2 --pictures explained
     """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
     fault = fault_of(fault_strike, fault_strike_se, sense, zone_width_km)
+    if pictures is not None:
+        make_folder(pictures)
     table = read_files(files, strict=strict)
     done: list[FaultCheck] = []
     for name, part in chosen_folds(table, fold, outcrop):
@@ -79,6 +89,19 @@ def explain_command(
         click.echo(NOTHING_STANDS)
     if as_json:
         print_json([one.to_json() for one in done])
+    if pictures is not None:
+        draw(done, pictures, confidence)
+
+
+def draw(done: list[FaultCheck], folder: Path, confidence: float) -> None:
+    """Write the pictures of explained folds into a folder, and say so where somebody reads along."""
+    from analysis.report.fault_pictures import fault_pictures  # noqa: PLC0415 - matplotlib is loaded only here
+    from analysis.report.sheet import save_all  # noqa: PLC0415
+
+    for one, name in zip(done, file_names([one.fold for one in done]), strict=True):
+        for kind, figure in fault_pictures(one, confidence):
+            save_all(figure, folder, f"{name}-{kind}")
+    click.echo(f"Pictures are in {folder}", err=True)
 
 
 def explained(check: FoldCheck, fault: Fault) -> FaultCheck | None:

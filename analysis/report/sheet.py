@@ -219,3 +219,9 @@ def save(figure: Figure, path: str | os.PathLike[str]) -> None:
             figure.savefig(draft, format="svg", metadata={"Date": None, "Creator": None})
         else:
             figure.savefig(draft, format="png", dpi=PNG_DPI, metadata={"Software": None})
+
+
+def save_all(figure: Figure, folder: Path, name: str) -> None:
+    """Write a figure into a folder in every kind, under a name without ending; errors as in `save`."""
+    for suffix in SUFFIXES:
+        save(figure, folder / f"{name}{suffix}")

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import json
+import re
 
 import pytest
 
+from analysis.cli.pictures import file_names
 from analysis.demo import demo_readings
 from analysis.files.csvfile import write_readings
 from analysis.strain.cautions import CAUTIONS
@@ -143,3 +145,66 @@ def test_report_and_explain_describe_a_fault_by_the_same_options(run):
     assert (
         explain[explain.index(start) : explain.index(end)] == report[report.index(start) : report.index(end)]
     )
+
+
+def test_pictures_are_written_for_each_fold(run, mossgarth, tmp_path):
+    """Plane, region and turning folds come as PNG and SVG, named after the folds; the answer on stdout stays alone."""
+    folder = tmp_path / "new" / "explained"
+    words = ("--fault-strike", 52, "--sense", "sinistral")
+    result = run("explain", mossgarth, *words, "--json", "--pictures", folder)
+    assert result.exit_code == 0, result.output
+    assert len(json.loads(result.stdout)) == 3
+    assert str(folder) in result.stderr
+    folds = ("mossgarth-fold", "low-mossgarth-fold", "mossgarth-edge-fold")
+    names = {f"{fold}-{kind}" for fold in folds for kind in ("fault", "region", "turning")}
+    assert {path.name for path in folder.iterdir()} == {f"{n}.{e}" for n in names for e in ("png", "svg")}
+    assert all(path.stat().st_size > 10_000 for path in folder.iterdir())
+    assert "Sinistral shear of 1.2" in _words(folder / "mossgarth-fold-turning.svg")
+
+
+def test_without_the_sense_the_turning_folds_lie_on_their_side(run, mossgarth, tmp_path):
+    """Folds anticlockwise of a fault of unknown sense turn as dextral shear turns them."""
+    result = run(
+        "explain", mossgarth, "--fault-strike", 100, "--fold", "Mossgarth fold", "--pictures", tmp_path
+    )
+    assert result.exit_code == 0, result.output
+    assert "Dextral shear of " in _words(tmp_path / "mossgarth-fold-turning.svg")
+
+
+def test_a_fold_without_cleavage_has_a_plane_and_no_region(run, tmp_path):
+    """What cannot be reckoned is not drawn: no transection, no region."""
+    beds = [
+        reading
+        for reading in demo_readings()
+        if reading.feature == "bedding" and reading.fold == "Mossgarth fold"
+    ]
+    write_readings(tmp_path / "beds.csv", beds)
+    result = run("explain", tmp_path / "beds.csv", "--fault-strike", 52, "--pictures", tmp_path / "drawn")
+    assert result.exit_code == 0, result.output
+    kinds = {path.stem.rsplit("-", 1)[1] for path in (tmp_path / "drawn").iterdir()}
+    assert kinds == {"fault", "turning"}
+
+
+def test_a_folder_that_cannot_be_made_is_said_before_any_work(run, mossgarth):
+    """Where a file stands in the way of the folder there is one line, and exit code 2."""
+    result = run("explain", mossgarth, "--fault-strike", 52, "--pictures", mossgarth / "inside")
+    assert result.exit_code == 2
+    assert len(result.stderr.strip().splitlines()) == 1
+    assert result.stdout == ""
+
+
+@pytest.mark.parametrize(
+    ("folds", "names"),
+    [
+        (["", "../up", "a/b", "A b", "a-b"], ["unnamed-fold", "up", "a-b", "a-b-2", "a-b-3"]),
+        (["Ærø", "x" * 300, "///"], ["ærø", "x" * 60, "unnamed-fold"]),
+    ],
+)
+def test_no_two_folds_share_a_file_and_none_leaves_the_folder(folds, names):
+    """Names of files hold letters and digits only, and are told apart however folds are written."""
+    assert file_names(folds) == names
+
+
+def _words(path):
+    """Read the words of a picture: letters are outlines, but the text stands beside each as a comment."""
+    return " ".join(re.findall(r"<!-- (.*?) -->", path.read_text(encoding="utf-8")))
