@@ -17,6 +17,7 @@ from fieldapp.drawing.scene import FunnelScene
 from fieldapp.look.theme import LIGHT
 
 MOST_DOTS = 24  # more readings than this and the line alone is clearer
+WORDS_SHARES = (1.0, 0.9, 0.8, 0.7)  # of the type's size, for words that fill a low frame
 
 
 def limits_deg(scene: FunnelScene) -> tuple[float, float]:
@@ -206,18 +207,27 @@ class NarrowingFunnel(Widget):
             taken["settles"] = add_words(group, words, theme.accent, x, y)
 
     def _put_wrapped(self, group: InstructionGroup, text: str) -> None:
+        """Put words in the middle of the frame, smaller where it is too low for them."""
         left, bottom, right, top = self._box
-        size = sp(self.words_sp)
-        lines: list[str] = []
-        for word in text.split():
-            longer = f"{lines[-1]} {word}" if lines else word
-            if lines and PAINTS.words(longer, size).width <= right - left - dp(24):
-                lines[-1] = longer
-            else:
-                lines.append(word)
-        high = size * 1.35
+        for share in WORDS_SHARES:
+            size = sp(self.words_sp) * share
+            lines = _wrapped(text, size, right - left - dp(24))
+            high = size * 1.35
+            if high * len(lines) <= top - bottom:
+                break
         y = (bottom + top) / 2 + high * len(lines) / 2
         for number, words_line in enumerate(lines):
             words = PAINTS.words(words_line, size)
             y -= high
             self.words_boxes[f"empty {number}"] = add_words(group, words, self.theme.muted, left + dp(12), y)
+
+
+def _wrapped(text: str, size: float, wide: float) -> list[str]:
+    lines: list[str] = []
+    for word in text.split():
+        longer = f"{lines[-1]} {word}" if lines else word
+        if lines and PAINTS.words(longer, size).width <= wide:
+            lines[-1] = longer
+        else:
+            lines.append(word)
+    return lines

@@ -199,3 +199,21 @@ def test_words_are_drawn_as_they_were_set(driver, halign):
     bottom = round(scrolled.g_translate.y) + int(words.center_y - high / 2.0)
     seen = pixels(driver, left, bottom, wide, high)[:, :, 0]
     assert np.abs(seen - (255 - alpha * (1.0 - words.color[0]))).max() <= 3
+
+
+@pytest.mark.parametrize("high", [300, 130])
+def test_words_in_an_empty_funnel_stay_off_its_axis(driver, high):
+    """What the funnel waits for is said within its frame, however low that is."""
+    from fieldapp.drawing.funnel import NarrowingFunnel
+    from fieldapp.drawing.scene import FunnelScene
+
+    words = "The last readings are being gone through once more. The funnel comes with the first interval."
+    funnel = NarrowingFunnel(
+        scene=FunnelScene(why_empty=words), words_sp=17.0, size_hint=(None, None), size=(260, high)
+    )
+    over_the_page(driver, funnel)
+    lines = [box for name, box in funnel.words_boxes.items() if name.startswith("empty")]
+    below = [box for name, box in funnel.words_boxes.items() if name.startswith("x ")]
+    assert len(lines) > 2
+    assert min(bottom for _, bottom, _, _ in lines) > max(top for _, _, _, top in below)
+    assert max(top for _, _, _, top in lines) <= funnel.top
