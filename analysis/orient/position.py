@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from collections.abc import Sequence
 
 GRID_SOUTH_deg, GRID_NORTH_deg = -80.0, 84.0  # the UTM grid and MGRS lettering end here
+HAND = "hand"  # source of a position that somebody typed
 BANDS = "CDEFGHJKLMNPQRSTUVWX"  # of 8 degrees from 80 S; X has 12
 # Radius of a sphere of the Earth's volume, in metres: for distances between fixes, good to 0.6%.
 EARTH_RADIUS_m = 6371000.8
@@ -168,7 +169,7 @@ def from_utm(zone: int, north: bool, easting_m: float, northing_m: float) -> Pos
 
 
 def to_mgrs(position: Position, digits: int = 5) -> str:
-    """Grid reference of the square that holds the place, as 30UVH8824100898.
+    """Grid reference of the square that holds the place, as 26UMU0766172630.
 
     `digits` is the count for each of easting and northing: 5 is a square of 1 m, 1 a square of 10 km.
     Raises PositionError where the lettering ends (80 S to 84 N) and for digits outside 1 to 5.
@@ -209,7 +210,7 @@ def from_mgrs(text: str) -> Position:
         raise PositionError(
             f"{text.strip()!r} is no grid reference",
             where="grid reference",
-            expected="zone, band, two letters of the square, figures: 30U VH 88241 00898",
+            expected="zone, band, two letters of the square, figures: 26U MU 07661 72630",
         ) from error
     size = float(10 ** (5 - len(figures) // 2))
     half = "N" if str(corner.band) >= "N" else "S"

@@ -1,7 +1,7 @@
 """Positions as people type them: degrees, degrees and minutes, UTM, and grid references.
 
-Taken: `55.9533, -3.1883`; `55.9533N 3.1883W`; `55 57.198 N, 3 11.298 W`; `55°57'11.9"N 3°11'17.9"W`;
-`30U 488242 6200898`; `30 north 488242 6200898`; `30UVH 88242 00898`. A decimal comma is taken where it cannot
+Taken: `48.5000, -28.2500`; `48.5000N 28.2500W`; `48 30.000 N, 28 15.000 W`; `48°30'00"N 28°15'00"W`;
+`26U 407661 5372630`; `26 north 407661 5372630`; `26UMU 07661 72630`. A decimal comma is taken where it cannot
 be a separator. What could be two places is refused with the two ways to write it.
 """
 
@@ -10,10 +10,9 @@ from __future__ import annotations
 import re
 
 from analysis.errors import PositionError
-from analysis.orient.position import BANDS, Position, from_mgrs, from_utm, with_source
+from analysis.orient.position import BANDS, HAND, Position, from_mgrs, from_utm, with_source
 
-HAND = "hand"
-FORMS = "55.9533 -3.1883, or 55 57.198 N 3 11.298 W, or 30U 488242 6200898, or 30UVH 88242 00898"
+FORMS = "48.5000 -28.2500, or 48 30.000 N 28 15.000 W, or 26U 407661 5372630, or 26UMU 07661 72630"
 
 _MGRS = re.compile(r"\d{1,2}\s*[A-Z]\s*[A-Z]{2}[\s\d]+", re.IGNORECASE)
 _UTM = re.compile(
