@@ -151,6 +151,20 @@ def file_to_write(path: Path, endings: tuple[str, ...], option: str) -> Path:
     return path
 
 
+def not_over(path: Path, others: Iterable[Path], option: str, why: str) -> None:
+    """Raise SettingError where writing `path` would write over one of the other files; `why` says what that loses."""
+    for other in others:
+        if os.path.realpath(path) == os.path.realpath(other) or (
+            path.exists() and other.exists() and path.samefile(other)
+        ):
+            raise SettingError(
+                f"{path} would be written over {other}",
+                where=option,
+                expected="another file",
+                mend=why,
+            )
+
+
 def settings_options(command: AnyCommand) -> AnyCommand:
     """Add --margin and --confidence."""
     command = click.option(

@@ -12,6 +12,7 @@ from analysis.cli.common import (
     files_argument,
     fold_options,
     no_such,
+    not_over,
     nothing_stands,
     output_option,
     read_files,
@@ -65,6 +66,7 @@ def export(
       hingewise export readings.csv -o readings.gpkg
     """  # noqa: D301 - click reads the escape
     settings = CheckSettings(margin_deg=margin_deg, confidence=confidence)
+    not_over(output, files, "--output", "What is not exported would be lost from it.")
     table = read_files(files, strict=strict)
     if output.suffix.lower() == ".csv":
         _write_csv(table, output, schema, fold, outcrop)

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from analysis.cli.common import file_to_write, output_option, read_files, strict_option
+from analysis.cli.common import file_to_write, not_over, output_option, read_files, strict_option
 from analysis.fold.words import counted
 
 
@@ -36,7 +36,11 @@ def join_command(
 
     if conflicts_file is not None:
         file_to_write(conflicts_file, (".csv",), "--conflicts")
-    joined = join(read_files(files, strict=strict, say_conflicts=False))
+        not_over(conflicts_file, (output, *files), "--conflicts", "Only what clashes would be left of it.")
+    table = read_files(files, strict=strict, say_conflicts=False)
+    if table.faulty_rows:
+        not_over(output, files, "--output", "The rows that were left out would be lost.")
+    joined = join(table)
     write_readings(output, joined)
     if conflicts_file is not None:
         write_readings(

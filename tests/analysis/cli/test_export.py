@@ -87,6 +87,16 @@ def test_csv_is_the_file_of_readings_with_every_revision(run, demo, tmp_path):
     assert read_readings(out)[0] == read_readings(demo)[0]
 
 
+def test_a_part_is_not_written_over_the_whole(run, demo):
+    """An export goes to another file than it was read from: what is not exported would be gone."""
+    before = demo.read_bytes()
+    result = run("export", demo, "--fold", "Mossgarth fold", "-o", demo)
+    assert result.exit_code == 2
+    assert result.stderr.count("\n") == 1
+    assert "would be written over" in result.stderr
+    assert demo.read_bytes() == before
+
+
 def test_a_reading_takes_its_history_along(run, demo, tmp_path):
     """A reading that was moved to another fold is exported with that fold, all its revisions, and not with the old."""
     readings = read_readings(demo)[0]

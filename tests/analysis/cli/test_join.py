@@ -131,6 +131,31 @@ def test_bad_rows_are_told_and_strict_refuses_them(run, tmp_path):
     assert not (tmp_path / "strict.csv").exists()
 
 
+def test_rows_that_were_left_out_are_not_written_over(run, tmp_path):
+    """A file with a bad row is not its own output: the row would be gone; joined elsewhere it stays as it was."""
+    path, linked = tmp_path / "bad.csv", tmp_path / "linked.csv"
+    path.write_text("feature,strike_deg,dip_deg\nbedding,45,30\nbedding,45,99\n", encoding="utf-8")
+    linked.hardlink_to(path)
+    before = path.read_bytes()
+    for output in (path, linked, tmp_path / "." / "bad.csv"):
+        result = run("join", path, "-o", output)
+        assert result.exit_code == 2
+        assert "would be written over" in result.stderr.splitlines()[-1]
+    assert path.read_bytes() == before
+
+
+@pytest.mark.parametrize("clashes", ["all.csv", "a.csv"])
+def test_clashes_are_written_over_nothing_else(run, tmp_path, clashes):
+    """The file of clashes is neither the joined file, there already or not, nor one of those joined."""
+    write_readings(tmp_path / "a.csv", [bed()])
+    before = (tmp_path / "a.csv").read_bytes()
+    result = run("join", tmp_path / "a.csv", "-o", tmp_path / "all.csv", "--conflicts", tmp_path / clashes)
+    assert result.exit_code == 2
+    assert "--conflicts" in result.stderr
+    assert (tmp_path / "a.csv").read_bytes() == before
+    assert not (tmp_path / "all.csv").exists()
+
+
 @pytest.mark.parametrize("arguments", [(), ("missing.csv", "-o", "all.csv"), ("missing.csv",)])
 def test_what_cannot_be_joined_is_refused(run, tmp_path, monkeypatch, arguments):
     """No files, no output and a file that is not there end with exit code 2 and write nothing."""
