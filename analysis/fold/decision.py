@@ -9,7 +9,7 @@ import numpy as np
 from analysis.fold import blocks
 from analysis.fold.advice import next_reading
 from analysis.fold.forecast import settle, split
-from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers
+from analysis.fold.records import FoldCheck, MoreReadings, Verdict, WatchNumbers, rounded
 from analysis.fold.transection import FEWEST_CLUSTERS
 from analysis.fold.watch import (
     LINES_AT_FIRST_LOOK,
@@ -154,13 +154,15 @@ def _missing(planes: int, lines: int, wanted: float) -> float:
 def _angle(transection: Transection) -> dict[str, Any]:
     """Fields of the check for the angle and its sense."""
     delta = float(transection.delta_deg)
+    # What is written as zero has no sense: the sign that is left hangs on the order in which the sums were added.
+    turn = rounded(delta)
     sense = (
         "unsigned"
         if not transection.has_sense
         else "clockwise"
-        if delta > 0.0
+        if turn > 0.0
         else "anticlockwise"
-        if delta < 0.0
+        if turn < 0.0
         else "none"
     )
     return {"transection_deg": delta, "sense": sense}

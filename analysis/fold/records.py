@@ -231,9 +231,16 @@ class FoldCheck:
         }
 
 
+def rounded(value: float) -> float:
+    """Round as `FoldCheck.to_json` writes: to a millionth, with no minus zero.
+
+    A millionth of a degree is below what any instrument reads and above what two machines differ by.
+    """
+    return round(value, 6) + 0.0
+
+
 def _rounded(value: float | None) -> float | None:
-    # A millionth of a degree is below what any instrument reads and above what two machines differ by.
-    return None if value is None else round(value, 6) + 0.0
+    return None if value is None else rounded(value)
 
 
 def _pair(values: tuple[float, float] | None) -> list[float | None] | None:

@@ -219,3 +219,20 @@ def test_planes_and_lines_are_estimated_apart(draw_sums):
     planes, lines = (estimate.delta_deg for estimate in check.estimates)
     assert planes == pytest.approx(without_lines.transection_deg, abs=1e-9)
     assert lines == pytest.approx(without_planes.transection_deg, abs=1e-9)
+
+
+@pytest.mark.parametrize("azimuth_deg", [0.0, 45.0, 200.0, 359.0])
+@pytest.mark.parametrize("one_by_one", [True, False])
+def test_an_angle_of_zero_has_no_sense(azimuth_deg, one_by_one):
+    """Cleavage lines that all lie along the hinge lines give 0 with the sense "none", however they were added."""
+    sums = RunningSums()
+    lines = np.tile(line_vector(azimuth_deg, 30.0), (20, 1))
+    features = [Feature.HINGE] * 10 + [Feature.INTERSECTION] * 10
+    if one_by_one:
+        for feature, line in zip(features, lines, strict=True):
+            sums.add(feature, "", line)
+    else:
+        codes = np.array([FEATURES.index(feature) for feature in features])
+        sums.extend(codes, np.zeros(20, dtype=np.intp), [""], lines)
+    written = check_fold(sums, CheckSettings()).to_json()
+    assert (written["transection_deg"], written["sense"]) == (0.0, "none")
