@@ -104,10 +104,9 @@ class RunningFold:
             self.readings.pop(reading.reading_id, None)
         self.version = next(self._numbers)
         self._check = self._in_order = None
-        if old is None:
-            self._since.append(_point(self.check, self.standing_count))
-        else:
-            self._past_changed()
+        if old is not None:
+            self.epoch = next(self._numbers)
+        self._end_funnel_here()
 
     def use(self, settings: CheckSettings) -> None:
         """Check with other settings from now on."""
@@ -115,11 +114,16 @@ class RunningFold:
             self.settings = settings
             self.version = next(self._numbers)
             self._check = None
-            self._past_changed()
+            self.epoch = next(self._numbers)
+            self._end_funnel_here()
 
-    def _past_changed(self) -> None:
-        self.epoch = next(self._numbers)
-        self._since = []
+    def _end_funnel_here(self) -> None:
+        """Let the last point be the check as it stands, however much of the past is still being computed anew."""
+        count = self.standing_count
+        self._rebuilt = tuple(point for point in self._rebuilt if point.readings < count)
+        self._since = [point for point in self._since if point.readings < count]
+        if count:
+            self._since.append(_point(self.check, count))
 
     def _count_in(self, reading: Reading) -> None:
         if reading.struck_out:

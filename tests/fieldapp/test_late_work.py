@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import deque
+from dataclasses import replace
 from datetime import timedelta
 
 import pytest
@@ -73,6 +74,29 @@ def test_the_history_of_one_fold_never_stands_in_anothers_funnel(slow, waiting, 
         assert len(slow.funnel.points) <= 3
         assert slow.funnel.points[-1].readings == 3
     assert [point.readings for point in slow.funnel.points] == [1, 2, 3]
+
+
+def test_the_funnel_ends_at_the_check_while_its_past_is_worked_out(slow, waiting, kept):
+    """Strike out, set another margin, keep: the last point is always the check, and no count stands twice."""
+    read_fold(slow, kept, 24)
+    slow.change_settings(replace(slow.settings, confidence=0.9))  # the whole funnel comes from elsewhere
+    waiting.all()
+
+    def ends_at_the_check(count):
+        points, check = slow.funnel.points, slow.check
+        assert [point.readings for point in points] == list(range(1, count + 1))
+        assert points[-1].delta_deg == pytest.approx(check.transection_deg, abs=1e-9)
+        assert (points[-1].low_deg, points[-1].high_deg) == pytest.approx(check.interval_deg, abs=1e-9)
+
+    ends_at_the_check(24)
+    slow.strike_out(slow.recent[-1].reading_id)
+    ends_at_the_check(23)
+    kept(slow, BEDDING, "041/31")
+    ends_at_the_check(24)
+    slow.change_settings(replace(slow.settings, confidence=0.95))
+    ends_at_the_check(24)
+    waiting.all()
+    ends_at_the_check(24)
 
 
 def test_the_forecast_of_one_fold_never_continues_anothers_funnel(slow, waiting, kept):
