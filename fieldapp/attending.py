@@ -9,7 +9,6 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from analysis.orient.attitude import Laid
-from analysis.orient.position import Position
 from fieldapp.devices.battery import BatteryWatch
 from fieldapp.devices.measuring import Measuring
 from fieldapp.devices.ports import Buzz
@@ -115,23 +114,11 @@ class Attendant:
     def measure(self) -> None:
         """Begin a measurement of the feature in hand, corrected from the place where we stand."""
         laid = Laid.ON_PLANE if self._page.entry.feature.is_plane else Laid.ALONG_Y
-        self._measuring.start(laid, self._position())
+        self._measuring.start(laid, self._page.here)
 
     def take(self) -> None:
         """Put the measurement into the entry; raises MeasuringError where there is none yet."""
         self._page.measured(self._measuring.take().for_draft())
-
-    def _position(self) -> Position | None:
-        if self._fix is None:
-            return None
-        fix = self._fix
-        return Position(
-            fix.latitude_deg,
-            fix.longitude_deg,
-            altitude_m=fix.altitude_m,
-            accuracy_m=fix.accuracy_m,
-            source=fix.source,
-        )
 
     def _say(self, text: str) -> None:
         if text and text != self._said:

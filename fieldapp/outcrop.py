@@ -221,14 +221,16 @@ class OutcropPage(PageFaulting):
         return True
 
     def undo(self) -> bool:
-        """Take back what was done last: a keep, a mend, a striking out, a correction to north, a take-in."""
+        """Take back what was done last: a keep, a mend, a striking out, a take-in, and what was done to many."""
         step = self._undo.newest()
         if step is None:
             return False
         if step.kind is StepKind.TAKEN_IN:
             return self.undo_take_in()
         if step.kind is StepKind.CORRECTED:
-            return self._undo_correction(step)
+            return self._undo_many(step, "without the correction to north again", Offer.CORRECT_NORTH)
+        if step.kind is StepKind.PLACED:
+            return self._undo_many(step, "without a position again", Offer.PLACE_READINGS)
         reading = self._all[
             step.reading_id
         ]  # what was kept here goes only with the whole stack, on restoring
@@ -285,7 +287,9 @@ class OutcropPage(PageFaulting):
         other_fold = fold != self._fold
         self._fold, self._outcrop = fold, outcrop
         self._message = None
+        self._by_hand = None
         try:
+            self._look_up_position()
             self._notebook.make_place(fold, made)
             self._notebook.save_settings({"page.fold": fold, "page.outcrop": outcrop})
         except HingewiseError as error:  # the place is chosen all the same; the next reading makes it
@@ -345,6 +349,8 @@ class OutcropPage(PageFaulting):
                 done = self.add_backup(self._report.newest_backup)
             case Offer.CORRECT_NORTH:
                 done = self.correct_north() > 0
+            case Offer.PLACE_READINGS:
+                done = self.place_readings() > 0
             case _:
                 done = False
         if not done and self._message is None:

@@ -7,7 +7,8 @@ from dataclasses import asdict, dataclass, fields
 from enum import StrEnum
 from typing import TYPE_CHECKING
 
-from analysis.errors import SettingError
+from analysis.errors import HingewiseError, SettingError
+from analysis.files.checked import checked_name
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -59,6 +60,8 @@ class Settings:
     device: str = ""
 
     def __post_init__(self) -> None:
+        for name in ("observer", "device"):
+            object.__setattr__(self, name, checked_name(getattr(self, name), name))
         _within(self.margin_deg, 0.5, 30.0, "margin", "0.5 to 30 degrees")
         _within(self.confidence, 0.51, 0.999, "confidence", "0.51 to 0.999")
         _within(self.forecast_limit, 10, 10_000, "forecast limit", "10 to 10,000 readings")
@@ -80,7 +83,7 @@ class Settings:
             try:
                 changed = _converted(getattr(good, field.name), values[field.name])
                 good = cls(**{**asdict(good), field.name: changed})
-            except (SettingError, ValueError, TypeError):
+            except (HingewiseError, ValueError, TypeError):
                 continue
         return good
 

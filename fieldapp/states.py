@@ -129,13 +129,17 @@ class StripState:
 
 @dataclass(frozen=True, slots=True)
 class PlaceState:
-    """Where we stand: names as stored, titles as shown, position quality and age ('' where unknown)."""
+    """Where we stand: names as stored, titles as shown, position quality and age ('' where unknown).
+
+    `by_hand` is where this outcrop lies as somebody typed it, '' where nobody did.
+    """
 
     fold: str
     outcrop: str
     fold_title: str
     outcrop_title: str
     position_text: str
+    by_hand: str
     north_text: str
     folds: tuple[str, ...]
     outcrops: tuple[str, ...]
@@ -273,6 +277,7 @@ class Offer(StrEnum):
     UNDO = "Undo"
     ADD_BACKUP = "Add the backup"
     CORRECT_NORTH = "Correct them"
+    PLACE_READINGS = "Place them"
 
 
 @dataclass(frozen=True, slots=True)

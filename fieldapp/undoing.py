@@ -22,13 +22,14 @@ class StepKind(StrEnum):
     REVISED = "revised"
     TAKEN_IN = "taken in"
     CORRECTED = "corrected to true north"
+    PLACED = "placed by hand"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Step:
     """One thing done: the reading (or the take-in), how it was before, the draft it came from.
 
-    `all_before` are the readings before a correction of many.
+    `all_before` are the readings before something was done to many.
     """
 
     kind: StepKind

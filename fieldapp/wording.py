@@ -15,6 +15,7 @@ if TYPE_CHECKING:
     from collections.abc import Collection
 
     from analysis.files.reading import Reading
+    from analysis.orient.position import Position
 
 FEATURE_LABELS = {
     Feature.BEDDING: "Bedding",
@@ -72,6 +73,13 @@ def reading_text(reading: Reading, planes: PlaneNotation) -> str:
 def fold_title(fold: str) -> str:
     """A fold's name as shown."""
     return fold or "unnamed fold"
+
+
+def position_text(place: Position) -> str:
+    """A position as "48.50000° N, 28.25000° W": to a metre."""
+    north = "N" if place.latitude_deg >= 0.0 else "S"
+    east = "E" if place.longitude_deg >= 0.0 else "W"
+    return f"{abs(place.latitude_deg):.5f}° {north}, {abs(place.longitude_deg):.5f}° {east}"
 
 
 def outcrop_title(outcrop: str) -> str:

@@ -18,6 +18,7 @@ from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
 from kivy.uix.label import Label
 from kivy.uix.scrollview import ScrollView
+from kivy.uix.textinput import TextInput
 
 from fieldapp.drawing.signs import Marker, Sign  # noqa: F401 - the .kv files use them
 from fieldapp.leaves import load_kv
@@ -148,6 +149,14 @@ class Sheet(FloatLayout):
         """Keep touches from the page below."""
         super().on_touch_up(touch)
         return True
+
+
+class TextLine(TextInput):
+    """One line of text, typed with the system's keyboard."""
+
+
+class SheetKey(Key):
+    """A key on a sheet."""
 
 
 class Choice(BoxLayout):

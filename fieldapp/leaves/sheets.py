@@ -1,4 +1,4 @@
-"""The sheets that lie over the page: settings, place, past readings, note, a number, and safety."""
+"""The sheets that lie over the page: settings, past readings, note, a number, and safety."""
 
 from __future__ import annotations
 
@@ -8,14 +8,15 @@ from typing import TYPE_CHECKING
 from kivy.app import App
 from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
-from kivy.uix.textinput import TextInput
 
+from analysis.errors import HingewiseError
 from fieldapp.drawing.scene import MARKERS
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.help import HelpSheet
 from fieldapp.leaves.keys import KeyPad  # noqa: F401 - the .kv file uses it
 from fieldapp.leaves.measure import MeasureSheet
-from fieldapp.leaves.parts import Choice, Key, Sheet
+from fieldapp.leaves.parts import Choice, Sheet, SheetKey, TextLine
+from fieldapp.leaves.whereabouts import PlaceSheet
 from fieldapp.settings import Appearance, NorthMode, PlaneNotation
 from fieldapp.states import Change
 
@@ -37,10 +38,6 @@ POSITION = (
     "It stays in your notebook and in the files you hand over. The app has no access to the network.",
     "Without it you log all the same, with north set to true on your compass. The device asks you next.",
 )
-
-
-class TextLine(TextInput):
-    """One line of text, typed with the system's keyboard."""
 
 
 class Setting(BoxLayout):
@@ -100,8 +97,15 @@ CHOICES: tuple[tuple[str, str, str, tuple[tuple[object, str], ...]], ...] = (
 )
 
 
+# Name, meaning, attribute of Settings: what is typed.
+NAMES: tuple[tuple[str, str, str], ...] = (
+    ("Observer", "Written with each reading: a map says who read it.", "observer"),
+    ("This device", "Written with each reading: a name by which tablets are told apart.", "device"),
+)
+
+
 class SettingsSheet(Sheet):
-    """All settings; each takes effect as it is touched."""
+    """All settings; each takes effect as it is touched, or left."""
 
     def __init__(self, **kwargs: object) -> None:
         super().__init__(title="Settings", **kwargs)
@@ -119,74 +123,38 @@ class SettingsSheet(Sheet):
             setting.ids.key_row.add_widget(choice)
             self.choices[attribute] = choice
             self.ids.content.add_widget(setting)
+        self.names: dict[str, TextLine] = {}
+        for name, meaning, attribute in NAMES:
+            setting = Setting(name=name, meaning=meaning)
+            line = TextLine(text=getattr(self._page.settings, attribute), hint_text="not given")
+            line.bind(
+                focus=lambda line, focus, setting=setting, attribute=attribute: (
+                    None if focus else self._name(setting, attribute, line.text)
+                )
+            )
+            setting.ids.key_row.add_widget(line)
+            self.names[attribute] = line
+            self.ids.content.add_widget(setting)
         self.ids.content.add_widget(SheetKeys())
 
     def _change(self, choice: Choice, attribute: str, value: object) -> None:
         self._page.change_settings(replace(self._page.settings, **{attribute: value}))
         choice.chosen = getattr(self._page.settings, attribute)
 
+    def _name(self, setting: Setting, attribute: str, text: str) -> None:
+        """Take a name as it is left; what is none is said where its meaning stood."""
+        try:
+            settings = replace(self._page.settings, **{attribute: text})
+        except HingewiseError as error:
+            setting.meaning = str(error)
+            return
+        setting.meaning = next(meaning for _, meaning, name in NAMES if name == attribute)
+        if settings != self._page.settings:
+            self._page.change_settings(settings)
+
 
 class SheetKeys(BoxLayout):
     """Help, safety, the demo, and the way back from it."""
-
-
-class PlaceSheet(Sheet):
-    """Choose outcrop and fold, or begin another."""
-
-    def __init__(self, **kwargs: object) -> None:
-        super().__init__(title="Where are we?", **kwargs)
-        self._page = App.get_running_app().page
-        self.chooser = PlaceChooser()
-        self.ids.content.add_widget(self.chooser)
-        if App.get_running_app().wants_leave:
-            key = SheetKey(text="Use the device's position")
-            key.bind(on_release=lambda _key: App.get_running_app().answer_position(use=True))
-            self.ids.content.add_widget(key)
-        self._fill()
-
-    def _fill(self) -> None:
-        place = self._page.place
-        chooser = self.chooser
-        chooser.next_name = place.suggested_outcrop
-        chooser.position = f"{place.position_text or 'no position'} · {place.north_text}"
-        self._list(chooser.ids.outcrops, place.outcrops, place.outcrop, self._page.choose_outcrop)
-        self._list(chooser.ids.folds, place.folds, place.fold, self._page.choose_fold)
-
-    def _list(
-        self, box: BoxLayout, names: tuple[str, ...], chosen: str, choose: Callable[[str], None]
-    ) -> None:
-        box.clear_widgets()
-        for name in names:
-            key = PlaceKey(text=name or "unnamed", look="chosen" if name == chosen else "plain")
-            key.bind(on_release=lambda _key, name=name: self._choose(choose, name))
-            box.add_widget(key)
-
-    def _choose(self, choose: Callable[[str], None], name: str) -> None:
-        choose(name)
-        self.close()
-
-    def begin(self, kind: str, name: str) -> None:
-        """Begin an outcrop or a fold of this name."""
-        if name.strip():
-            self._choose(
-                self._page.choose_outcrop if kind == "outcrop" else self._page.choose_fold, name.strip()
-            )
-
-    def next_outcrop(self) -> None:
-        """Go on to the next outcrop under the suggested name."""
-        self._page.next_outcrop()
-        self.close()
-
-
-class PlaceChooser(BoxLayout):
-    """The lists and fields of the place sheet."""
-
-    next_name = StringProperty("")
-    position = StringProperty("")
-
-
-class PlaceKey(Key):
-    """An outcrop or a fold in the list."""
 
 
 class ReadingRow(BoxLayout):
@@ -251,10 +219,6 @@ class SheetWords(BoxLayout):
     """A sentence on a sheet."""
 
     text = StringProperty("")
-
-
-class SheetKey(Key):
-    """A key on a sheet."""
 
 
 class NoteSheet(Sheet):

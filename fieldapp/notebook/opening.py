@@ -245,7 +245,7 @@ def _build(target: Path, damaged: Path, carved: Carved, clock: Callable[[], date
             row = carved.rows[seq]
             place = (row.reading.fold, row.reading.outcrop, now)
             db.execute("INSERT OR IGNORE INTO folds (name, made_at) VALUES (?, ?)", (place[0], now))
-            db.execute("INSERT OR IGNORE INTO outcrops VALUES (?, ?, ?)", place)
+            db.execute("INSERT OR IGNORE INTO outcrops (fold, name, made_at) VALUES (?, ?, ?)", place)
             values = (seq, digest_of(row.reading), row.origin, row.stored_at, *row_values(row.reading))
             db.execute(INSERT.replace("INSERT", "INSERT OR IGNORE", 1), values)
         _copy_what_answers(damaged, db)

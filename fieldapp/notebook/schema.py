@@ -130,10 +130,17 @@ _FAULT = (
     "ALTER TABLE folds ADD COLUMN zone_width_m REAL",
 )
 
+_POSITION_BY_HAND = (
+    "ALTER TABLE outcrops ADD COLUMN latitude_deg REAL CHECK (latitude_deg BETWEEN -90 AND 90)",
+    "ALTER TABLE outcrops ADD COLUMN longitude_deg REAL CHECK (longitude_deg BETWEEN -180 AND 180)",
+    "ALTER TABLE outcrops ADD COLUMN accuracy_m REAL CHECK (accuracy_m >= 0)",
+)
+
 MIGRATIONS: tuple[Migration, ...] = (
     Migration(1, "readings, places, draft, settings", _BASE),
     Migration(2, "take-ins and hand-overs", _HAND_OVER),
     Migration(3, "the fault beside the fold", _FAULT),
+    Migration(4, "positions of outcrops typed by hand", _POSITION_BY_HAND),
 )
 
 

@@ -15,6 +15,7 @@ from dataclasses import dataclass
 from datetime import datetime
 from typing import TYPE_CHECKING
 
+from analysis.orient.position import HAND, Position
 from fieldapp.notebook.backups import KEPT, back_up, readings_in
 from fieldapp.notebook.errors import plain_errors
 from fieldapp.notebook.rows import INSERT, SELECT, digest_of, reading_from, row_values
@@ -141,7 +142,9 @@ class Notebook:
         now = self._now()
         db.execute("INSERT OR IGNORE INTO folds (name, made_at) VALUES (?, ?)", (fold, now))
         if outcrop is not None:
-            db.execute("INSERT OR IGNORE INTO outcrops VALUES (?, ?, ?)", (fold, outcrop, now))
+            db.execute(
+                "INSERT OR IGNORE INTO outcrops (fold, name, made_at) VALUES (?, ?, ?)", (fold, outcrop, now)
+            )
 
     def make_place(self, fold: str, outcrop: str | None = None) -> None:
         """Make a fold, and an outcrop on it, unless they are there."""
@@ -156,6 +159,30 @@ class Notebook:
         """Names of the outcrops of a fold, in the order made."""
         rows = self._read("SELECT name FROM outcrops WHERE fold = ? ORDER BY rowid", (fold,))
         return [str(row[0]) for row in rows]
+
+    def position_by_hand(self, fold: str, outcrop: str) -> Position | None:
+        """Where an outcrop lies, as typed; None where nobody typed it."""
+        rows = self._read(
+            "SELECT latitude_deg, longitude_deg, accuracy_m FROM outcrops WHERE fold = ? AND name = ?",
+            (fold, outcrop),
+        )
+        if not rows or rows[0][0] is None or rows[0][1] is None:
+            return None
+        latitude, longitude, accuracy = rows[0]
+        return Position(latitude, longitude, accuracy_m=accuracy, source=HAND)  # type: ignore[arg-type]  # by the table
+
+    def set_position_by_hand(self, fold: str, outcrop: str, position: Position | None) -> None:
+        """Note where an outcrop lies, or that this is no longer to be taken from what was typed."""
+        place = (None, None, None)
+        if position is not None:
+            place = (position.latitude_deg, position.longitude_deg, position.accuracy_m)
+        with self._writing() as db:
+            self._make_place(db, fold, outcrop)
+            db.execute(
+                "UPDATE outcrops SET latitude_deg = ?, longitude_deg = ?, accuracy_m = ? "
+                "WHERE fold = ? AND name = ?",
+                (*place, fold, outcrop),
+            )
 
     def fault(self, fold: str) -> FaultInput:
         """The fault noted beside a fold."""

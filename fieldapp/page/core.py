@@ -96,6 +96,7 @@ class PageCore:
         self._named = ""
         self._just_struck = ""
         self._fix: PositionFix | None = None
+        self._by_hand: Position | None = None  # where the current outcrop lies, as typed
         self._position_shown = ""
         self._draft_saved = True
         self._backup_day: date | None = None
@@ -118,6 +119,7 @@ class PageCore:
             # Else readings taken in from elsewhere would say, at the next start, where this tablet stands.
             with suppress(HingewiseError):
                 notebook.save_settings({"page.fold": self._fold, "page.outcrop": self._outcrop})
+        self._look_up_position()
         self._running = self._run()
         self._forecaster = Forecaster(dispatch, self._forecast_came)
         self._message = _opening_message(self._report)
@@ -261,7 +263,12 @@ class PageCore:
         self._draft = replace(self._draft, mending="")
         return True
 
+    def _look_up_position(self) -> None:
+        """Find where the current outcrop was said to lie."""
+        self._by_hand = self._notebook.position_by_hand(self._fold, self._outcrop)
+
     def _rebuild(self) -> None:
+        self._look_up_position()
         self._running = self._run()
         self._named = self._just_struck = ""
         self._tell(EVERYTHING)

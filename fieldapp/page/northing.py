@@ -1,4 +1,4 @@
-"""The page and its position: where a reading is taken, and which north its azimuth is read against."""
+"""The page and its north: what an azimuth is read against, and readings corrected once where that comes late."""
 
 from __future__ import annotations
 
@@ -11,69 +11,18 @@ from fieldapp.entry import North
 from fieldapp.late_north import corrected_late, waits_for_north
 from fieldapp.making import NOT_CORRECTED
 from fieldapp.page.core import PageCore
-from fieldapp.planning import positions_of
 from fieldapp.settings import NorthMode
-from fieldapp.states import (
-    Change,
-    Message,
-    MessageKind,
-    Offer,
-    PositionFix,
-)
+from fieldapp.states import Change, Message, MessageKind, Offer
 from fieldapp.undoing import Step, StepKind, content_of
-from fieldapp.wording import age_text, counted
+from fieldapp.wording import counted
 
 if TYPE_CHECKING:
-    from datetime import datetime
-
     from analysis.files.reading import Reading
     from analysis.orient.north import NorthCorrection
 
-FIX_GOOD_FOR_S = 300.0  # an older position is no longer where a reading is taken
-
 
 class PageNorth(PageCore):
-    """Position and north."""
-
-    def position_changed(self, fix: PositionFix | None) -> None:
-        """Take the newest position, or None where there is none any more."""
-        north = self._north()
-        self._fix = fix
-        change = Change.PLACE | Change.PLAN
-        if self._north() != north:
-            change |= Change.ENTRY
-        if north.correction_deg is None and self._not_corrected() and self._magnetic_north().correction_deg:
-            count = counted(len(self._not_corrected()))
-            self._message = Message(f"{count} kept without a correction to north.", offer=Offer.CORRECT_NORTH)
-            change |= Change.MESSAGE
-        self._position_shown = self._position_text()
-        self._tell(change)
-
-    def tick(self) -> None:
-        """Let the age of the position be told again, if its words have changed."""
-        text = self._position_text()
-        if text != self._position_shown:
-            self._position_shown = text
-            self._tell(Change.PLACE)
-
-    def _position_text(self) -> str:
-        fix = self._fix
-        if fix is None:
-            return ""
-        age = age_text((self._clock() - fix.at).total_seconds())
-        return age if fix.accuracy_m is None else f"±{fix.accuracy_m:.0f} m, {age}"
-
-    def _fix_for_reading(self, now: datetime) -> PositionFix | None:
-        """The position a reading is taken at: a fix that is fresh, else where the outcrop is known to lie."""
-        fix = self._fix
-        if fix is not None and (now - fix.at).total_seconds() <= FIX_GOOD_FOR_S:
-            return fix
-        place = positions_of(self._running.neighbours).get(self._outcrop)
-        if place is None:
-            return None
-        return PositionFix(latitude_deg=place[0], longitude_deg=place[1], source="outcrop", at=now)
-
-    # -- north ----------------------------------------------------------------------------------------------
+    """North."""
 
     def _north(self) -> North:
         """What a compass reading is read against now, and what is added to it."""
@@ -95,9 +44,10 @@ class PageNorth(PageCore):
         )
 
     def _north_place(self) -> tuple[float, float] | None:
-        """Where the declination is asked for: at the fix, else at the newest reading with a position."""
-        if self._fix is not None:
-            return self._fix.latitude_deg, self._fix.longitude_deg
+        """Where the declination is asked for: where we are, else at the newest reading with a position."""
+        here = self._by_hand or self._fix
+        if here is not None:
+            return here.latitude_deg, here.longitude_deg
         for reading in reversed(self._all.values()):
             if reading.latitude_deg is not None and reading.longitude_deg is not None:
                 return reading.latitude_deg, reading.longitude_deg
@@ -113,6 +63,13 @@ class PageNorth(PageCore):
 
     def _not_corrected(self) -> list[Reading]:
         return [reading for reading in self._all.values() if waits_for_north(reading)]
+
+    def _correction_offered(self) -> Message | None:
+        """Offer to correct what was kept without a correction that is known by now; None where there is nothing."""
+        if self._magnetic_north().correction_deg is None or not self._not_corrected():
+            return None
+        count = counted(len(self._not_corrected()))
+        return Message(f"{count} kept without a correction to north.", offer=Offer.CORRECT_NORTH)
 
     def correct_north(self) -> int:
         """Correct readings kept before a correction to north was known, all or none; give their number."""
@@ -144,7 +101,8 @@ class PageNorth(PageCore):
         late = corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
         return replace(late, revision=self._notebook.next_revision(reading.reading_id))
 
-    def _undo_correction(self, step: Step) -> bool:
+    def _undo_many(self, step: Step, words: str, offer: Offer) -> bool:
+        """Take back what was done to many readings at once: all of them or none."""
         try:
             again = [
                 replace(
@@ -157,8 +115,7 @@ class PageNorth(PageCore):
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         self._undo.pop()
-        words = f"Taken back: {counted(len(again))} without the correction to north again."
-        self._message = Message(words, offer=Offer.CORRECT_NORTH)
+        self._message = Message(f"Taken back: {counted(len(again))} {words}.", offer=offer)
         self._revised(again)
         return True
 

@@ -9,7 +9,7 @@ from analysis.orient.features import Feature
 from fieldapp.checking import Around
 from fieldapp.making import entry_of
 from fieldapp.naming import line_of, named_reading
-from fieldapp.page.northing import PageNorth
+from fieldapp.page.placing import PagePlacing
 from fieldapp.planning import plan_of
 from fieldapp.states import (
     Change,
@@ -31,6 +31,7 @@ from fieldapp.wording import (
     fold_title,
     next_name,
     outcrop_title,
+    position_text,
     reading_text,
 )
 
@@ -45,7 +46,7 @@ if TYPE_CHECKING:
 RECENT = 12  # readings in the short list
 
 
-class PageView(PageNorth):
+class PageView(PagePlacing):
     """Everything that a leaf draws."""
 
     @property
@@ -129,6 +130,7 @@ class PageView(PageNorth):
             fold_title=fold_title(self._fold),
             outcrop_title=outcrop_title(self._outcrop),
             position_text=self._position_text(),
+            by_hand="" if self._by_hand is None else position_text(self._by_hand),
             north_text=self._north_text(),
             folds=folds,
             outcrops=outcrops,
@@ -175,12 +177,12 @@ class PageView(PageNorth):
 
     def _make_plan(self) -> PlanState:
         hinge = self.check.hinge
-        fix = self._fix
+        here = self.here
         return plan_of(
             self._running.neighbours,
             self._notebook.outcrops(self._fold),
             self._outcrop,
-            None if fix is None else (fix.latitude_deg, fix.longitude_deg),
+            None if here is None else (here.latitude_deg, here.longitude_deg),
             None if hinge is None else (hinge.line.trend_deg, hinge.line.plunge_deg),
         )
 

@@ -19,6 +19,7 @@ from hypothesis import HealthCheck, Phase, settings
 from hypothesis import strategies as st
 from hypothesis.stateful import RuleBasedStateMachine, initialize, invariant, precondition, rule
 
+from analysis.errors import PositionError
 from analysis.files.csvfile import write_readings
 from analysis.files.reading import Reading
 from analysis.orient.features import Feature
@@ -285,6 +286,36 @@ class Geologist(RuleBasedStateMachine):
         self.page.position_changed(fix)
         self.page.tick()
 
+    @rule(text=st.sampled_from(["48.5 -28.25", "26UMU 076 726", "-33 180", "over there", None]))
+    def place(self, text):
+        """Type where the outcrop lies, or go by the device again."""
+        stood = self.page.place.by_hand
+        if text is None:
+            self.page.forget_position()
+            assert self.page.place.by_hand == ""
+            return
+        try:
+            self.page.place_by_hand(text)
+        except PositionError:
+            assert text == "over there"
+            assert self.page.place.by_hand == stood
+        else:
+            assert self.page.place.by_hand
+
+    @rule()
+    def place_readings(self):
+        """Give the position typed to the readings here that have none."""
+        waiting = [
+            key
+            for key, reading in self.page._all.items()
+            if (reading.fold, reading.outcrop) == (self.page.place.fold, self.page.place.outcrop)
+            and reading.latitude_deg is None
+        ]
+        by_hand = self.page.place.by_hand
+        done, changed = self.doing(lambda: self.page.place_readings() > 0)
+        assert done is bool(waiting and by_hand)
+        assert changed == (set(waiting) if done else set())
+
     @rule()
     def correct(self):
         """Correct what waits for north."""
@@ -411,6 +442,7 @@ class Geologist(RuleBasedStateMachine):
     def entry_and_place_are_stored(self):
         """What stands in the entry, and where the page stands, is in the notebook."""
         stored, place = self.page._notebook.settings(), self.page.place
+        assert self.page._by_hand == self.page._notebook.position_by_hand(place.fold, place.outcrop)
         assert (stored["page.fold"], stored["page.outcrop"]) == (place.fold, place.outcrop)
         assert self.page.entry.saved
         assert EntryDraft.from_values(self.page._notebook.draft()) == self.page._draft

@@ -80,6 +80,11 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
             app.open_sheet(name)
             look(f"sheet {name}")
             app.close_sheets()
+        page.place_by_hand("26UMU 076 726")
+        app.open_sheet("place").place_by_hand("48 degrees north or so, on the other side of the bay")
+        look("sheet place, by hand, and a position that is none")
+        app.close_sheets()
+        look("Log, readings to be placed")
         for name in PAGES:
             app.open_sheet("help", page=name)
             look(f"help {name}")

@@ -360,3 +360,59 @@ def test_the_next_outcrop_is_two_touches_away(driver):
     driver.tap("Next outcrop: MG-15")
     assert driver.app.page.place.outcrop == "MG-15"
     assert driver.app.outline.sheet is None
+
+
+def type_line(driver, line, text):
+    """Touch a line and type on the system's keyboard."""
+    driver.press(line)
+    assert line.focus
+    driver.window.dispatch("on_textinput", text)
+    driver.frames(2)
+    assert line.text.endswith(text)
+
+
+def test_a_position_is_typed_where_there_is_no_receiver(driver):
+    """A slip is told beside the line and nothing is lost; the position typed then stands on the page."""
+    app = driver.app
+    app.open_sheet("place")
+    driver.frames(3)
+    sheet = app.outline.sheet
+    line = sheet.chooser.ids.position
+    type_line(driver, line, "over there")
+    driver.tap("Set")
+    assert app.outline.sheet is sheet
+    assert "is no position" in sheet.chooser.fault
+    assert line.text == "over there"
+    line.text = ""
+    type_line(driver, line, "48.5 -28.25")
+    driver.tap("Set")
+    assert app.outline.sheet is None
+    assert log_of(driver).place_row.position == "by hand"
+    assert app.page.place.by_hand == "48.50000° N, 28.25000° W"
+    app.open_sheet("place")
+    driver.frames(3)
+    driver.tap("Go by the device again")
+    assert app.page.place.by_hand == ""
+
+
+def test_the_observer_is_typed_into_the_settings(driver):
+    """A name is taken as the line is left, by the next touch or by closing; one that is none is told."""
+    app = driver.app
+    app.open_sheet("settings")
+    driver.frames(3)
+    sheet = app.outline.sheet
+    sheet.ids.content.parent.scroll_to(sheet.names["observer"], animate=False)
+    driver.frames(3)
+    type_line(driver, sheet.names["observer"], "A. Writer")
+    sheet.close()
+    driver.frames(3)
+    assert app.page.settings.observer == "A. Writer"
+    app.open_sheet("settings")
+    driver.frames(3)
+    sheet = app.outline.sheet
+    assert sheet.names["observer"].text == "A. Writer"
+    sheet.ids.content.parent.scroll_to(sheet.names["device"], animate=False)
+    driver.frames(3)
+    type_line(driver, sheet.names["device"], "x" * 250)
+    sheet.close()
+    assert app.page.settings.device == ""
