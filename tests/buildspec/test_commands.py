@@ -62,8 +62,8 @@ def run_with(command, tmp_path, monkeypatch):
     def run_with(tests, window, extra=(), failing=""):
         run = command.Run(Path(sys.executable), {}, tmp_path)
 
-        def step(name, arguments):
-            del arguments
+        def step(name, arguments, *, empty_code=0):
+            del arguments, empty_code
             outcome = {"tests": tests, "window tests": window}.get(name)
             if outcome is None:
                 return int(name == failing)
@@ -106,6 +106,19 @@ def test_chosen_tests_need_not_include_window_tests(run_with):
     """With arguments of one's own only what they choose has to run, but something must."""
     assert run_with((0, report(2)), (5, report(0)), extra=["-k", "strike"]) == ([], "2 passed, 0 failed")
     assert run_with((5, report(0)), (5, report(0)), extra=["-k", "nothing"])[0] == ["tests"]
+
+
+@pytest.mark.parametrize(("extra", "said"), [(["-k", "strike"], "done"), ([], "FAILED")])
+def test_tests_that_were_not_chosen_are_not_called_failed(
+    command, tmp_path, monkeypatch, capsys, extra, said
+):
+    """A call of pytest that may choose no test, and does, is done; where all must run it has failed."""
+    ends_empty = ["-c", f"raise SystemExit({command.NOTHING_COLLECTED})"]
+    monkeypatch.setattr(command, "pytest_arguments", lambda *_: ends_empty)
+    run = command.Run(Path(sys.executable), {}, tmp_path)
+    run.tests("window tests", "window", extra, must_run=not extra)
+    assert f"-- window tests: {said} in" in capsys.readouterr().out
+    assert run.failed_steps == ([] if extra else ["window tests"])
 
 
 def test_users_arguments_come_last(command, tmp_path):
