@@ -13,7 +13,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 from enum import StrEnum
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Self
 
 import numpy as np
 
@@ -42,15 +42,32 @@ PRIOR_SCATTER_DEG = 6.0
 
 
 class EntryCheck(StrEnum):
-    """Names of the checks; the value is the word stored with a reading that was kept against it."""
+    """The checks; the value is the word stored with a reading that was kept against one.
 
-    REVERSED_STRIKE = "reversed-strike"
-    QUADRANT_MISFIT = "quadrant-misfit"
-    FLAT_PLANE = "flat-plane"
-    LINE_OFF_PLANE = "line-off-plane"
-    PLUNGE_OVER_DIP = "plunge-over-dip"
-    COMPUTED_OFF_MEASURED = "computed-off-measured"
-    OUTLIER = "outlier"
+    `words` say it beside such a reading in a list.
+    """
+
+    words: str
+
+    REVERSED_STRIKE = "reversed-strike", "strike reversed?"
+    QUADRANT_MISFIT = "quadrant-misfit", "quadrant does not fit the strike"
+    FLAT_PLANE = "flat-plane", "nearly flat, strike loose"
+    LINE_OFF_PLANE = "line-off-plane", "line off its plane"
+    PLUNGE_OVER_DIP = "plunge-over-dip", "plunge exceeds dip"
+    COMPUTED_OFF_MEASURED = "computed-off-measured", "measured and computed line differ"
+    OUTLIER = "outlier", "far off the others"
+
+    def __new__(cls, value: str, words: str) -> Self:
+        """Make a check of its stored word and of the words for people."""
+        check = str.__new__(cls, value)
+        check._value_ = value
+        check.words = words
+        return check
+
+    @classmethod
+    def words_for(cls, name: str) -> str:
+        """Give the words of the check of this name; the name itself for one of a later version, or somebody's own."""
+        return next((check.words for check in cls if check.value == name), name)
 
 
 @dataclass(frozen=True, slots=True)

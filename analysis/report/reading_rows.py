@@ -20,15 +20,6 @@ if TYPE_CHECKING:
 MOST_ROWS: Final = 5000
 """Readings of one fold that are listed; a report with more would be no page any more."""
 _OPEN_UP_TO: Final = 12  # rows that a table may have and still stand open on the screen
-_CHECKED: Final = {
-    EntryCheck.REVERSED_STRIKE: "strike reversed?",
-    EntryCheck.QUADRANT_MISFIT: "quadrant does not fit the strike",
-    EntryCheck.FLAT_PLANE: "nearly flat, strike loose",
-    EntryCheck.LINE_OFF_PLANE: "line off its plane",
-    EntryCheck.PLUNGE_OVER_DIP: "plunge exceeds dip",
-    EntryCheck.COMPUTED_OFF_MEASURED: "measured and computed line differ",
-    EntryCheck.OUTLIER: "far off the others",
-}
 _COLUMNS: Final = (
     Column("No.", 5, figures=True),
     Column("When, UTC", 17),
@@ -112,20 +103,13 @@ def _entered(reading: Reading) -> str:
 def _remarks(reading: Reading, off_deg: float | None) -> str:
     remarks = ["struck out"] if reading.struck_out else []
     if reading.warnings_kept:
-        names = [_checked(name) for name in reading.warnings_kept]
+        names = [EntryCheck.words_for(name) for name in reading.warnings_kept]
         remarks.append(cut(f"kept against: {', '.join(names)}"))
     if off_deg is not None:
         remarks.append(f"{off_deg:.0f}° off the fit")
     if reading.note:
         remarks.append(cut(reading.note))
     return "; ".join(remarks)
-
-
-def _checked(name: str) -> str:
-    try:
-        return _CHECKED[EntryCheck(name)]
-    except ValueError:  # a name of a later version, or somebody's own
-        return name
 
 
 def _when(time: datetime | None) -> str:

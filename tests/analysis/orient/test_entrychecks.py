@@ -358,3 +358,12 @@ def test_messages_are_short_enough_for_a_phone():
     ]
     assert {warning.check for warning in found} == set(EntryCheck)
     assert all(len(warning.message) <= 90 for warning in found)
+
+
+@pytest.mark.parametrize("check", list(EntryCheck))
+def test_every_check_has_words_for_a_list(check):
+    """A reading kept against any check is listed with words of its own; an unknown name stands for itself."""
+    assert EntryCheck.words_for(check.value) == check.words
+    assert check.words not in ("", check.value)
+    assert str(check) == check.value
+    assert EntryCheck.words_for("of-a-later-version") == "of-a-later-version"
