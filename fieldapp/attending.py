@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 
 from analysis.orient.attitude import Laid
 from fieldapp.devices.battery import BatteryWatch
+from fieldapp.devices.clock import clock_fault
 from fieldapp.devices.measuring import Measuring
 from fieldapp.devices.ports import Buzz
 from fieldapp.devices.receiver import Receiver
@@ -35,6 +36,7 @@ class Attendant:
         self, devices: Devices, page: OutcropPage, clock: Clock, tell: Callable[[str], None]
     ) -> None:
         self._devices = devices
+        self._clock = clock
         self._page = page
         self._tell = tell
         self._receiver = Receiver(devices.position, clock)
@@ -71,10 +73,13 @@ class Attendant:
         )
 
     def start(self) -> None:
-        """Begin to listen for positions, unless the notebook is the invented one: its places are invented too.
+        """Look at the calendar, and begin to listen for positions.
 
+        Not for the invented notebook: its times and places are invented too.
         A device that has yet to ask for its permission is left alone until `use_position`.
         """
+        if not self._page.place.demo:
+            self._say(clock_fault(self._clock.now(), self._page.newest_reading_at))
         if self._page.place.demo or not self._devices.position.status().is_usable or self.wants_leave:
             return
         self._receiver.start()
@@ -91,6 +96,7 @@ class Attendant:
 
     def second(self) -> None:
         """Pass the position on, and say what is to be said of receiver and battery, once."""
+        self._receiver.average_over(self._page.settings.average_s)
         place = self._page.place.outcrop
         if place != self._outcrop:
             self._outcrop = place
@@ -98,7 +104,7 @@ class Attendant:
         located = self._receiver.tick()
         if located.fix is not None and located.fix != self._fix:
             self._fix = located.fix
-            self._page.position_changed(located.fix)
+            self._page.position_changed(located.fix, self._receiver.best())
         self._page.tick()
         self._say(located.message)
         if self._seconds % BATTERY_EVERY_S == 0:

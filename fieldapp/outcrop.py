@@ -287,7 +287,7 @@ class OutcropPage(PageFaulting):
         other_fold = fold != self._fold
         self._fold, self._outcrop = fold, outcrop
         self._message = None
-        self._by_hand = None
+        self._by_hand, self._best_fix = None, self._fix
         try:
             self._look_up_position()
             self._notebook.make_place(fold, made)

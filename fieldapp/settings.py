@@ -43,6 +43,7 @@ class Settings:
     `margin_deg` is M, the transection that still counts as axial planar (0.5 to 30), `confidence` the share
     of folds whose interval holds the true transection (0.51 to below 1), `forecast_limit` the number of
     further readings beyond which the answer is that it cannot be settled here (10 to 10,000).
+    `average_s` is the time that a device's position is averaged over (1 to 600 s).
     `position_explained` says that the page has told once what it wants the device's position for.
     """
 
@@ -55,6 +56,7 @@ class Settings:
     spoken_verdict: bool = False
     left_handed: bool = False
     appearance: Appearance = Appearance.SYSTEM
+    average_s: float = 30.0
     position_explained: bool = False
     observer: str = ""
     device: str = ""
@@ -64,6 +66,7 @@ class Settings:
             object.__setattr__(self, name, checked_name(getattr(self, name), name))
         _within(self.margin_deg, 0.5, 30.0, "margin", "0.5 to 30 degrees")
         _within(self.confidence, 0.51, 0.999, "confidence", "0.51 to 0.999")
+        _within(self.average_s, 1.0, 600.0, "averaging time", "1 to 600 seconds")
         _within(self.forecast_limit, 10, 10_000, "forecast limit", "10 to 10,000 readings")
 
     def to_values(self) -> dict[str, object]:

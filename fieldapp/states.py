@@ -131,7 +131,8 @@ class StripState:
 class PlaceState:
     """Where we stand: names as stored, titles as shown, position quality and age ('' where unknown).
 
-    `by_hand` is where this outcrop lies as somebody typed it, '' where nobody did.
+    `position_detail` is how the device came by it, `by_hand` where this outcrop lies as somebody typed it, ''
+    where nobody did.
     """
 
     fold: str
@@ -139,6 +140,7 @@ class PlaceState:
     fold_title: str
     outcrop_title: str
     position_text: str
+    position_detail: str
     by_hand: str
     north_text: str
     folds: tuple[str, ...]
@@ -371,13 +373,18 @@ class FaultState:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PositionFix:
-    """A position, WGS 84; `accuracy_m` the 68% radius, None where unknown; `at` aware, UTC."""
+    """A position, WGS 84; `accuracy_m` the 68% radius, None where unknown; `at` aware, UTC.
+
+    `fixes` is the number of a receiver's fixes that it is the mean of, `spread_m` how far they scatter about it.
+    """
 
     latitude_deg: float
     longitude_deg: float
     altitude_m: float | None = None
     accuracy_m: float | None = None
     source: str = ""
+    fixes: int = 1
+    spread_m: float | None = None
     at: datetime
 
 

@@ -9,7 +9,7 @@ Ages come from the clock that never goes back, so setting the calendar does not 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from analysis.errors import SettingError
@@ -24,20 +24,21 @@ if TYPE_CHECKING:
 class FixSettings:
     """How fixes are averaged and judged (common practice, no source).
 
-    `window_s` is the time averaged over, `stale_s` the age from which a position is flagged, `coarse_m` the
-    accuracy from which it is flagged. A fix jumps where it is farther than `jump_m`, plus five times both
-    accuracies, plus `speed_m_s` times the time since the last.
+    `window_s` is the time averaged over, `outcrop_m` the size of an outcrop, `stale_s` the age from which a position
+    is flagged, `coarse_m` the accuracy from which it is flagged. A fix jumps where it is farther than `jump_m`, plus
+    five times both accuracies, plus `speed_m_s` times the time since the last.
     """
 
     window_s: float = 30.0
     stale_s: float = 60.0
     coarse_m: float = 30.0
+    outcrop_m: float = 20.0
     jump_m: float = 50.0
     speed_m_s: float = 40.0
     agree_to_move: int = 3
 
     def __post_init__(self) -> None:
-        for name in ("window_s", "stale_s", "coarse_m", "jump_m", "speed_m_s", "agree_to_move"):
+        for name in ("window_s", "stale_s", "coarse_m", "outcrop_m", "jump_m", "speed_m_s", "agree_to_move"):
             if not getattr(self, name) > 0:
                 raise SettingError(
                     f"{getattr(self, name)} is no {name}", where=name, expected="a number above zero"
@@ -96,6 +97,10 @@ class FixBook:
         self._take(moved)
         return True
 
+    def average_over(self, window_s: float) -> None:
+        """Average over so many seconds from the next fix on; raises SettingError."""
+        self._settings = replace(self._settings, window_s=window_s)
+
     def begin_outcrop(self) -> None:
         """Forget the best mean, and average anew: the geologist walked to another outcrop."""
         self._best = None
@@ -131,8 +136,19 @@ class FixBook:
         latest = fixes[-1].time_s
         self._window = [fix for fix in fixes if latest - fix.time_s <= self._settings.window_s]
         self._mean = average_fixes([fix.position for fix in self._window])
-        if self._best is None or _radius(self._mean) <= _radius(self._best):
+        # Somebody may walk on without a word: what was best elsewhere is not where we are.
+        if (
+            self._best is None
+            or _radius(self._mean) <= _radius(self._best)
+            or self._mean.position.distance_m(self._best.position) > self._reach(self._mean, self._best)
+        ):
             self._best = self._mean
+
+    def _reach(self, one: AveragedPosition, other: AveragedPosition) -> float:
+        """How far apart two means of one outcrop may lie: three times both accuracies, and its size."""
+        coarse = self._settings.coarse_m
+        radii = (min(_radius(one), coarse), min(_radius(other), coarse))
+        return 3.0 * sum(radii) + self._settings.outcrop_m
 
     def _jump(self, fix: Fix) -> float | None:
         """Distance of a fix that cannot be where the last ones were; None for one that can."""

@@ -52,6 +52,10 @@ class Receiver:
         self._port.stop()
         self._started_s = None
 
+    def average_over(self, window_s: float) -> None:
+        """Average over so many seconds from now on."""
+        self._book.average_over(window_s)
+
     def begin_outcrop(self) -> None:
         """Average anew: the geologist walked to another outcrop."""
         self._book.begin_outcrop()
@@ -92,5 +96,7 @@ class Receiver:
             altitude_m=place.altitude_m,
             accuracy_m=place.accuracy_m,
             source=place.source,
+            fixes=averaged.fixes,
+            spread_m=averaged.spread_m,
             at=self._clock.now() - timedelta(seconds=age_s),
         )

@@ -69,6 +69,12 @@ CHOICES: tuple[tuple[str, str, str, tuple[tuple[object, str], ...]], ...] = (
         ((NorthMode.MAGNETIC, "Magnetic"), (NorthMode.TRUE, "True")),
     ),
     (
+        "Position averaged over",
+        "Longer is steadier, while you stand still.",
+        "average_s",
+        tuple((float(s), f"{s} s") for s in (10, 30, 60, 120)),
+    ),
+    (
         "M: still axial planar within",
         "The transection that does not matter to you.",
         "margin_deg",

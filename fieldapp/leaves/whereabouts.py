@@ -35,7 +35,8 @@ class PlaceSheet(Sheet):
         chooser = self.chooser
         chooser.next_name = place.suggested_outcrop
         chooser.by_hand = place.by_hand
-        chooser.position = f"{place.position_text or 'no position'} · {place.north_text}"
+        known = (place.position_text or "no position", place.position_detail, place.north_text)
+        chooser.position = " · ".join(words for words in known if words)
         self._list(chooser.ids.outcrops, place.outcrops, place.outcrop, self._page.choose_outcrop)
         self._list(chooser.ids.folds, place.folds, place.fold, self._page.choose_fold)
 

@@ -96,6 +96,7 @@ class PageCore:
         self._named = ""
         self._just_struck = ""
         self._fix: PositionFix | None = None
+        self._best_fix: PositionFix | None = None  # of this outcrop
         self._by_hand: Position | None = None  # where the current outcrop lies, as typed
         self._position_shown = ""
         self._draft_saved = True

@@ -29,10 +29,10 @@ class PagePlacing(PageNorth):
 
     # -- from the device ------------------------------------------------------------------------------------
 
-    def position_changed(self, fix: PositionFix | None) -> None:
-        """Take the newest position, or None where there is none any more."""
+    def position_changed(self, fix: PositionFix | None, best: PositionFix | None = None) -> None:
+        """Take the newest position, or None where there is none any more, and the best one of this outcrop."""
         north = self._north()
-        self._fix = fix
+        self._fix, self._best_fix = fix, best or fix
         change = Change.PLACE | Change.PLAN
         if self._north() != north:
             change |= Change.ENTRY
@@ -42,6 +42,11 @@ class PagePlacing(PageNorth):
             change |= Change.MESSAGE
         self._position_shown = self._position_text()
         self._tell(change)
+
+    @property
+    def newest_reading_at(self) -> datetime | None:
+        """When the newest reading was taken, by the clock of its time."""
+        return max((r.recorded_at for r in self._all.values() if r.recorded_at is not None), default=None)
 
     def tick(self) -> None:
         """Let the age of the position be told again, if its words have changed."""
@@ -68,11 +73,17 @@ class PagePlacing(PageNorth):
             known = "as before here"
         return known if accuracy is None else f"±{accuracy:.0f} m, {known}"
 
+    def _position_detail(self) -> str:
+        fix = self._fix
+        if self._by_hand is not None or fix is None or fix.spread_m is None:
+            return ""
+        return f"mean of {fix.fixes} fixes, spread {fix.spread_m:.0f} m"
+
     def _fix_for_reading(self, now: datetime) -> PositionFix | None:
-        """Where a reading is taken: as typed, by a fix that is fresh, else where the outcrop is known to lie."""
+        """Where a reading is taken: as typed, by the best fix while one is fresh, else as known of the outcrop."""
         fix = self._fix
         if self._by_hand is None and fix is not None and (now - fix.at).total_seconds() <= FIX_GOOD_FOR_S:
-            return fix
+            return self._best_fix
         place = self._by_hand
         if place is None:
             place = self._known_here()

@@ -130,6 +130,7 @@ class PageView(PagePlacing):
             fold_title=fold_title(self._fold),
             outcrop_title=outcrop_title(self._outcrop),
             position_text=self._position_text(),
+            position_detail=self._position_detail(),
             by_hand="" if self._by_hand is None else position_text(self._by_hand),
             north_text=self._north_text(),
             folds=folds,
