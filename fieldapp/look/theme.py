@@ -117,8 +117,3 @@ DARK = Theme(
     grid=rgba("#3a4248"),
     veil=rgba("#000000", 0.65),
 )
-
-
-def theme_named(name: str) -> Theme:
-    """Give the theme of this name, "light" or "dark"; any other word is light."""
-    return DARK if name == DARK.name else LIGHT

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from fieldapp.look.theme import DARK, LIGHT, contrast_ratio, rgba, theme_named
+from fieldapp.look.theme import DARK, LIGHT, contrast_ratio, rgba
 
 NEEDED = 7.0  # WCAG 2.1, success criterion 1.4.6 (enhanced contrast)
 
@@ -35,9 +35,3 @@ def test_a_pressed_key_looks_different(theme):
     """A key held down differs from one that is not."""
     assert theme.pressed != theme.card
     assert theme.accent_pressed != theme.accent
-
-
-def test_an_unknown_theme_is_the_one_for_daylight():
-    """A name that is no theme gives the light one."""
-    assert theme_named("dark") is DARK
-    assert theme_named("no such") is LIGHT
