@@ -163,7 +163,9 @@ def test_any_fixes_keep_the_book_in_order(rows):
         assert book.best() is not None
 
 
-@pytest.mark.parametrize("name", ["window_s", "stale_s", "coarse_m", "outcrop_m", "jump_m", "speed_m_s", "agree_to_move"])
+@pytest.mark.parametrize(
+    "name", ["window_s", "stale_s", "coarse_m", "outcrop_m", "jump_m", "speed_m_s", "agree_to_move"]
+)
 def test_settings_without_sense_are_refused(name):
     """Zero, negative and unknown limits raise SettingError."""
     for value in (0, -1, float("nan")):
