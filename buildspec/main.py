@@ -24,7 +24,7 @@ def main() -> None:
     """Open the app."""
     from fieldapp.app import open_app  # noqa: PLC0415 - importing it opens the window
 
-    open_app(notebook_path())
+    open_app(notebook_path(), waits=True)
 
 
 if __name__ == "__main__":

@@ -80,6 +80,7 @@ class HingewiseApp(App):
         notebook_path: Path,
         *,
         demo: bool = False,
+        waits: bool = False,
         devices: Devices | None = None,
         device_clock: DeviceClock | None = None,
         clock: Callable[[], datetime] = now_utc,
@@ -89,12 +90,14 @@ class HingewiseApp(App):
         self.title = NAME
         self.notebook_path = Path(notebook_path)
         self.demo = demo
+        self.waits = waits
         self.devices = devices
         self.device_clock = device_clock
         self.attendant: Attendant | None = None
         self.clock_utc = clock
         self.mishaps = MishapLog(self.notebook_path.parent / "mishaps.log", clock)
         self.outline: Outline | None = None
+        self._first_time = False
         self.page: OutcropPage | None = None
         self._keyboard: Keyboard | None = None
         self._home_path = self.notebook_path
@@ -110,23 +113,52 @@ class HingewiseApp(App):
     # Coming and going
 
     def build(self) -> Widget:
-        """Open the notebook and make the page with the Log leaf; other leaves are made when first shown."""
+        """Open the notebook and make the page, or with `waits` say on the screen why it cannot be opened."""
         watch(self.mishaps, self._tell_mishap)
-        first_time = not self.notebook_path.exists()
-        self._open(self.notebook_path, demo=self.demo)
+        self._first_time = not self.notebook_path.exists()
+        Window.bind(size=self._window_changed)
+        Metrics.bind(density=self._window_changed, fontscale=self._window_changed)
+        try:
+            self._open(self.notebook_path, demo=self.demo)
+        except HingewiseError as error:
+            if not self.waits:
+                raise
+            return self._make_shut(str(error))
+        return self._make_page()
+
+    def _make_shut(self, reason: str) -> Widget:
+        from fieldapp.leaves.shut import ShutNotebook
+
+        self._choose_theme()
+        self.form = self._form_now()
+        return ShutNotebook(reason=reason)
+
+    def try_again(self) -> None:
+        """Open the notebook that could not be opened; the page takes the place of the words that said why."""
+        if self.page is not None:
+            return  # a touch on what scrolls may arrive twice
+        try:
+            self._open(self.notebook_path, demo=self.demo)
+        except HingewiseError as error:
+            self.root.reason = str(error)
+            return
+        Window.remove_widget(self.root)
+        self.root = self._make_page()
+        Window.add_widget(self.root)
+
+    def _make_page(self) -> Widget:
+        """Make the page with the Log leaf; other leaves are made when first shown."""
         self._choose_theme()
         self.form = self._form_now()
         self.outline = Outline(self._make_leaf)
         self.outline.form = self.form
         self._keyboard = Keyboard(self)
         Window.softinput_mode = "below_target"  # the field that is typed into stays in sight
-        Window.bind(size=self._window_changed, on_key_down=self._keyboard.key_down)
-        Window.bind(on_memorywarning=self.on_memory_low)
-        Metrics.bind(density=self._window_changed, fontscale=self._window_changed)
+        Window.bind(on_key_down=self._keyboard.key_down, on_memorywarning=self.on_memory_low)
         self.outline.refresh(EVERYTHING)
         Window.bind(on_flip=self._first_frame_drawn)
         self._held.append(self.outline.complete)
-        if first_time and not self.demo:
+        if self._first_time and not self.demo:
             self._held.append(lambda: self.open_sheet("safety"))
         self._held.append(self._start_devices)
         return self.outline
@@ -145,7 +177,8 @@ class HingewiseApp(App):
 
     def on_pause(self) -> bool:
         """Leave the screen: everything kept is committed already; the draft is saved, the sensors stop."""
-        self.page.flush()
+        if self.page is not None:
+            self.page.flush()
         self._stop_devices()
         return True
 
@@ -157,6 +190,9 @@ class HingewiseApp(App):
 
         if PAINTS.were_lost():
             get_context().reload()
+        if self.page is None:
+            self.try_again()  # whoever left to make room expects it
+            return
         self._start_devices()
         self._choose_theme()  # the device may have been set dark meanwhile
         self._fit_to_bars()
@@ -164,7 +200,8 @@ class HingewiseApp(App):
 
     def on_memory_low(self, *_: object) -> None:
         """The system runs short of memory and may end the app: store what is stored later otherwise, and give back."""
-        self.page.flush()
+        if self.page is not None:
+            self.page.flush()
         gc.collect()
 
     def go_back(self) -> bool:
@@ -185,8 +222,9 @@ class HingewiseApp(App):
     def on_stop(self) -> None:
         """Close the notebook."""
         self._stop_devices()
-        Window.unbind(size=self._window_changed, on_key_down=self._keyboard.key_down)
-        Window.unbind(on_memorywarning=self.on_memory_low)
+        Window.unbind(size=self._window_changed, on_memorywarning=self.on_memory_low)
+        if self._keyboard is not None:
+            Window.unbind(on_key_down=self._keyboard.key_down)
         Metrics.unbind(density=self._window_changed, fontscale=self._window_changed)
         self._close()
 
@@ -317,7 +355,7 @@ class HingewiseApp(App):
         self.open_sheet("measure")
 
     def _choose_theme(self) -> None:
-        chosen = self.page.settings.appearance
+        chosen = Appearance.SYSTEM if self.page is None else self.page.settings.appearance
         dark = bool(self.is_night()) if chosen is Appearance.SYSTEM else chosen is Appearance.DARK
         self.theme = DARK if dark else LIGHT
         # The ground of the page is what the window is cleared with: a rectangle over all of it would cost a fifth
@@ -347,8 +385,10 @@ class HingewiseApp(App):
     def fit(self) -> None:
         """Fit the page to the window and to what else stands on it."""
         form = self._form_now()
-        if form != self.form and self.outline is not None:
-            self.form = form
+        if form == self.form:
+            return
+        self.form = form
+        if self.outline is not None:
             self.outline.form = form
 
     def _make_leaf(self, name: str) -> Widget:
@@ -423,14 +463,14 @@ def demo_path_beside(notebook_path: Path) -> Path:
     return notebook_path.with_name("demo-mossgarth.db")
 
 
-def open_app(notebook_path: str | os.PathLike[str], *, demo: bool = False) -> None:
+def open_app(notebook_path: str | os.PathLike[str], *, demo: bool = False, waits: bool = False) -> None:
     """Open the app on a notebook and return when its window is closed.
 
-    With `demo` the file is the invented notebook, made there unless it exists, and the page says so.
+    With `demo` the file is the invented notebook, made there unless it exists, and the page says so. A notebook that
+    cannot be opened raises a NotebookError; with `waits`, for a device where nobody would see it, the screen says why
+    and has a key that tries again.
     """
-    path = Path(notebook_path)
-    path.parent.mkdir(parents=True, exist_ok=True)
-    HingewiseApp(path, demo=demo).run()
+    HingewiseApp(Path(notebook_path), demo=demo, waits=waits).run()
 
 
 __all__ = ["HingewiseApp", "demo_path_beside", "open_app"]

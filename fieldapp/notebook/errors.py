@@ -50,7 +50,7 @@ def _full(where: str) -> NotebookError:
     return StorageFullError(
         "the storage is full, nothing was written",
         where=where,
-        mend="Your entry is still here. Free some space, then press Keep again.",
+        mend="Your entry is still here. Free some space, then try again.",
     )
 
 
@@ -66,7 +66,7 @@ def _locked(where: str) -> NotebookError:
     return LockedError(
         "another program holds the notebook, nothing was written",
         where=where,
-        mend="Your entry is still here. Close the other program, then press Keep again.",
+        mend="Your entry is still here. Close the other program, then try again.",
     )
 
 

@@ -5,6 +5,8 @@ from __future__ import annotations
 import importlib.util
 import json
 import shutil
+import sys
+import types
 
 import pack
 import pytest
@@ -264,3 +266,15 @@ def test_main_opens_the_notebook_of_the_device(private, tmp_path, monkeypatch):
     for rules in ("backup_rules.xml", "data_extraction.xml"):
         text = (SPEC.parent / "android" / rules).read_text(encoding="utf-8")
         assert f'domain="file" path="{path.parent.name}/"' in text
+
+
+def test_main_has_the_screen_say_why_a_notebook_cannot_be_opened(tmp_path, monkeypatch):
+    """On a device nobody reads what a process says as it ends, so main.py asks the app to stay."""
+    started = load(SPEC.parent / "main.py")
+    monkeypatch.setenv("ANDROID_PRIVATE", str(tmp_path))
+    asked = []
+    app = types.ModuleType("fieldapp.app")
+    app.open_app = lambda path, **values: asked.append((path, values))
+    monkeypatch.setitem(sys.modules, "fieldapp.app", app)
+    started.main()
+    assert asked == [(started.notebook_path(), {"waits": True})]

@@ -4,6 +4,9 @@
 
 from __future__ import annotations
 
+import sqlite3
+from contextlib import closing
+
 import numpy as np
 import pytest
 from mossgarth import fold, type_into
@@ -428,3 +431,47 @@ def test_a_file_from_the_devices_own_chooser_is_looked_at_before_it_is_taken_in(
     assert driver.app.page.standing == ()
     leaf.choose_file()
     driver.wait(lambda: driver.app.outline.trouble == passing.NOT_READ)
+
+
+def test_a_notebook_that_cannot_be_opened_is_said_and_tried_again(open_app, tmp_path, clock):
+    """Where no command could say so, the screen says why; once the trouble is over a touch opens the page."""
+    from geometry import faults
+
+    path = tmp_path / "notebook.db"
+    with closing(sqlite3.connect(path, isolation_level=None)) as other:
+        other.execute("PRAGMA journal_mode = WAL")
+        other.execute("BEGIN EXCLUSIVE")
+        driver = open_app((360, 640), first_time=True, waits=True)
+        app = driver.app
+        assert app.page is None
+        assert "another program" in app.root.reason
+        assert faults(app.root) == []
+        driver.resize(640, 360)
+        assert faults(app.root) == []
+        app.on_memory_low()
+        assert app.dispatch("on_pause")
+        app.dispatch("on_resume")
+        driver.tap("Try again", app.root)
+        assert app.page is None
+        other.execute("ROLLBACK")
+    driver.tap("Try again", app.root)
+    driver.frames(4)
+    assert app.root is app.outline
+    assert driver.window.children == [app.outline]
+    type_into(app.page, fold(3, outcrops=1), clock)
+    driver.frames(3)
+    assert len(app.page.standing) == 3
+
+
+def test_a_notebook_of_a_newer_program_is_left_alone_on_the_screen_too(open_app, tmp_path):
+    """The app says that it needs an update, stays, and ends without a word in the log of mishaps."""
+    path = tmp_path / "newer.db"
+    open_app(name=path.name).stop()
+    with closing(sqlite3.connect(path, isolation_level=None)) as db:
+        db.execute("INSERT INTO migrations VALUES (99, 'of tomorrow', '')")
+        db.execute("PRAGMA user_version = 99")
+    driver = open_app(name=path.name, waits=True)
+    assert "Update the program" in driver.app.root.reason
+    driver.tap("Try again", driver.app.root)
+    assert driver.app.page is None
+    assert driver.app.mishaps.text() == ""
