@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -34,6 +35,15 @@ def space_text(count: int | None) -> str:
     return (
         f"{count / MEGABYTE:,.0f} MB" if count < 10_000 * MEGABYTE else f"{count / MEGABYTE / 1000:,.0f} GB"
     )
+
+
+def free_name(path: Path) -> Path:
+    """The name of a file, numbered where a file of that name is there: two hand-overs may fall in one second."""
+    free, number = path, 1
+    while os.path.lexists(free):
+        number += 1
+        free = path.with_name(f"{path.stem}-{number}{path.suffix}")
+    return free
 
 
 class Row(BoxLayout):
@@ -94,8 +104,8 @@ class HandOverLeaf(BoxLayout):
     def write(self, *, everything: bool = False) -> Path | None:
         """Write the CSV; the presenter says whether it went well."""
         now = App.get_running_app().clock_utc()
-        path = self.target_folder / f"readings-{now:%Y%m%d-%H%M%S}.csv"
-        path.parent.mkdir(parents=True, exist_ok=True)
+        self.target_folder.mkdir(parents=True, exist_ok=True)
+        path = free_name(self.target_folder / f"readings-{now:%Y%m%d-%H%M%S}.csv")
         if not self.page.write_hand_over(path, everything=everything):
             return None
         App.get_running_app().share(path)

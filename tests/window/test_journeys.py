@@ -332,6 +332,16 @@ def test_the_csv_is_written_by_touch(driver, clock):
     assert "0 new" in leaf.since
 
 
+def test_a_hand_over_never_takes_the_place_of_another(driver, clock):
+    """Two touches in the same second: what the first wrote is still there, and both files have their own names."""
+    type_into(driver.app.page, fold(9, outcrops=1), clock)
+    driver.app.outline.show("Hand over")
+    leaf = driver.app.outline.leaf("Hand over")
+    first, second = leaf.write(), leaf.write()
+    assert len(first.read_text(encoding="utf-8").splitlines()) == 10
+    assert len(second.read_text(encoding="utf-8").splitlines()) == 1
+
+
 def test_the_fault_is_typed_on_our_own_keys(driver, clock):
     """Strike and sense of the fault are set by touch; the angle to the fold follows."""
     page = driver.app.page
