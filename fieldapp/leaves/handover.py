@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from contextlib import suppress
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -104,7 +105,8 @@ class HandOverLeaf(BoxLayout):
     def write(self, *, everything: bool = False) -> Path | None:
         """Write the CSV; the presenter says whether it went well."""
         now = App.get_running_app().clock_utc()
-        self.target_folder.mkdir(parents=True, exist_ok=True)
+        with suppress(OSError):  # writing then says why it cannot be done
+            self.target_folder.mkdir(parents=True, exist_ok=True)
         path = free_name(self.target_folder / f"readings-{now:%Y%m%d-%H%M%S}.csv")
         if not self.page.write_hand_over(path, everything=everything):
             return None

@@ -342,6 +342,17 @@ def test_a_hand_over_never_takes_the_place_of_another(driver, clock):
     assert len(second.read_text(encoding="utf-8").splitlines()) == 1
 
 
+def test_a_hand_over_without_its_folder_is_told(driver, clock):
+    """Where the folder of hand-overs cannot be made nothing is lost: it is said, and the readings stay due."""
+    type_into(driver.app.page, fold(9, outcrops=1), clock)
+    driver.app.outline.show("Hand over")
+    leaf = driver.app.outline.leaf("Hand over")
+    leaf.target_folder.write_bytes(b"a file stands in the way")
+    assert leaf.write() is None
+    assert "cannot be written" in driver.app.page.message.text
+    assert driver.app.page.hand_over.since_last == 9
+
+
 def test_the_fault_is_typed_on_our_own_keys(driver, clock):
     """Strike and sense of the fault are set by touch; the angle to the fold follows."""
     page = driver.app.page
