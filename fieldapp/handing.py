@@ -24,7 +24,7 @@ if TYPE_CHECKING:
     from fieldapp.notebook.store import Notebook, TakeIn
     from fieldapp.settings import PlaneNotation
 
-MOST_PROBLEMS = 50  # rows that could not be read and are named in a preview; further ones are counted
+MOST_PROBLEMS = 50  # rows that could not be read and are named in a preview; all are counted
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,10 +75,11 @@ class HandOver:
 
     def preview(self, path: Path, planes: PlaneNotation) -> TakeInPreview:
         """Read a colleague's file and tell what it would do; nothing is written. Raises CsvError."""
-        from analysis.files.csvfile import read_readings  # noqa: PLC0415 - loads pandas
+        from analysis.files.csvfile import read_table  # noqa: PLC0415 - loads pandas
         from analysis.files.join import join  # noqa: PLC0415 - as above
 
-        theirs, faults = read_readings(path)
+        table = read_table(path)
+        theirs, faults = table.readings(), table.faults
         here = set(self._notebook.revisions())
         ids = {r.reading_id for r in here}
         joined = join(here, theirs)
@@ -89,9 +90,6 @@ class HandOver:
         standing = standing_of(new).values()
         already = len(theirs) - len(new)
         self._offered = Offered(path, tuple(new), already)
-        problems = [str(fault) for fault in faults[:MOST_PROBLEMS]]
-        if len(faults) > MOST_PROBLEMS:
-            problems.append(f"and {len(faults) - MOST_PROBLEMS} more")
         return TakeInPreview(
             source=path,
             adds=tuple(line_of(r, planes) for r in standing if r.reading_id not in ids | clashing),
@@ -100,7 +98,8 @@ class HandOver:
             ),
             clashes=tuple(line_of(r, planes) for r in clashes),
             known=already,
-            problems=tuple(problems),
+            problems=tuple(str(fault) for fault in faults[:MOST_PROBLEMS]),
+            unread=table.faulty_rows,
         )
 
     def take_in(self, preview: TakeInPreview) -> TakeIn | None:

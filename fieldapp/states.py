@@ -312,7 +312,7 @@ class TakeInPreview:
 
     `adds` are readings not here yet, `changes` new revisions of readings that are, `clashes` revisions whose
     content differs from the same revision here (both are kept), `known` what is here already. Lists are
-    readings as lines; `problems` are rows that could not be read.
+    readings as lines; `unread` is how many rows could not be read, `problems` names the first of them.
     """
 
     source: Path
@@ -321,6 +321,7 @@ class TakeInPreview:
     clashes: tuple[ReadingLine, ...]
     known: int
     problems: tuple[str, ...]
+    unread: int
 
 
 @dataclass(frozen=True, slots=True)

@@ -14,6 +14,7 @@ from kivy.uix.boxlayout import BoxLayout
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.parts import Key
 from fieldapp.states import Change
+from fieldapp.wording import counted
 
 if TYPE_CHECKING:
     from datetime import datetime
@@ -169,13 +170,13 @@ class HandOverLeaf(BoxLayout):
         p = self._preview
         lines = [
             p.source.name,
-            f"adds {len(p.adds)} readings, changes {len(p.changes)}, {p.known} known already",
+            f"adds {counted(len(p.adds))}, changes {len(p.changes)}, {p.known} known already",
         ]
         if p.clashes:
             lines.append(f"{len(p.clashes)} clash with what is here; both are kept")
             lines.extend(f"   {line.text} {line.outcrop}" for line in p.clashes[:5])
-        if p.problems:
-            lines.append(f"{len(p.problems)} rows cannot be read")
+        if p.unread:
+            lines.append(f"{counted(p.unread, 'row')} cannot be read")
             lines.extend(f"   {text}" for text in p.problems[:5])
         self.preview_text = "\n".join(lines)
 

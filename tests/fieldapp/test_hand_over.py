@@ -138,6 +138,15 @@ def test_bad_rows_are_listed_and_the_good_ones_offered(page, tmp_path):
     assert page._notebook.count() == 1
 
 
+def test_all_bad_rows_are_counted(page, tmp_path):
+    """However many rows cannot be read, the preview says how many, and names the first of them."""
+    path = tmp_path / "b.csv"
+    path.write_text("feature,strike_deg,dip_deg\nbedding,45,30\n" + "bedding,45,300\n" * 2400)
+    preview = page.preview_take_in(path)
+    assert preview.unread == 2400
+    assert 0 < len(preview.problems) < 2400
+
+
 def test_a_file_that_is_no_csv_of_readings_is_said(page, tmp_path):
     """Anything else is refused in words and nothing is written."""
     path = tmp_path / "picture.csv"

@@ -426,7 +426,7 @@ def test_a_file_from_the_devices_own_chooser_is_looked_at_before_it_is_taken_in(
     driver.app.outline.show("Hand over")
     leaf = driver.app.outline.leaf("Hand over")
     leaf.choose_file()
-    driver.wait(lambda: "adds 1 readings" in leaf.preview_text)
+    driver.wait(lambda: "adds 1 reading," in leaf.preview_text)
     assert leaf.folder is None
     assert driver.app.page.standing == ()
     leaf.choose_file()
