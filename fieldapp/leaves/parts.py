@@ -53,8 +53,10 @@ class Words(Label):
 
     def texture_update(self, *_: object) -> None:
         """Render the words, smaller and smaller until they fit."""
-        if self.width < 2 or self.height < 2:
-            return  # not laid out yet, or hidden; a change of size renders again
+        if self.width < 2 or self.height < 2:  # not laid out yet, or hidden; a change of size renders again
+            if not self.text:
+                super().texture_update()  # else the words from before stayed on the screen
+            return
         full = self.font_size
         share = 1.0
         while True:

@@ -217,3 +217,22 @@ def test_words_in_an_empty_funnel_stay_off_its_axis(driver, high):
     assert len(lines) > 2
     assert min(bottom for _, bottom, _, _ in lines) > max(top for _, _, _, top in below)
     assert max(top for _, _, _, top in lines) <= funnel.top
+
+
+def test_words_that_make_room_for_a_remark_are_gone(driver):
+    """With a note, what stands under the digits is the remark alone; without it the labels are back."""
+    from fieldapp.leaves.parts import Words
+
+    def drawn():
+        words = [w for w in driver.app.outline.leaf("Log").walk() if isinstance(w, Words)]
+        assert [w.texture_size for w in words if not w.text and max(w.texture_size) > 0] == []
+        return {w.text for w in words if max(w.texture_size) > 0}
+
+    assert {"strike", "dip"} <= drawn()
+    driver.app.page.set_note("slickenlines")
+    driver.frames(4)
+    assert "note" in drawn()
+    assert not {"strike", "dip"} & drawn()
+    driver.app.page.set_note("")
+    driver.frames(4)
+    assert {"strike", "dip"} <= drawn()
