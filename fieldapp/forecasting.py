@@ -95,6 +95,4 @@ class Forecaster:
         if newest is None or newest.version != version or newest.check.more_readings is None:
             return FunnelState(points, margin_deg)
         now = sum(newest.check.readings.of(feature) for feature in Feature)
-        more = newest.check.more_readings
-        settles = (now + more.total, now + more.low, now + more.high)
-        return FunnelState(points, margin_deg, newest.ahead, *settles)
+        return FunnelState(points, margin_deg, newest.ahead, now + newest.check.more_readings.total)

@@ -60,7 +60,6 @@ def entry_of(
         inclination_text=draft.digits.inclination,
         active="" if whole else "inclination" if draft.digits.in_inclination else "azimuth",
         quadrant_offered=by_strike,
-        quadrant_required=required,
         quadrant=draft.quadrant,
         expected_quadrant=expected_quadrant(draft, planes),
         checks=found.lines,

@@ -1,20 +1,14 @@
-"""Past readings as lines of a list, and the reading that a touch on the net names."""
+"""Past readings as lines of a list, and the particulars of one that was touched."""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-import numpy as np
-
-from analysis.orient.vectors import equal_area_xy
 from fieldapp.states import NamedReading, ReadingLine
 from fieldapp.wording import FEATURE_LABELS, outcrop_title, reading_text
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
-
     from analysis.files.reading import Reading
-    from fieldapp.checking import Neighbour
     from fieldapp.settings import PlaneNotation
 
 
@@ -30,26 +24,6 @@ def line_of(reading: Reading, planes: PlaneNotation) -> ReadingLine:
         reading.warnings_kept,
         reading.recorded_at,
     )
-
-
-def nearest(neighbours: Sequence[Neighbour], x: float, y: float, reach: float) -> str | None:
-    """Id of the standing reading nearest to a place on the net of radius 1 (x east, y north), within reach.
-
-    Of several equally near the newest is named. A line or pole near the rim is found at either end, for a
-    horizontal axis is drawn at one of two places that mean the same.
-    """
-    if not neighbours:
-        return None
-    places = equal_area_xy(np.stack([n.vector for n in neighbours]))
-    away = np.hypot(places[:, 0] - x, places[:, 1] - y)
-    opposite = np.hypot(places[:, 0] + x, places[:, 1] + y)
-    on_rim = np.hypot(places[:, 0], places[:, 1]) > 1.0 - reach
-    away = np.where(on_rim, np.minimum(away, opposite), away)
-    newest_first = away[::-1]
-    found = int(np.argmin(newest_first))
-    if newest_first[found] > reach:
-        return None
-    return neighbours[len(neighbours) - 1 - found].reading_id
 
 
 def named_reading(reading: Reading, planes: PlaneNotation) -> NamedReading:

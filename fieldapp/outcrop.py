@@ -28,7 +28,6 @@ from analysis.orient.north import north_correction
 from fieldapp.draft import Key
 from fieldapp.entry import EntryDraft, North
 from fieldapp.making import mended_reading, new_reading
-from fieldapp.naming import nearest
 from fieldapp.notebook.opening import open_notebook
 from fieldapp.page.faulting import PageFaulting
 from fieldapp.running import check_settings
@@ -38,7 +37,6 @@ from fieldapp.states import (
     Change,
     Message,
     MessageKind,
-    NamedReading,
     Offer,
     SignalKind,
 )
@@ -248,11 +246,6 @@ class OutcropPage(PageFaulting):
         self._just_struck = ""
         self._settle(revised, Message(f"Taken back: {self._text(reading)}."))
         return True
-
-    def name_at(self, x: float, y: float, reach: float = 0.06) -> NamedReading | None:
-        """Name the reading nearest to a place on the net (x east, y north, radius 1), within reach."""
-        self.name_reading(nearest(self._running.neighbours, x, y, reach) or "")
-        return self.named
 
     def name_reading(self, reading_id: str) -> None:
         """Name a reading."""

@@ -89,7 +89,6 @@ class EntryState:
     inclination_text: str = ""
     active: str = "azimuth"
     quadrant_offered: bool = False
-    quadrant_required: bool = False
     quadrant: str = ""
     expected_quadrant: str = ""
     checks: tuple[CheckLine, ...] = ()
@@ -99,7 +98,7 @@ class EntryState:
     mending_text: str = ""
     note: str = ""
     overturned: bool = False
-    instrument: str = "compass"
+    instrument: str = "compass"  # or "tablet", as the sensors gave it
     saved: bool = True
 
 
@@ -233,8 +232,6 @@ class FunnelState:
     margin_deg: float
     ahead: tuple[ForecastPoint, ...] = ()
     settles_at: int | None = None
-    settles_low: int | None = None
-    settles_high: int | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -52,9 +52,6 @@ class UndoStack:
     def __init__(self) -> None:
         self._steps: list[Step] = []
 
-    def __bool__(self) -> bool:
-        return bool(self._steps)
-
     def push(self, step: Step) -> None:
         """Note one thing done."""
         self._steps = [*self._steps[-(DEPTH - 1) :], step]

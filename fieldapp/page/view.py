@@ -201,8 +201,3 @@ class PageView(PagePlacing):
     def fault(self) -> FaultInput:
         """The fault beside the current fold."""
         return self._cached("fault", Change.FAULT | Change.PLACE, lambda: self._notebook.fault(self._fold))
-
-    @property
-    def can_undo(self) -> bool:
-        """Whether there is something to take back."""
-        return bool(self._undo)

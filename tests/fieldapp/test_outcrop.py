@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-import numpy as np
 import pytest
 
 from analysis.fold.check import check_fold
@@ -112,24 +111,18 @@ def test_undo_takes_back_the_last_things_one_by_one(page, kept):
     page.clear()
     assert page.undo()
     assert page.tabs[0].in_fold == 0
-    assert not page.can_undo
     assert not page.undo()
     assert len(page._notebook.revisions()) == 2 + 1 + 1 + 4
 
 
-def test_the_net_names_the_nearest_reading(page, kept):
-    """A touch on the net within reach names the reading, one elsewhere names none."""
+def test_a_reading_is_named_with_its_particulars(page, kept):
+    """A reading touched on the net is named until another touch, also when it is struck out meanwhile."""
     reading_id = kept(page, BEDDING, "045/30")
     kept(page, LINE, "200/70")
-    pole = page.net.points[BEDDING]
-    assert pole.reading_ids == (reading_id,)
-    north, east, down = pole.vectors[0]
-    x, y = np.array([east, north]) / np.sqrt(1 + down)
-    named = page.name_at(x + 0.02, y)
-    assert named.title == "Bedding 045/30 SE"
-    assert "entered as strike/dip 045/30 SE" in named.lines
-    assert page.name_at(0.9, 0.0) is None
+    assert page.net.points[BEDDING].reading_ids == (reading_id,)
     page.name_reading(reading_id)
+    assert page.named.title == "Bedding 045/30 SE"
+    assert "entered as strike/dip 045/30 SE" in page.named.lines
     page.strike_out(reading_id)
     assert page.named.struck_out
     page.name_nothing()
