@@ -137,6 +137,7 @@ class LogLeaf(BoxLayout):
         readout.azimuth, readout.inclination = entry.azimuth_text, entry.inclination_text
         readout.active, readout.direction = entry.active, entry.quadrant
         remarks = ["mending " + entry.mending_text] if entry.mending else []
+        remarks += ["measured"] if entry.instrument == "tablet" else []
         remarks += ["overturned"] if entry.overturned else []
         remarks += ["note"] if entry.note else []
         remarks += [] if entry.saved else ["not yet saved"]

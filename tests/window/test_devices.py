@@ -37,7 +37,7 @@ def test_the_position_and_its_quality_stand_beside_the_outcrop(traced):
 
 
 def test_a_plane_is_measured_and_put_into_the_entry(traced):
-    """Measure reads the tablet's attitude and, once it was held still, fills the entry with it."""
+    """Measure fills the entry once the tablet was held still; the page says so until a digit is typed over it."""
     log, page = traced.app.outline.leaf("Log"), traced.app.page
     traced.press(log.side.keys["measure"])
     assert "on the plane" in traced.app.outline.sheet.fields.how
@@ -45,6 +45,9 @@ def test_a_plane_is_measured_and_put_into_the_entry(traced):
     assert page.entry.azimuth_text[:3] in ("000", "360", "359")
     assert page.entry.inclination_text[:2] == "30"
     assert page.entry.instrument == "tablet"
+    assert log.readout.remark == "measured"
+    traced.press(log.pad.keys["1"])
+    assert log.readout.remark == ""
 
 
 def test_without_sensors_there_is_no_measure_key(driver):
