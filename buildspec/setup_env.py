@@ -23,8 +23,11 @@ from typing import TYPE_CHECKING, NamedTuple
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
 
-OLDEST_PYTHON = (3, 11)
 ROOT = Path(__file__).resolve().parent.parent
+sys.path.insert(0, str(ROOT))
+from fieldapp.display import has_display  # noqa: E402, F401 - there before anything is installed; run and test ask it
+
+OLDEST_PYTHON = (3, 11)
 VENV = ROOT / ".venv"
 CONSTRAINTS = ROOT / "buildspec" / "constraints.txt"
 STAMP = "hingewise-stamp.json"
@@ -279,13 +282,6 @@ def ensure_environment(extras: Sequence[str]) -> Path:
 
 
 # The display ----
-
-
-def has_display() -> bool:
-    """Whether a window can be opened here."""
-    if not sys.platform.startswith("linux"):
-        return True
-    return bool(os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY"))
 
 
 @contextlib.contextmanager

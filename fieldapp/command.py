@@ -5,26 +5,18 @@ Without a command it opens the app; `analysis` itself knows nothing of the app.
 
 from __future__ import annotations
 
-import os
-import sys
 from pathlib import Path
 
 import click
 
 from analysis.cli import hingewise as commands
 from analysis.demo import DEMO_NOTE
+from fieldapp.display import has_display
 
 
 def notebook_path() -> Path:
     """Where the user's notebook lies unless told otherwise."""
     return Path(click.get_app_dir("hingewise")) / "notebook.db"
-
-
-def has_display() -> bool:
-    """Whether a window can be opened here."""
-    if sys.platform.startswith("linux"):
-        return bool(os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY"))
-    return True
 
 
 @click.group(cls=type(commands), invoke_without_command=True, context_settings=commands.context_settings)
