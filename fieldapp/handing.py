@@ -7,17 +7,17 @@ before.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from datetime import UTC, datetime
 from typing import TYPE_CHECKING
 
 from fieldapp.naming import line_of
-from fieldapp.notebook.backups import backups_of
+from fieldapp.notebook.backups import backups_of, kept_before_restoring, made_at
 from fieldapp.notebook.store import standing_of
-from fieldapp.states import HandOverState, TakeInPreview
+from fieldapp.states import Backup, HandOverState, TakeInPreview
 from fieldapp.wording import counted
 
 if TYPE_CHECKING:
     from collections.abc import Callable
+    from datetime import datetime
     from pathlib import Path
 
     from analysis.files.reading import Reading
@@ -46,14 +46,13 @@ class HandOver:
 
     def state(self, readings: int) -> HandOverState:
         """What the Hand over leaf tells; `readings` is the number of readings in the notebook."""
-        backups = tuple(backups_of(self._notebook.path))
+        backups = (backup_at(path) for path in backups_of(self._notebook.path))
         last = self._notebook.last_take_in()
         return HandOverState(
             readings=readings,
             since_last=self._notebook.count_not_handed_over(),
             last_hand_over=self._notebook.last_hand_over(),
-            last_backup=_written_at(backups[0]) if backups else None,
-            backups=backups,
+            backups=tuple(sorted(backups, key=lambda backup: backup.made_at, reverse=True)),
             space_left_bytes=self._notebook.space_left_bytes(),
             last_take_in="" if last is None else f"{counted(last.revisions)} from {last.source}",
             notebook_path=self._notebook.path,
@@ -112,8 +111,6 @@ class HandOver:
         return taken
 
 
-def _written_at(backup: Path) -> datetime | None:
-    try:
-        return datetime.fromtimestamp(backup.stat().st_mtime, tz=UTC)
-    except OSError:
-        return None
+def backup_at(path: Path) -> Backup:
+    """Tell what is known of a backup without opening it."""
+    return Backup(path, *made_at(path), kept_before_restoring(path))

@@ -27,6 +27,7 @@ from analysis.orient.features import Feature
 from analysis.orient.north import north_correction
 from fieldapp.draft import Key
 from fieldapp.entry import EntryDraft, North
+from fieldapp.handing import backup_at
 from fieldapp.making import mended_reading, new_reading
 from fieldapp.notebook.opening import open_notebook
 from fieldapp.page.faulting import PageFaulting
@@ -339,7 +340,7 @@ class OutcropPage(PageFaulting):
             case Offer.UNDO:
                 done = self.undo()
             case Offer.ADD_BACKUP if self._report.newest_backup is not None:
-                done = self.add_backup(self._report.newest_backup)
+                done = self.add_backup(backup_at(self._report.newest_backup))
             case Offer.CORRECT_NORTH:
                 done = self.correct_north() > 0
             case Offer.PLACE_READINGS:

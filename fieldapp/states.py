@@ -288,6 +288,19 @@ class Message:
     offer: Offer = Offer.NONE
 
 
+@dataclass(frozen=True, slots=True)
+class Backup:
+    """One backup of the notebook: its file, when it was made (aware, UTC), and whether that is known to the minute.
+
+    `kept_before` where it is how the notebook was before going back to another one.
+    """
+
+    path: Path
+    made_at: datetime
+    to_the_minute: bool
+    kept_before: bool
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class HandOverState:
     """What the Hand over leaf tells. Times are aware, UTC; None where it never happened or is not known."""
@@ -295,8 +308,7 @@ class HandOverState:
     readings: int
     since_last: int
     last_hand_over: datetime | None
-    last_backup: datetime | None
-    backups: tuple[Path, ...]  # newest first
+    backups: tuple[Backup, ...]  # newest first
     space_left_bytes: int | None
     last_take_in: str  # "" or "12 readings from tablet-b.csv", as long as it can be undone
     notebook_path: Path

@@ -13,9 +13,11 @@ from fieldapp.settings import PlaneNotation
 
 if TYPE_CHECKING:
     from collections.abc import Collection
+    from datetime import datetime
 
     from analysis.files.reading import Reading
     from analysis.orient.position import Position
+    from fieldapp.states import Backup
 
 FEATURE_LABELS = {
     Feature.BEDDING: "Bedding",
@@ -106,6 +108,16 @@ def age_text(seconds: float) -> str:
         if seconds < limit:
             return f"{max(0.0, seconds) / size:.0f} {unit}"
     return f"{seconds / 86_400.0:.0f} d"
+
+
+def when_text(at: datetime | None) -> str:
+    """A time as the geologist's clock shows it, or "never"."""
+    return "never" if at is None else at.astimezone().strftime("%d %b %Y, %H:%M")
+
+
+def backup_text(backup: Backup) -> str:
+    """When a backup was made; the day alone, as its name says it, where the time is not known."""
+    return when_text(backup.made_at) if backup.to_the_minute else backup.made_at.strftime("%d %b %Y")
 
 
 def counted(number: int, thing: str = "reading") -> str:

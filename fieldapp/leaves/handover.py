@@ -1,4 +1,4 @@
-"""The Hand over leaf: write the CSV, take in a colleague's, the backup, the space left."""
+"""The Hand over leaf: write the CSV, take in a colleague's, the backups, the space left."""
 
 from __future__ import annotations
 
@@ -14,20 +14,13 @@ from kivy.uix.boxlayout import BoxLayout
 from fieldapp.leaves import load_kv
 from fieldapp.leaves.parts import Key
 from fieldapp.states import Change
-from fieldapp.wording import counted
+from fieldapp.wording import backup_text, counted, when_text
 
 if TYPE_CHECKING:
-    from datetime import datetime
-
     from fieldapp.states import TakeInPreview
 
 FOLDER_NAME = "hand-over"
 MEGABYTE = 1_000_000
-
-
-def when_text(at: datetime | None) -> str:
-    """A time as the geologist's clock shows it, or "never"."""
-    return "never" if at is None else at.astimezone().strftime("%d %b %Y, %H:%M")
 
 
 def space_text(count: int | None) -> str:
@@ -72,6 +65,8 @@ class HandOverLeaf(BoxLayout):
     preview_text = StringProperty("")
     undo_text = StringProperty("")
     has_log = BooleanProperty(False)
+    has_backups = BooleanProperty(False)
+    read_only = BooleanProperty(False)
     folder = ObjectProperty(None, allownone=True)
 
     def __init__(self, **kwargs: object) -> None:
@@ -90,7 +85,9 @@ class HandOverLeaf(BoxLayout):
         state = self.page.hand_over
         self.since = f"{state.since_last} new since the last hand-over"
         self.kept = f"{state.readings}"
-        self.last, self.backup = when_text(state.last_hand_over), when_text(state.last_backup)
+        self.last = when_text(state.last_hand_over)
+        self.backup = backup_text(state.backups[0]) if state.backups else when_text(None)
+        self.has_backups, self.read_only = bool(state.backups), state.read_only
         self.space = space_text(state.space_left_bytes)
         self.undo_text = f"Take back: {state.last_take_in}" if state.last_take_in else ""
         self.where = f"Files are written to the folder {FOLDER_NAME} beside the notebook."
@@ -188,6 +185,16 @@ class HandOverLeaf(BoxLayout):
     def leave_it(self) -> None:
         """Take nothing in."""
         self._preview, self.preview_text = None, ""
+
+    # Backups
+
+    def show_backups(self) -> None:
+        """List the backups, to go back to one or to add what it holds."""
+        from fieldapp.leaves.backups import BackupsSheet  # noqa: PLC0415 - loaded when it is used
+
+        outline = App.get_running_app().outline
+        if outline.sheet is None:  # a touch on what scrolls may arrive twice
+            BackupsSheet().open(outline)
 
 
 load_kv("handover")

@@ -6,19 +6,20 @@ import os
 import sqlite3
 import threading
 from contextlib import closing, suppress
+from datetime import UTC, date, datetime, time
 from typing import TYPE_CHECKING
 
 from fieldapp.notebook.errors import DamagedError, plain_errors, plain_os_errors, primary_code
 from fieldapp.notebook.rows import SELECT, digest_of, reading_from
 
 if TYPE_CHECKING:
-    from datetime import date
     from pathlib import Path
 
     from analysis.files.reading import Reading
 
 KEPT = 7
 _SUFFIX = ".backup"
+_MOMENT = len("2026-05-04T093000Z")
 
 
 def folder_of(notebook: Path) -> Path:
@@ -32,6 +33,38 @@ def backups_of(notebook: Path) -> list[Path]:
         return sorted(folder_of(notebook).glob(f"*{_SUFFIX}"), key=lambda path: path.name, reverse=True)
     except OSError:
         return []
+
+
+def made_at(backup: Path) -> tuple[datetime, bool]:
+    """When a backup was made, aware, UTC, and whether to the minute.
+
+    Its name says the day, or the moment before another was restored. The hour of a day's backup is that of the file,
+    unless the file was copied since and carries another day.
+    """
+    stem = backup.stem
+    with suppress(ValueError):
+        return datetime.strptime(stem[:_MOMENT], "%Y-%m-%dT%H%M%SZ").replace(tzinfo=UTC), True
+    with suppress(OSError):
+        written = datetime.fromtimestamp(backup.stat().st_mtime, tz=UTC)
+        if written.date().isoformat() == stem:
+            return written, True
+    with suppress(ValueError):
+        return datetime.combine(date.fromisoformat(stem), time(), UTC), False
+    return datetime.fromtimestamp(0, tz=UTC), False
+
+
+def kept_before_restoring(backup: Path) -> bool:
+    """Whether a backup is how the notebook was before another one was restored."""
+    return backup.stem.endswith("before restoring")
+
+
+def count_in(backup: Path) -> int | None:
+    """Number of readings that a backup holds, struck-out ones included; None where it cannot be read."""
+    try:
+        with closing(sqlite3.connect(f"{backup.resolve().as_uri()}?mode=ro&immutable=1", uri=True)) as db:
+            return int(db.execute("SELECT count(DISTINCT reading_id) FROM seen").fetchone()[0])
+    except sqlite3.Error:
+        return None
 
 
 def is_due(notebook: Path, day: date) -> bool:

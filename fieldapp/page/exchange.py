@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from analysis.errors import HingewiseError
 from fieldapp.entry import EntryDraft
+from fieldapp.notebook.backups import count_in
 from fieldapp.page.view import PageView
 from fieldapp.settings import Settings
 from fieldapp.states import (
@@ -16,12 +17,12 @@ from fieldapp.states import (
     TakeInPreview,
 )
 from fieldapp.undoing import Step, StepKind, UndoStack
-from fieldapp.wording import (
-    counted,
-)
+from fieldapp.wording import backup_text, counted
 
 if TYPE_CHECKING:
     from pathlib import Path
+
+    from fieldapp.states import Backup
 
 
 class PageExchange(PageView):
@@ -75,10 +76,14 @@ class PageExchange(PageView):
 
     # -- backups --------------------------------------------------------------------------------------------
 
-    def restore(self, backup: Path) -> bool:
+    def readings_in_backup(self, backup: Backup) -> int | None:
+        """Number of readings that a backup holds, struck-out ones included; None where it cannot be read."""
+        return count_in(backup.path)
+
+    def restore(self, backup: Backup) -> bool:
         """Put the notebook back to a backup; how it is now is kept as a backup of its own first."""
         try:
-            self._notebook.restore(backup)
+            self._notebook.restore(backup.path)
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         self._undo = UndoStack()
@@ -86,16 +91,17 @@ class PageExchange(PageView):
         self._settings = Settings.from_values(stored)
         self._draft = EntryDraft.from_values(self._notebook.draft())
         self._fold, self._outcrop = self._first_place(stored)
-        self._message = Message(f"The notebook is as in the backup {backup.stem}.")
+        self._message = Message(f"The notebook is as in the backup of {backup_text(backup)}.")
         self._reload()
         return True
 
-    def add_backup(self, backup: Path) -> bool:
+    def add_backup(self, backup: Backup) -> bool:
         """Add what a backup holds and the notebook does not."""
         try:
-            added = self._notebook.add_backup(backup)
+            added = self._notebook.add_backup(backup.path)
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
-        self._message = Message(f"{counted(added, 'revision')} added from the backup {backup.stem}.")
+        words = f"{counted(added, 'revision')} added from the backup of {backup_text(backup)}."
+        self._message = Message(words)
         self._reload()
         return True

@@ -4,13 +4,15 @@ import os
 import subprocess
 import sys
 from dataclasses import replace
+from datetime import timedelta
 from pathlib import Path
 
 import pytest
 
 from analysis.files.csvfile import read_readings, write_readings
 from analysis.orient.features import Feature
-from fieldapp.states import MessageKind, Offer
+from fieldapp.states import Change, MessageKind, Offer
+from fieldapp.wording import backup_text
 
 BEDDING, CLEAVAGE, LINE, _ = Feature
 ROOT = Path(__file__).parents[2]
@@ -175,9 +177,39 @@ def test_restoring_a_backup_and_adding_it_back(page, kept):
     page.change_settings(replace(page.settings, margin_deg=3.0))
     assert page.restore(backup)
     assert [r.text for r in page.standing] == ["045/30 SE"]
-    saved = next(b for b in page.hand_over.backups if "before" in b.name)
+    saved = next(b for b in page.hand_over.backups if b.kept_before)
     assert page.add_backup(saved)
     assert [r.text for r in page.standing] == ["050/30 SE", "045/30 SE"]
+
+
+def test_backups_are_told_newest_first_with_what_they_hold(page, clock, kept):
+    """The page lists each backup with its hour and its readings, and says afterwards which one it went back to."""
+    for hour in (8, 17):
+        kept(page, BEDDING, "045/30")
+        page.back_up()
+        newest = page.hand_over.backups[0].path
+        at = clock.now.replace(hour=hour, minute=5, second=0)
+        os.utime(newest, (at.timestamp(), at.timestamp()))
+        clock.later(days=1)
+    page._tell(Change.HAND_OVER)
+    late, early = page.hand_over.backups
+    assert late.made_at - early.made_at == timedelta(days=1, hours=9)
+    assert [page.readings_in_backup(b) for b in (late, early)] == [2, 1]
+    assert page.restore(early)
+    said = early.made_at.astimezone().strftime("%d %b %Y, %H:%M")
+    assert page.message.text == f"The notebook is as in the backup of {said}."
+    first = page.hand_over.backups[0]
+    assert first.kept_before
+    assert page.readings_in_backup(first) == 2
+
+
+def test_a_backup_copied_to_another_day_tells_no_hour(page, kept):
+    """The words are the day that its name says, whatever the clock of this device."""
+    kept(page, BEDDING, "045/30")
+    backup = page.hand_over.backups[0]
+    os.utime(backup.path, (0, 0))
+    page._tell(Change.HAND_OVER)
+    assert backup_text(page.hand_over.backups[0]) == "01 May 2026"
 
 
 def test_nothing_heavy_is_loaded_until_a_hand_over(tmp_path):

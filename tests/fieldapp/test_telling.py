@@ -66,13 +66,13 @@ def test_todays_backup_is_made_and_renewed(page, clock, kept):
     held = []
     for number in range(30):
         kept(page, BEDDING, f"0{40 + number % 9}/30")
-        held.append(len(readings_in(page.hand_over.backups[0])))
+        held.append(len(readings_in(page.hand_over.backups[0].path)))
     assert held == [1] * 25 + [26] * 5
     clock.later(days=1)
     kept(page, BEDDING, "045/31")
-    assert [len(readings_in(b)) for b in page.hand_over.backups] == [31, 26]
+    assert [len(readings_in(b.path)) for b in page.hand_over.backups] == [31, 26]
     kept(page, BEDDING, "045/32")
-    newest = page.hand_over.backups[0]
+    newest = page.hand_over.backups[0].path
     page.close()
     assert len(readings_in(newest)) == 32
 

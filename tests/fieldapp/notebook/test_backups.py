@@ -1,14 +1,26 @@
 from __future__ import annotations
 
+import os
 import sqlite3
 import threading
 from contextlib import closing
-from datetime import date, timedelta
+from datetime import UTC, date, datetime, timedelta
 
 import pytest
 
 from fieldapp.notebook import open_notebook
-from fieldapp.notebook.backups import KEPT, back_up, backups_of, faults_in, folder_of, is_due, readings_in
+from fieldapp.notebook.backups import (
+    KEPT,
+    back_up,
+    backups_of,
+    count_in,
+    faults_in,
+    folder_of,
+    is_due,
+    kept_before_restoring,
+    made_at,
+    readings_in,
+)
 from fieldapp.notebook.errors import DamagedError, NotebookError
 
 DAY = date(2026, 5, 1)
@@ -139,6 +151,39 @@ def test_backups_run_beside_keeping(notebook, path, make_reading):
     assert trouble == []
     assert made == sorted(made)
     assert notebook.count() == 61
+
+
+def test_a_backup_says_how_many_readings_it_holds(notebook, path, make_reading):
+    """Revisions of one reading are one reading, a struck-out one counts; a file that is no backup has no number."""
+    first = make_reading()
+    notebook.keep(first)
+    notebook.keep(make_reading())
+    notebook.keep(first.revised(at=first.recorded_at, struck_out=True))
+    backup = back_up(path, DAY)
+    assert count_in(backup) == 2
+    for number, content in enumerate((b"", b"SQLite format 3\0" + bytes(5000))):
+        broken = backup.with_name(f"broken-{number}.backup")
+        broken.write_bytes(content)
+        assert count_in(broken) is None
+    assert count_in(backup.with_name("nowhere.backup")) is None
+
+
+def test_a_backup_says_when_it_was_made(notebook, path, make_reading):
+    """Day and hour of the file where it is of that day, the moment named before restoring, else the day alone."""
+    notebook.keep(make_reading())
+    backup = back_up(path, DAY)
+    at = datetime(2026, 5, 1, 16, 40, tzinfo=UTC)
+    os.utime(backup, (at.timestamp(), at.timestamp()))
+    assert made_at(backup) == (at, True)
+    copied = at + timedelta(days=90)
+    os.utime(backup, (copied.timestamp(), copied.timestamp()))
+    assert made_at(backup) == (datetime(2026, 5, 1, tzinfo=UTC), False)
+    assert not kept_before_restoring(backup)
+    notebook.restore(backup)
+    (before,) = (b for b in backups_of(path) if kept_before_restoring(b))
+    when, to_the_minute = made_at(before)
+    assert to_the_minute
+    assert when.date() == DAY
 
 
 def test_no_folder_no_backups(path):
