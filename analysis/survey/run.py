@@ -229,11 +229,15 @@ def _computing(workers: int | None, scheduler: str | None, progress: TextIO | No
 
 @contextmanager
 def _cluster(address: str, progress: TextIO | None) -> Iterator[Compute]:
-    from distributed import Client, as_completed  # noqa: PLC0415 - only where a cluster is asked for
+    import asyncio  # noqa: PLC0415 - only where a cluster is asked for
+
+    from distributed import Client, as_completed  # noqa: PLC0415 - as above
 
     try:
+        # Tried first, for a client that cannot connect waits for itself and complains when it is let go.
+        asyncio.run(_reach(address))
         client = Client(address, timeout=_CONNECT_SECONDS, set_as_default=False)
-    except (OSError, ValueError) as error:
+    except (ImportError, OSError, RuntimeError, TypeError, ValueError) as error:  # by scheme and transport
         raise SettingError(
             f"no Dask scheduler answers at {address}: {error}",
             where="--scheduler",
@@ -251,3 +255,12 @@ def _cluster(address: str, progress: TextIO | None) -> Iterator[Compute]:
 
     with client:
         yield compute
+
+
+async def _reach(address: str) -> None:
+    """Connect to an address once, as a client does, and hang up."""
+    from distributed.comm import connect  # noqa: PLC0415 - as above
+    from distributed.security import Security  # noqa: PLC0415
+
+    comm = await connect(address, timeout=_CONNECT_SECONDS, **Security().get_connection_args("client"))
+    await comm.close()

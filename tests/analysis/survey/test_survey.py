@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import threading
 from dataclasses import replace
 
 import pandas as pd
@@ -182,13 +183,23 @@ def test_an_archive_without_files_is_refused(tmp_path):
     assert (found.verdicts, found.readings, found.rows_read) == ((), 0, 0)
 
 
-def test_no_worker_and_no_scheduler(readings, written):
-    """No workers at all and an address at which nothing answers are refused in words."""
+def test_no_worker(readings, written):
+    """No workers at all are refused in words."""
     paths = written(readings)
     with pytest.raises(SettingError, match="workers"):
         survey(paths, workers=0)
+
+
+@pytest.mark.parametrize(
+    "address",
+    ["no address", "", "tcp://127.0.0.1:port", "tls://127.0.0.1:1", "ucx://127.0.0.1:1", "odd://there"],
+)
+def test_an_address_of_no_scheduler_is_refused_at_once(readings, written, address):
+    """Whatever is wrong with the address is said in words, with nothing left behind that complains later."""
+    started = threading.active_count()
     with pytest.raises(SettingError, match="no Dask scheduler"):
-        survey(paths, scheduler="no address")
+        survey(written(readings), scheduler=address)
+    assert threading.active_count() == started
 
 
 def test_progress_is_shown_where_it_is_asked_for(readings, written):
