@@ -7,6 +7,7 @@ workers changes no figure.
 
 from __future__ import annotations
 
+import os
 from contextlib import contextmanager, nullcontext
 from dataclasses import dataclass
 from functools import reduce
@@ -25,7 +26,6 @@ from analysis.survey.squares import Grid, position_of
 from analysis.survey.verdicts import mean_rows, together, verdict_row
 
 if TYPE_CHECKING:
-    import os
     from collections.abc import Callable, Iterable, Iterator, Sequence
 
     from analysis.files.faults import RowFault
@@ -93,7 +93,8 @@ def survey(
         Where there is no file, Dask is missing, or no scheduler answers.
 
     """
-    archive = find_archive(paths)
+    # Workers elsewhere were started in folders of their own.
+    archive = find_archive(paths if scheduler is None else map(os.path.abspath, paths))
     with _computing(workers, scheduler, progress) as compute:
         total, scans = _scan(archive, grid, compute)
         total, conflicts = _without_repeats(total, scans, grid, compute)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import os
 import threading
 from dataclasses import replace
 
@@ -221,6 +222,21 @@ def test_parts_follow_the_names_of_files(written, readings):
     archive = find_archive([paths[0].parent, paths[1]])
     assert [part.path for part in archive.parts] == [str(path) for path in paths]
     assert archive.ids_matter
+
+
+def test_a_cluster_finds_files_by_paths_from_here(readings, written, monkeypatch):
+    """Files named from the folder one is in are found by workers that were started in another."""
+    from distributed import Client, LocalCluster  # noqa: PLC0415 - slow to load, and only here
+
+    (path,) = written(readings)
+    monkeypatch.chdir(path.parent)
+    with (
+        LocalCluster(n_workers=1, threads_per_worker=1, dashboard_address=None, silence_logs=50) as cluster,
+        Client(cluster.scheduler_address, set_as_default=False) as client,
+    ):
+        client.run(os.chdir, "/")
+        found = survey([path.name], scheduler=cluster.scheduler_address)
+    assert found == survey([path])
 
 
 def test_a_cluster_gives_the_same(readings, written):
