@@ -73,6 +73,7 @@ class RunningFold:
         self._rebuilt: tuple[FunnelPoint, ...] = ()
         self._since: list[FunnelPoint] = []
         self._check: FoldCheck | None = None
+        self._outcrop_check: tuple[int, str, FoldCheck] | None = None  # version, outcrop
         self._in_order: tuple[Neighbour, ...] | None = None
         self._fill(readings)
 
@@ -171,9 +172,12 @@ class RunningFold:
         return True
 
     def check_of_outcrop(self, outcrop: str) -> FoldCheck:
-        """The check of one outcrop's readings alone."""
-        sums = self._by_outcrop.get(outcrop, RunningSums())
-        return check_fold(sums, self.settings, fold=self.fold, forecast=False)
+        """The check of one outcrop's readings alone; asked again for the same readings it is not reckoned again."""
+        known = self._outcrop_check
+        if known is None or known[:2] != (self.version, outcrop):
+            check = check_fold(self.sums_of_outcrop(outcrop), self.settings, fold=self.fold, forecast=False)
+            known = self._outcrop_check = (self.version, outcrop, check)
+        return known[2]
 
     def sums_of_outcrop(self, outcrop: str) -> RunningSums:
         """Running sums of one outcrop."""

@@ -7,7 +7,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from kivy.app import App
-from kivy.metrics import dp
+from kivy.metrics import dp, sp
 from kivy.properties import BooleanProperty, ListProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
 from kivy.uix.floatlayout import FloatLayout
@@ -16,12 +16,16 @@ from fieldapp.drawing.funnel import NarrowingFunnel
 from fieldapp.drawing.net import EqualAreaNet
 from fieldapp.drawing.plan import PlanSketch
 from fieldapp.leaves import load_kv, scenes
-from fieldapp.leaves.parts import Choice, Scrolled
+from fieldapp.leaves.parts import Choice, Scrolled, Words
 from fieldapp.look.form import TOUCH_DP
 from fieldapp.states import Change
 
 if TYPE_CHECKING:
     from fieldapp.look.form import Form
+
+
+UNPLACED_LINES = 1.8  # of the two that stand below the plan: words that wrap leave some of the first one free
+LETTER = 0.55  # mean width of a letter, as a share of the size of the type
 
 
 class MeanFigure(BoxLayout):
@@ -63,6 +67,10 @@ class AdviceWords(BoxLayout):
     strong = BooleanProperty(True)
 
 
+class PlanNote(Words):
+    """What the plan cannot show, below it."""
+
+
 class CheckLeaf(FloatLayout):
     """The leaf; `refresh` shows the presenter's state, `arrange` fits it to the screen."""
 
@@ -82,10 +90,13 @@ class CheckLeaf(FloatLayout):
         self.next_reading = AdviceWords(name="Read next")
         self.limbs = AdviceWords(name="Limb against limb", strong=False)
         self.because = AdviceWords(name="Why", strong=False)
+        self.outcrop = AdviceWords(name="This outcrop", strong=False)
+        self.unplaced = PlanNote()
         self.named = Named()
         self._mean_named = ""
         self._plan_is_behind = True
         self._picture_box = BoxLayout(orientation="vertical")
+        self._picture_box.bind(width=lambda *_: self._show_unplaced())
         self._bind()
 
     @property
@@ -126,6 +137,18 @@ class CheckLeaf(FloatLayout):
         if self.picture == "plan" and self._plan_is_behind:
             self._plan_is_behind = False
             self.plan.scene = scenes.plan_scene(self.page.plan)
+            self._show_unplaced()
+
+    def _show_unplaced(self) -> None:
+        """Name below the plan the outcrops that it cannot show, in two lines."""
+        if self.form is None or self.picture != "plan":
+            return
+        letter = sp(self.form.small_sp) * LETTER
+        self.unplaced.text = scenes.unplaced_words(
+            self.page.plan, int(UNPLACED_LINES * self._picture_box.width / letter)
+        )
+        if bool(self.unplaced.text) is not (self.unplaced.parent is not None):
+            self._fill_picture()
 
     def _show_words(self) -> None:
         check, notation = self.page.check, self.page.settings.notation
@@ -141,6 +164,8 @@ class CheckLeaf(FloatLayout):
         self.limbs.text = scenes.limb_words(check, notation) or "One limb only, or too few bedding readings."
         because = [*check.because, *check.warnings]
         self.because.text = "\n".join(because)
+        here, name = self.page.outcrop_check, self.page.place.outcrop
+        self.outcrop.text = scenes.outcrop_words(check, here, name, notation)
 
     def _show_named(self) -> None:
         named = self.page.named
@@ -197,12 +222,12 @@ class CheckLeaf(FloatLayout):
         least = 40.0 if self.form.low else TOUCH_DP
         self.pictures.height = dp(max(self.form.line_dp(self.form.small_sp) + 14.0, least))
         self.legend.height = dp(self.form.line_dp(self.form.small_sp) + 6)
-        if self.form.low:
-            box.add_widget(self.net if self.picture == "net" else self.plan)
-            return
-        box.add_widget(self.pictures)
+        if not self.form.low:
+            box.add_widget(self.pictures)
         box.add_widget(self.net if self.picture == "net" else self.plan)
-        if self.picture == "net":
+        if self.picture == "plan" and self.unplaced.text:
+            box.add_widget(self.unplaced)
+        if self.picture == "net" and not self.form.low:
             box.add_widget(self.legend)
 
     def arrange(self) -> None:
@@ -213,7 +238,7 @@ class CheckLeaf(FloatLayout):
         self.clear_widgets()
         for widget in (
             self._picture_box, self.funnel, self.pictures, self.legend, self.hinge, self.cleavage,
-            self.intersection, self.next_reading, self.limbs, self.because,
+            self.intersection, self.next_reading, self.limbs, self.because, self.outcrop,
         ):  # fmt: skip
             if widget.parent is not None:
                 widget.parent.remove_widget(widget)
@@ -236,7 +261,7 @@ class CheckLeaf(FloatLayout):
         return row
 
     def _words(self) -> tuple[AdviceWords, ...]:
-        words = (self.next_reading, self.limbs, self.because)
+        words = (self.next_reading, self.limbs, self.because, self.outcrop)
         for one in words:
             one.size_hint_y = None
         return words
@@ -268,6 +293,7 @@ class CheckLeaf(FloatLayout):
             self.funnel,
             self.limbs,
             self.because,
+            self.outcrop,
         ):
             column.add_widget(widget)
         self._words()

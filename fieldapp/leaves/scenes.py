@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from analysis.fold.words import against_hinge, between
 from analysis.orient.features import Feature
 from analysis.orient.notation import azimuth_text, inclination_text
 from fieldapp.drawing.scene import (
@@ -20,6 +21,7 @@ from fieldapp.drawing.scene import (
     no_vectors,
 )
 from fieldapp.settings import PlaneNotation
+from fieldapp.wording import counted
 
 if TYPE_CHECKING:
     from analysis.fold.records import AxisEstimate, FoldCheck
@@ -156,6 +158,48 @@ def next_words(check: FoldCheck) -> tuple[str, str]:
     split = ", ".join(f"{getattr(more, name)} {name}" for name in names if getattr(more, name))
     spread = f" ({more.low} to {more.high})" if more.low != more.high else ""
     return first, f"about {more.total} more{spread}: {split}"
+
+
+def outcrop_words(whole: FoldCheck, here: FoldCheck, outcrop: str, notation: PlaneNotation) -> str:
+    """The outcrop's own axes, and its transection with its interval or what is missing; '' where it is the whole fold.
+
+    `whole` is the check of the fold, `here` that of the outcrop's readings alone. No verdict: that is the fold's.
+    """
+    counts = here.readings
+    if whole.readings.outcrops < 2:
+        return ""
+    name = outcrop or "unnamed"
+    read = sum(counts.of(feature) for feature in Feature)
+    if not read:
+        return f"{name}: nothing read yet."
+    axes = []
+    if here.hinge is not None:
+        axes.append(f"hinge {line_text(here.hinge.line)}")
+    if here.cleavage is not None:
+        axes.append(f"cleavage {plane_text(here.cleavage.plane, notation)}")
+    if here.intersection is not None:
+        axes.append(f"intersection {line_text(here.intersection.axis.line)}")
+    lines = [f"{name}, {read} read" + (f": {', '.join(axes)}" if axes else "")]
+    angle, interval = here.transection_deg, here.interval_deg
+    if angle is not None and interval is not None:
+        signed = here.sense != "unsigned"
+        lines.append(f"{against_hinge(angle, signed=signed)}, {between(*interval, signed=signed)}")
+    if interval is None or here.blocked:
+        lines.extend(here.because)
+    return "\n".join(lines)
+
+
+def unplaced_words(plan: PlanState, room: int) -> str:
+    """The outcrops that the plan cannot show, in so many characters; '' where it shows all, or none and says so."""
+    if not plan.outcrops or not plan.unplaced:
+        return ""
+    names = [name or "unnamed" for name in plan.unplaced]
+    for shown in range(min(len(names), room), 0, -1):
+        more = len(names) - shown
+        text = f"No position: {', '.join(names[:shown])}{f' and {more} more' if more else ''}"
+        if len(text) <= room:
+            return text
+    return f"No position: {counted(len(names), 'outcrop')}"
 
 
 def limb_words(check: FoldCheck, notation: PlaneNotation) -> str:

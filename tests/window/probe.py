@@ -29,6 +29,7 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
     from analysis.orient.features import Feature
     from fieldapp.help import PAGES
     from fieldapp.settings import Appearance
+    from fieldapp.states import Measured
 
     Config.set("graphics", "maxfps", "0")
     density = float(os.environ.get("KIVY_METRICS_DENSITY", "1"))
@@ -72,6 +73,10 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         page.point()
         page.digit(5)
         look("Log, decimals")
+        page.clear()
+        page.measured(Measured(azimuth_deg=45.2, inclination_deg=30.4, scatter_deg=1.2, samples=40))
+        look("Log, measured")
+        page.clear()
         page.mend(page.standing[0].reading_id)
         page.set_overturned(overturned=True)
         look("Log, mending")
@@ -99,7 +104,14 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         check.close_named()
         check.show_picture("plan")
         look("Check, plan")
+        here = page.place.outcrop
+        page.position_changed(None)
+        for name in ("MG-31", "MG-32 beside the stream below the old sheepfold", "MG-33", "MG-34", "MG-35"):
+            page.choose_outcrop(name)
+        look("Check, plan, outcrops without a position")
         check.show_picture("net")
+        look("Check, nothing read at this outcrop")
+        page.choose_outcrop(here)
         outline.show("Fault")
         look("Fault")
         outline.leaf("Fault").ask_strike()
