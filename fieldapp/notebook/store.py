@@ -255,7 +255,8 @@ class Notebook:
     def take_in(self, readings: Sequence[Reading], source: str) -> TakeIn:
         """Add revisions that a colleague's file brought, all in one transaction.
 
-        Revisions that are seen already are not touched. Two contents under one revision are both kept.
+        Revisions that are seen already are not touched; where all are, nothing is noted. Two contents under one
+        revision are both kept.
         """
         with self._writing() as db:
             now = self._now()
@@ -275,6 +276,8 @@ class Notebook:
                 seq = found[0] if found else self._add(db, reading, "taken in")
                 db.execute("INSERT INTO taken VALUES (?, ?)", (number, seq))
                 brought += 1
+            if not brought:
+                db.execute("DELETE FROM take_ins WHERE take_in = ?", (number,))
         return TakeIn(number, source, datetime.fromisoformat(now), brought)
 
     def undo_take_in(self, take_in: int) -> None:
@@ -341,20 +344,12 @@ class Notebook:
             source.backup(self._db)
             migrate(self._db, self.path, self._clock)
 
-    def add_backup(self, backup: Path) -> int:
-        """Add the revisions that a backup holds and the notebook does not; give their number."""
-        readings = readings_in(backup)
-        added = 0
-        with self._writing() as db:
-            for reading in readings:
-                found = db.execute(
-                    "SELECT 1 FROM revisions WHERE reading_id = ? AND revision = ? AND digest = ?",
-                    (reading.reading_id, reading.revision, digest_of(reading)),
-                ).fetchone()
-                if not found:
-                    self._add(db, reading, "kept")
-                    added += 1
-        return added
+    def add_backup(self, backup: Path, name: str = "a backup") -> TakeIn:
+        """Add the revisions that a backup holds and the notebook does not show: a take-in, with all that belongs to it.
+
+        What an undone take-in hides is shown again where the backup shows it.
+        """
+        return self.take_in(readings_in(backup), name)
 
     def space_left_bytes(self) -> int | None:
         """Free bytes on the storage that the notebook lies on; None where the system does not say."""

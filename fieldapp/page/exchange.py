@@ -22,6 +22,7 @@ from fieldapp.wording import backup_text, counted
 if TYPE_CHECKING:
     from pathlib import Path
 
+    from fieldapp.notebook.store import TakeIn
     from fieldapp.states import Backup
 
 
@@ -54,11 +55,16 @@ class PageExchange(PageView):
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
         if taken is None:
             return self._refuse(Message("Look at the file again before taking it in.", MessageKind.WARNING))
-        self._undo.push(Step(kind=StepKind.TAKEN_IN, take_in=taken.take_in))
-        words = f"{counted(taken.revisions, 'revision')} taken in from {taken.source}."
-        self._message = Message(words, offer=Offer.UNDO)
-        self._reload()
+        self._brought(taken, "taken in")
         return True
+
+    def _brought(self, taken: TakeIn, how: str) -> None:
+        """Tell what came in, and let it be taken back as a whole."""
+        words = f"{counted(taken.revisions, 'revision')} {how} from {taken.source}."
+        if taken.revisions:
+            self._undo.push(Step(kind=StepKind.TAKEN_IN, take_in=taken.take_in))
+        self._message = Message(words, offer=Offer.UNDO if taken.revisions else Offer.NONE)
+        self._reload()
 
     def undo_take_in(self) -> bool:
         """Take back the last take-in as a whole; revisions made here on top of it stay."""
@@ -98,10 +104,8 @@ class PageExchange(PageView):
     def add_backup(self, backup: Backup) -> bool:
         """Add what a backup holds and the notebook does not."""
         try:
-            added = self._notebook.add_backup(backup.path)
+            added = self._notebook.add_backup(backup.path, f"the backup of {backup_text(backup)}")
         except HingewiseError as error:
             return self._refuse(Message(str(error), MessageKind.TROUBLE))
-        words = f"{counted(added, 'revision')} added from the backup of {backup_text(backup)}."
-        self._message = Message(words)
-        self._reload()
+        self._brought(added, "added")
         return True

@@ -93,9 +93,9 @@ class Geologist(RuleBasedStateMachine):
 
     def doing(self, do, *values):
         """Do what can be taken back; note what stood before."""
-        before, depth = contents(self.page), len(self.page._undo._steps)
+        before, newest = contents(self.page), self.page._undo.newest()
         done = do(*values)
-        if done and (len(self.page._undo._steps) > depth or depth == DEPTH):
+        if done and self.page._undo.newest() is not newest:
             self.before = [*self.before[-(DEPTH - 1) :], (before, set())]
         changed = {key for key, content in contents(self.page).items() if before.get(key) != content}
         for _, touched in self.before[:-1]:  # a revision made here outlives the take-in that it rests on
@@ -404,8 +404,8 @@ class Geologist(RuleBasedStateMachine):
             self.said.clear()
             self.before.clear()
         else:
-            assert self.page.add_backup(backup), self.page.message
-            self.forget_the_order()
+            done, _ = self.doing(self.page.add_backup, backup)
+            assert done, self.page.message
 
     @rule()
     def restart(self):

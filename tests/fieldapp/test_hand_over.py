@@ -180,6 +180,14 @@ def test_restoring_a_backup_and_adding_it_back(page, kept):
     saved = next(b for b in page.hand_over.backups if b.kept_before)
     assert page.add_backup(saved)
     assert [r.text for r in page.standing] == ["050/30 SE", "045/30 SE"]
+    assert page.accept_offer()
+    assert [r.text for r in page.standing] == ["045/30 SE"]
+    assert page.add_backup(saved)
+    assert page.add_backup(saved)
+    assert page.message.text.startswith("0 revisions added")
+    assert page.message.offer is Offer.NONE
+    assert page.undo()
+    assert [r.text for r in page.standing] == ["045/30 SE"]
 
 
 def test_backups_are_told_newest_first_with_what_they_hold(page, clock, kept):

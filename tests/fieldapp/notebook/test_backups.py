@@ -90,8 +90,24 @@ def test_restoring_brings_the_backup_back_and_keeps_what_was(notebook, path, mak
     saved = next(p for p in backups_of(path) if "before restoring" in p.name)
     assert set(readings_in(saved)) == {early, late}
     notebook.keep(make_reading())
-    assert notebook.add_backup(saved) == 1
+    assert notebook.add_backup(saved).revisions == 1
     assert notebook.count() == 3
+    assert notebook.add_backup(saved).revisions == 0
+    assert notebook.last_take_in().revisions == 1  # nothing is noted of what brought nothing
+
+
+def test_adding_a_backup_shows_what_an_undone_take_in_hides(notebook, path, make_reading):
+    """What the backup shows is shown again, though the notebook has it; taking it back hides it once more."""
+    reading = make_reading()
+    taken = notebook.take_in([reading], "tablet-b.csv")
+    backup = back_up(path, DAY)
+    notebook.undo_take_in(taken.take_in)
+    assert notebook.count() == 0
+    added = notebook.add_backup(backup)
+    assert added.revisions == 1
+    assert list(notebook.standing().values()) == [reading]
+    notebook.undo_take_in(added.take_in)
+    assert notebook.count() == 0
 
 
 def test_the_oldest_backup_can_be_restored_again_and_again(notebook, path, make_reading):

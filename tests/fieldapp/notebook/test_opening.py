@@ -188,7 +188,7 @@ def test_the_newest_backup_is_offered(full, clock):
     assert opened.report.newest_backup == newest
     lost = len(readings) - opened.report.recovered
     assert lost > 20
-    assert opened.notebook.add_backup(newest) >= lost
+    assert opened.notebook.add_backup(newest).revisions >= lost
     assert set(opened.notebook.standing().values()) == set(readings)
     opened.notebook.close()
 
