@@ -15,8 +15,12 @@ import sys
 import tempfile
 from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import setup_env
+
+if TYPE_CHECKING:
+    from kivy.uix.widget import Widget
 
 NUMBERS = "04530"  # what is being typed on the pictures of the Log leaf
 
@@ -61,6 +65,7 @@ def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk thro
     from kivy.core.window import Window
     from kivy.graphics.opengl import GL_RGBA, GL_UNSIGNED_BYTE, glReadPixels
     from kivy.graphics.texture import Texture
+    from kivy.uix.scrollview import ScrollView
 
     from fieldapp.app import HingewiseApp, demo_path_beside
     from fieldapp.settings import Appearance
@@ -85,6 +90,11 @@ def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk thro
             Image(texture).save(str(folder / f"{screen.name}-{name}.png"), flipped=True)
             print(folder / f"{screen.name}-{name}.png")
 
+        def scroll_down(leaf: Widget) -> None:
+            for widget in leaf.walk():
+                if isinstance(widget, ScrollView):
+                    widget.scroll_y = 0.0
+
         outline, page = app.outline, app.page
         page.change_settings(replace(page.settings, appearance=Appearance(screen.look)))
         page.dismiss_message()
@@ -97,6 +107,8 @@ def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk thro
         page.clear()
         outline.show("Check")
         save("check")
+        scroll_down(outline.leaf("Check"))
+        save("check-below")
         page.name_reading(page.standing[3].reading_id)
         save("check-reading-named")
         page.name_nothing()
@@ -106,6 +118,11 @@ def take(screen: Screen, folder: Path) -> None:  # noqa: PLR0915 - one walk thro
         save("fault")
         outline.show("Hand over")
         save("hand-over")
+        outline.leaf("Hand over").show_backups()
+        save("sheet-backups")
+        next(iter(outline.sheet.keys.values())).dispatch("on_release")
+        save("sheet-backups-one-chosen")
+        app.close_sheets()
         outline.show("Log")
         for sheet in ("settings", "place", "readings", "safety"):
             app.open_sheet(sheet)

@@ -1,4 +1,4 @@
-"""The Check leaf: net or plan, funnel, means, the next best reading, and whatever blocks a verdict."""
+"""The Check leaf: net or plan, funnel, means, the next best reading, whatever blocks a verdict, and this outcrop."""
 
 # ruff: noqa: RUF001 - the page is set with true minus signs and dashes.
 
