@@ -270,6 +270,8 @@ def test_the_field_typed_into_stays_in_sight_over_the_keyboard(driver):
 
 def test_a_keyboard_over_the_field_lifts_the_page(driver):
     """A keyboard of the device that would hide the field lifts the page by so much that the field stands over it."""
+    from kivy.animation import Animation
+
     driver.app.open_sheet("note")
     driver.frames(2)
     field = driver.app.outline.sheet.fields.ids.note
@@ -277,6 +279,8 @@ def test_a_keyboard_over_the_field_lifts_the_page(driver):
     before = pixels(driver)
     bottom = round(field.to_window(0, field.y)[1])
     high = bottom + 120
+    # Kivy takes half a second to settle at the height of no keyboard, and would undo the next line meanwhile.
+    Animation.cancel_all(driver.window)
     driver.window._kheight = high  # what Kivy sets from the height that Android tells
     lifted = pixels(driver)
     driver.window._kheight = 0
