@@ -22,7 +22,7 @@ GOING_BACK = (
     "Going back puts all of it as it was then: readings, outcrops, faults, settings, and what was being typed. "
     "How the notebook is now is kept as a backup first."
 )
-ADDING = "Adding puts in what this backup holds and the notebook lacks, and changes nothing else."
+ADDING = "Adding puts in what this backup holds and the notebook lacks. It can be taken back."
 KEPT_BEFORE = "before going back"
 
 
