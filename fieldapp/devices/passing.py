@@ -27,6 +27,11 @@ NOT_READ = "that file could not be read"
 IN_FILES = "The file is in this app's folder in the Files app."
 
 
+def at_a_desk() -> bool:
+    """Whether this is no phone or tablet: files may be written into any folder, and nothing shares them."""
+    return system_name() not in ("android", "ios")
+
+
 def share_file(path: Path) -> str:
     """Offer a file to other apps; give what is to be told of it, '' where the device shows that itself."""
     system = system_name()

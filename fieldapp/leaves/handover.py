@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from contextlib import suppress
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -11,8 +10,9 @@ from kivy.app import App
 from kivy.properties import BooleanProperty, ObjectProperty, StringProperty
 from kivy.uix.boxlayout import BoxLayout
 
+from fieldapp.devices.passing import at_a_desk
 from fieldapp.leaves import load_kv
-from fieldapp.leaves.parts import Key
+from fieldapp.leaves.files import FileKey, entries_of, folders_in, free_name
 from fieldapp.states import Change
 from fieldapp.wording import backup_text, counted, when_text
 
@@ -32,24 +32,11 @@ def space_text(count: int | None) -> str:
     )
 
 
-def free_name(path: Path) -> Path:
-    """The name of a file, numbered where a file of that name is there: two hand-overs may fall in one second."""
-    free, number = path, 1
-    while os.path.lexists(free):
-        number += 1
-        free = path.with_name(f"{path.stem}-{number}{path.suffix}")
-    return free
-
-
 class Row(BoxLayout):
     """A name and what it is now."""
 
     name = StringProperty("")
     value = StringProperty("")
-
-
-class FileKey(Key):
-    """A folder or a file to take in."""
 
 
 class HandOverLeaf(BoxLayout):
@@ -65,6 +52,7 @@ class HandOverLeaf(BoxLayout):
     preview_text = StringProperty("")
     undo_text = StringProperty("")
     has_log = BooleanProperty(False)
+    at_a_desk = BooleanProperty(False)
     has_backups = BooleanProperty(False)
     read_only = BooleanProperty(False)
     folder = ObjectProperty(None, allownone=True)
@@ -72,6 +60,8 @@ class HandOverLeaf(BoxLayout):
     def __init__(self, **kwargs: object) -> None:
         super().__init__(**kwargs)
         self._preview: TakeInPreview | None = None
+        self._other_folder: Path | None = None  # the one last written into
+        self.at_a_desk = at_a_desk()
 
     @property
     def page(self) -> object:
@@ -102,14 +92,28 @@ class HandOverLeaf(BoxLayout):
 
     def write(self, *, everything: bool = False) -> Path | None:
         """Write the CSV; the presenter says whether it went well."""
-        now = App.get_running_app().clock_utc()
         with suppress(OSError):  # writing then says why it cannot be done
             self.target_folder.mkdir(parents=True, exist_ok=True)
-        path = free_name(self.target_folder / f"readings-{now:%Y%m%d-%H%M%S}.csv")
+        path = free_name(self.target_folder / self._file_name())
         if not self.page.write_hand_over(path, everything=everything):
             return None
         App.get_running_app().share(path)
         return path
+
+    def _file_name(self) -> str:
+        return f"readings-{App.get_running_app().clock_utc():%Y%m%d-%H%M%S}.csv"
+
+    def write_elsewhere(self) -> None:
+        """At a desk: choose the folder and the name."""
+        from fieldapp.leaves.saving import SavingSheet  # noqa: PLC0415 - loaded when it is used
+
+        outline = App.get_running_app().outline
+        if outline.sheet is None:  # a touch on what scrolls may arrive twice
+            folder = self._other_folder or Path.home()
+            SavingSheet(folder=folder, name=self._file_name(), written=self._wrote_into).open(outline)
+
+    def _wrote_into(self, folder: Path) -> None:
+        self._other_folder = folder
 
     def attach_log(self) -> None:
         """Put the log of mishaps beside the hand-overs."""
@@ -140,15 +144,10 @@ class HandOverLeaf(BoxLayout):
         if self.folder is None:
             return
         folder = Path(self.folder)
-        try:
-            entries = sorted(folder.iterdir(), key=lambda path: path.name.lower())
-        except OSError:
-            entries = []
-        folders = [path for path in entries if path.is_dir() and not path.name.startswith(".")]
-        files = [path for path in entries if path.suffix.lower() in (".csv", ".txt", ".tsv")]
+        files = [path for path in entries_of(folder) if path.suffix.lower() in (".csv", ".txt", ".tsv")]
         for label, path in (
             ("Up one folder", folder.parent),
-            *((f"{path.name}/", path) for path in folders),
+            *((f"{path.name}/", path) for path in folders_in(folder)),
             *((path.name, path) for path in files),
         ):
             key = FileKey(text=label)

@@ -121,6 +121,11 @@ def main(width_dp: float, height_dp: float) -> dict[str, list[str]]:  # noqa: PL
         look("Fault, filled in")
         outline.show("Hand over")
         look("Hand over")
+        outline.leaf("Hand over").write_elsewhere()
+        outline.sheet.go_to(Path(folder))
+        outline.sheet.fields.fault = "There is a file of that name: give another."
+        look("sheet to write elsewhere")
+        app.close_sheets()
         page.back_up()
         driver.wait(lambda: page.hand_over.backups)
         outline.leaf("Hand over").show_backups()
