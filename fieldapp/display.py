@@ -11,7 +11,9 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
-X_SOCKETS = Path("/", "tmp", ".X11-unix")  # where X servers listen on every system, whatever its temporary folder
+X_SOCKETS = Path(
+    "/", "tmp", ".X11-unix"
+)  # where X servers listen on every system, whatever its temporary folder
 BOUND = Path("/proc/net/unix")  # sockets that are listened on, also those without a file
 
 
