@@ -25,6 +25,8 @@ if TYPE_CHECKING:
 
 DEMO_FAULT: Final = "Tarrow Fault"
 DEMO_FAULT_STRIKE_DEG: Final = 52.0
+DEMO_FAULT_SENSE: Final = "sinistral"
+DEMO_ZONE_WIDTH_KM: Final = 2.0
 DEMO_NOTE: Final = "Invented data: the Mossgarth folds beside the Tarrow Fault exist on no map."
 _FIRST_READING: Final = datetime(2026, 5, 4, 9, 12, tzinfo=UTC)
 _LATITUDE_DEG, _LONGITUDE_DEG = 47.5, -31.0  # open ocean

@@ -1,7 +1,7 @@
 """Set Hingewise up and run it on the invented Mossgarth folds: ``python3 buildspec/run.py``.
 
-With a display the app opens on the demo notebook. Without one the verdict is printed and the pictures are
-written into out/. Further arguments go to ``hingewise demo``.
+With a display the app opens on the demo notebook. Without one the verdict is printed, and the pictures and the
+report are written into out/. Further arguments go to ``hingewise demo``.
 """
 
 from __future__ import annotations

@@ -46,11 +46,11 @@ def main(ctx: click.Context, notebook: Path | None) -> None:
 @click.command()
 @click.option(
     "-o", "--output", metavar="DIR", type=click.Path(path_type=Path, file_okay=False), default=Path("out"),
-    show_default=True, help="Where pictures go when there is no display.",
+    show_default=True, help="Where pictures and report go when there is no display.",
 )  # fmt: skip
 @click.option("--no-window", is_flag=True, help="Do without the app even where there is a display.")
 def demo(output: Path, *, no_window: bool) -> None:
-    """Open the app on the invented Mossgarth folds; with no display print their verdicts and write pictures.
+    """Open the app on the invented Mossgarth folds; with no display print verdicts, write pictures and a report.
 
     \b
     Example:

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from analysis.demo import DEMO_FAULT_STRIKE_DEG, demo_readings
+from analysis.demo import DEMO_FAULT_SENSE, DEMO_FAULT_STRIKE_DEG, DEMO_ZONE_WIDTH_KM, demo_readings
 from fieldapp.notebook.opening import open_notebook
 from fieldapp.states import FaultInput
 
@@ -16,7 +16,9 @@ if TYPE_CHECKING:
     from datetime import datetime
     from pathlib import Path
 
-FAULT = FaultInput(strike_deg=DEMO_FAULT_STRIKE_DEG, sense="sinistral", zone_width_m=2000.0)
+FAULT = FaultInput(
+    strike_deg=DEMO_FAULT_STRIKE_DEG, sense=DEMO_FAULT_SENSE, zone_width_m=1000.0 * DEMO_ZONE_WIDTH_KM
+)
 """The Tarrow Fault, made up like the folds."""
 
 
