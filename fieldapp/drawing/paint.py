@@ -12,7 +12,7 @@ from kivy.graphics.texture import Texture
 from kivy.metrics import dp
 
 from fieldapp.drawing import strokes
-from fieldapp.look.fonts import FONT_NAME
+from fieldapp.look.fonts import font_for
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
@@ -113,7 +113,7 @@ class Paints:
             if len(self._words) > MOST_WORDS:
                 self._words.clear()
             label = CoreLabel(
-                text=text, font_name=FONT_NAME, font_size=size_px, bold=bold, color=(1, 1, 1, 1)
+                text=text, font_name=font_for(text), font_size=size_px, bold=bold, color=(1, 1, 1, 1)
             )
             label.refresh()
             label.texture.mag_filter = label.texture.min_filter = "nearest"

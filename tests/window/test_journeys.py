@@ -437,3 +437,18 @@ def test_the_observer_is_typed_into_the_settings(driver):
     type_line(driver, sheet.names["device"], "x" * 250)
     sheet.close()
     assert app.page.settings.device == ""
+
+
+def test_names_in_other_letters_are_shown_in_a_font_that_has_them(driver):
+    """An outcrop of another alphabet gets the wide font wherever its name stands, and one of ours ours again."""
+    app = driver.app
+    app.page.choose_outcrop("Обнажение 4")
+    driver.frames(3)
+
+    def fonts_of(name):
+        return {w.font_name for w in app.outline.walk() if name in (getattr(w, "text", "") or "")}
+
+    assert fonts_of("Обнажение 4") == {"wide"}
+    app.page.choose_outcrop("Steinbruch Süd")
+    driver.frames(3)
+    assert fonts_of("Steinbruch Süd") == {"B612"}

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ast
+import importlib.util
 import re
 from pathlib import Path
 
@@ -11,7 +12,15 @@ from fontTools.ttLib import TTFont
 
 import analysis
 import fieldapp
-from fieldapp.look.fonts import BOLD_FILE, FONT_FOLDER, REGULAR_FILE
+from fieldapp.look.fonts import (
+    BOLD_FILE,
+    FONT_FOLDER,
+    FONT_NAME,
+    REGULAR_FILE,
+    WIDE_FILE,
+    WIDE_FONT_NAME,
+    font_for,
+)
 
 PACKAGES = [
     Path(fieldapp.__file__).parent,
@@ -62,6 +71,29 @@ def test_every_sign_used_is_in_the_font(path):
     held = TTFont(path).getBestCmap()
     assert {sign: where for sign, where in signs_used().items() if ord(sign) not in held} == {}
     assert [chr(code) for code in range(0x20, 0x7F) if code not in held] == []
+
+
+@pytest.mark.parametrize("path", [REGULAR_FILE, BOLD_FILE], ids=lambda path: path.stem)
+def test_what_is_set_in_our_font_is_in_it(path):
+    """Of all signs below the surrogates, those that are given to this font have a glyph in this weight."""
+    held = set(TTFont(path).getBestCmap()) | {ord(sign) for sign in "\n\r\t"}
+    given = {
+        code for code in range(1, 0xD800) if not chr(code).isascii() and font_for(chr(code)) == FONT_NAME
+    }
+    assert len(given) > 100
+    assert [chr(code) for code in sorted(given - held)] == []
+
+
+@pytest.mark.parametrize(
+    "name",
+    ["Łódź", "Čierna", "Söğüt", "Kővágó", "Αθήναι", "Обнажение 4", "מחשוף", "محجر", "Ħaż-Żebbuġ", "Mỏ đá"],
+)
+def test_names_in_other_letters_are_set_in_the_wide_font(name):
+    """Letters that ours lacks are in the font that comes with Kivy."""
+    folder = Path(importlib.util.find_spec("kivy").origin).parent / "data" / "fonts"
+    held = TTFont(folder / WIDE_FILE).getBestCmap()
+    assert font_for(name) == WIDE_FONT_NAME
+    assert [sign for sign in name if ord(sign) not in held] == []
 
 
 def test_signs_are_found():
