@@ -20,10 +20,10 @@ if TYPE_CHECKING:
     from datetime import datetime
 
     from analysis.orient.attitudes import Line
+    from analysis.orient.position import Position
     from fieldapp.draft import Digits
     from fieldapp.entry import North
     from fieldapp.settings import Settings
-    from fieldapp.states import PositionFix
 
 NOT_CORRECTED = "north-not-corrected"  # kept from magnetic north because no correction was known
 
@@ -105,19 +105,19 @@ def new_reading(
     fold: str,
     outcrop: str,
     settings: Settings,
-    fix: PositionFix | None,
+    place: Position | None,
 ) -> Reading:
     """Make the reading of a whole draft; `north` is added here, once. Raises ReadingError."""
     draft = entry.draft
     sensed = draft.sensed
     position: dict[str, object] = {}
-    if fix is not None:
+    if place is not None:
         position = {
-            "latitude_deg": fix.latitude_deg,
-            "longitude_deg": fix.longitude_deg,
-            "altitude_m": fix.altitude_m,
-            "accuracy_m": fix.accuracy_m,
-            "position_source": fix.source,
+            "latitude_deg": place.latitude_deg,
+            "longitude_deg": place.longitude_deg,
+            "altitude_m": place.altitude_m,
+            "accuracy_m": place.accuracy_m,
+            "position_source": place.source,
         }
     return _made(
         {

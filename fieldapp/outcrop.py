@@ -187,7 +187,7 @@ class OutcropPage(PageFaulting):
             fold=self._fold,
             outcrop=self._outcrop,
             settings=self._settings,
-            fix=self._fix_for_reading(now),
+            place=self._place_for_reading(now),
         )
 
     # -- past readings --------------------------------------------------------------------------------------

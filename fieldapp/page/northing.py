@@ -17,6 +17,8 @@ from fieldapp.undoing import Step, StepKind, content_of
 from fieldapp.wording import counted
 
 if TYPE_CHECKING:
+    from collections.abc import Callable, Iterable
+
     from analysis.files.reading import Reading
     from analysis.orient.north import NorthCorrection
 
@@ -74,11 +76,8 @@ class PageNorth(PageCore):
     def correct_north(self) -> int:
         """Correct readings kept before a correction to north was known, all or none; give their number."""
         before = self._not_corrected()
-        try:
-            corrected = [late for late in map(self._corrected_late, before) if late is not None]
-            self._notebook.keep_all(corrected)
-        except HingewiseError as error:
-            self._refuse(Message(str(error), MessageKind.TROUBLE))
+        corrected = self._revise_many(before, self._corrected_late)
+        if corrected is None:
             return 0
         if not corrected:
             words = "The correction to north is still not known: it comes with a position."
@@ -98,26 +97,39 @@ class PageNorth(PageCore):
         if not found.is_true:
             return None
         waited = tuple(w for w in reading.warnings_kept if w != NOT_CORRECTED)
-        late = corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
-        return replace(late, revision=self._notebook.next_revision(reading.reading_id))
+        return corrected_late(replace(reading, warnings_kept=waited), found, self._clock())
 
     def _undo_many(self, step: Step, words: str, offer: Offer) -> bool:
-        """Take back what was done to many readings at once: all of them or none."""
-        try:
-            again = [
-                replace(
-                    self._all[one.reading_id].revised(at=self._clock(), **content_of(one)),
-                    revision=self._notebook.next_revision(one.reading_id),
-                )
-                for one in step.all_before
-            ]
-            self._notebook.keep_all(again)
-        except HingewiseError as error:
-            return self._refuse(Message(str(error), MessageKind.TROUBLE))
+        """Take back what was done to many readings at once."""
+        again = self._revise_many(
+            step.all_before,
+            lambda one: self._all[one.reading_id].revised(at=self._clock(), **content_of(one)),
+        )
+        if again is None:
+            return False
         self._undo.pop()
         self._message = Message(f"Taken back: {counted(len(again))} {words}.", offer=offer)
         self._revised(again)
         return True
+
+    def _revise_many(
+        self, readings: Iterable[Reading], change: Callable[[Reading], Reading | None]
+    ) -> list[Reading] | None:
+        """Commit a further revision of many readings, all of them or none; the page is not told yet.
+
+        `change` gives the revision, or None for a reading that stays as it is. None where it was refused.
+        """
+        try:
+            revised = [
+                replace(one, revision=self._notebook.next_revision(one.reading_id))
+                for one in map(change, readings)
+                if one is not None
+            ]
+            self._notebook.keep_all(revised)
+        except HingewiseError as error:
+            self._refuse(Message(str(error), MessageKind.TROUBLE))
+            return None
+        return revised
 
     def _revised(self, readings: list[Reading]) -> None:
         """Bring the page up to date with revisions of many readings."""

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from analysis.errors import HingewiseError
 from analysis.orient.position import Position
 from fieldapp.page.northing import PageNorth
 from fieldapp.planning import positions_of
-from fieldapp.states import Change, Message, MessageKind, Offer, PositionFix
+from fieldapp.states import Change, Message, MessageKind, Offer
 from fieldapp.undoing import Step, StepKind
 from fieldapp.wording import age_text, counted, outcrop_title, position_text
 
@@ -17,6 +15,7 @@ if TYPE_CHECKING:
     from datetime import datetime
 
     from analysis.files.reading import Reading
+    from fieldapp.states import PositionFix
 
 FIX_GOOD_FOR_S = 300.0  # an older position is no longer where a reading is taken
 # Outcrops of one fold further apart than this are more likely a slip of a figure. Common practice, no source: a map
@@ -58,10 +57,7 @@ class PagePlacing(PageNorth):
     @property
     def here(self) -> Position | None:
         """Where we are: as typed for this outcrop, else by the device; None where nobody knows."""
-        fix = self._fix
-        if self._by_hand is not None or fix is None:
-            return self._by_hand
-        return Position(fix.latitude_deg, fix.longitude_deg, fix.altitude_m, fix.accuracy_m, fix.source)
+        return self._by_hand or (None if self._fix is None else _position_of(self._fix))
 
     def _position_text(self) -> str:
         accuracy, known = None, ""
@@ -79,23 +75,13 @@ class PagePlacing(PageNorth):
             return ""
         return f"mean of {fix.fixes} fixes, spread {fix.spread_m:.0f} m"
 
-    def _fix_for_reading(self, now: datetime) -> PositionFix | None:
+    def _place_for_reading(self, now: datetime) -> Position | None:
         """Where a reading is taken: as typed, by the best fix while one is fresh, else as known of the outcrop."""
-        fix = self._fix
-        if self._by_hand is None and fix is not None and (now - fix.at).total_seconds() <= FIX_GOOD_FOR_S:
-            return self._best_fix
-        place = self._by_hand
-        if place is None:
-            place = self._known_here()
-        if place is None:
-            return None
-        return PositionFix(
-            latitude_deg=place.latitude_deg,
-            longitude_deg=place.longitude_deg,
-            accuracy_m=place.accuracy_m,
-            source=place.source,
-            at=now,
-        )
+        if self._by_hand is not None:
+            return self._by_hand
+        if self._fix is not None and (now - self._fix.at).total_seconds() <= FIX_GOOD_FOR_S:
+            return _position_of(self._best_fix)
+        return self._known_here()
 
     def _known_here(self) -> Position | None:
         """Where this outcrop lies by its readings."""
@@ -157,23 +143,17 @@ class PagePlacing(PageNorth):
         place, before = self._by_hand, self._unplaced()
         if place is None or not before:
             return 0
-        try:
-            placed = [
-                replace(
-                    one.revised(
-                        at=self._clock(),
-                        latitude_deg=place.latitude_deg,
-                        longitude_deg=place.longitude_deg,
-                        accuracy_m=place.accuracy_m,
-                        position_source=place.source,
-                    ),
-                    revision=self._notebook.next_revision(one.reading_id),
-                )
-                for one in before
-            ]
-            self._notebook.keep_all(placed)
-        except HingewiseError as error:
-            self._refuse(Message(str(error), MessageKind.TROUBLE))
+        placed = self._revise_many(
+            before,
+            lambda one: one.revised(
+                at=self._clock(),
+                latitude_deg=place.latitude_deg,
+                longitude_deg=place.longitude_deg,
+                accuracy_m=place.accuracy_m,
+                position_source=place.source,
+            ),
+        )
+        if placed is None:
             return 0
         self._undo.push(Step(kind=StepKind.PLACED, all_before=tuple(before)))
         self._message = self._correction_offered() or Message(
@@ -181,3 +161,7 @@ class PagePlacing(PageNorth):
         )
         self._revised(placed)
         return len(placed)
+
+
+def _position_of(fix: PositionFix) -> Position:
+    return Position(fix.latitude_deg, fix.longitude_deg, fix.altitude_m, fix.accuracy_m, fix.source)
