@@ -25,10 +25,8 @@ from analysis.stats.quantiles import t_quantile
 
 if TYPE_CHECKING:
     from analysis.fold.fits import FoldFits
-    from analysis.fold.limbs import Limbs
     from analysis.fold.settings import CheckSettings
     from analysis.fold.transection import Transection
-    from analysis.stats.axes import AxisFit
     from analysis.stats.sums import RunningSums
 
 
@@ -42,16 +40,16 @@ def decide(
 ) -> FoldCheck:
     """Complete a check with its figures, its verdict and, if asked, its forecast."""
     counts, settings, transection = check.readings, check.settings, fits.transection
+    hinge = None if check.hinge is None else check.hinge.fit
+    clear = hinge is not None and bool(hinge_is_clear(hinge))
+    cluster = "" if hinge is None else blocks.one_cluster(hinge, check.limbs)
+    usable = clear and not cluster
     waiting = [s for s in (blocks.missing_for_hinge(counts), blocks.missing_for_cleavage(counts)) if s]
     if transection is None or check.hinge is None or not np.isfinite(transection.fixed_variance):
         angle = {} if transection is None or check.hinge is None else _angle(transection)
         because = tuple(waiting) or (blocks.undetermined(check.hinge, check.cleavage, counts),)
-        usable = check.hinge is not None and _is_usable(check.hinge.fit, check.limbs)
         return _advised(check, sums, hinge_usable=usable, **angle, because=because, warnings=tuple(warnings))
 
-    clear = bool(hinge_is_clear(check.hinge.fit))
-    cluster = blocks.one_cluster(check.hinge.fit, check.limbs)
-    usable = clear and not cluster
     waits, blocked, notes = _kept_back(check, sums, transection, fits)
     waiting += waits
     progress = (
@@ -249,10 +247,6 @@ def _why_axial_planar(check: FoldCheck, transection: Transection) -> tuple[str, 
         f"±{degrees(check.settings.margin_deg)}: their {100.0 * (1.0 - 2.0 * alpha):.3g}% interval lies inside."
     )
     return why, _scale(transection)
-
-
-def _is_usable(hinge: AxisFit, limbs: Limbs | None) -> bool:
-    return bool(hinge_is_clear(hinge)) and not blocks.one_cluster(hinge, limbs)
 
 
 def _advised(check: FoldCheck, sums: RunningSums, *, hinge_usable: bool, **fields: Any) -> FoldCheck:  # noqa: ANN401 - whatever a check holds
