@@ -92,11 +92,18 @@ def figure_line(check: FoldCheck) -> str:
     """Give the second line of the verdict strip: the figure, and never without its interval."""
     if check.transection_deg is None or check.interval_deg is None:
         return check.because[0] if check.because else "No readings yet."
-    signed = check.sense != "unsigned"
-    interval = between(*check.interval_deg, signed=signed)
     if check.verdict is Verdict.TRANSECTED:  # the headline has the figure
+        interval = between(*check.interval_deg, signed=check.sense != "unsigned")
         return f"{interval}, at {100.0 * check.settings.confidence:g}% confidence"
-    return f"{against_hinge(check.transection_deg, signed=signed)}, {interval}"
+    return angle_line(check)
+
+
+def angle_line(check: FoldCheck) -> str:
+    """Give the angle, never without its interval: 'cleavage 7° clockwise of the hinge, between ...'; '' without one."""
+    if check.transection_deg is None or check.interval_deg is None:
+        return ""
+    signed = check.sense != "unsigned"
+    return f"{against_hinge(check.transection_deg, signed=signed)}, {between(*check.interval_deg, signed=signed)}"
 
 
 def more(readings: MoreReadings) -> str:

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from analysis.fold.words import against_hinge, between
+from analysis.fold.words import angle_line
 from analysis.orient.features import Feature
 from analysis.orient.notation import azimuth_text, inclination_text
 from fieldapp.drawing.scene import (
@@ -180,11 +180,9 @@ def outcrop_words(whole: FoldCheck, here: FoldCheck, outcrop: str, notation: Pla
     if here.intersection is not None:
         axes.append(f"intersection {line_text(here.intersection.axis.line)}")
     lines = [f"{name}, {read} read" + (f": {', '.join(axes)}" if axes else "")]
-    angle, interval = here.transection_deg, here.interval_deg
-    if angle is not None and interval is not None:
-        signed = here.sense != "unsigned"
-        lines.append(f"{against_hinge(angle, signed=signed)}, {between(*interval, signed=signed)}")
-    if interval is None or here.blocked:
+    if angle := angle_line(here):
+        lines.append(angle)
+    if not angle or here.blocked:
         lines.extend(here.because)
     return "\n".join(lines)
 
