@@ -9,24 +9,35 @@ from fieldapp.leaves import load_kv
 from fieldapp.leaves.parts import Key
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
     from pathlib import Path
+
+    from kivy.uix.boxlayout import BoxLayout
 
 
 class FileKey(Key):
     """A folder or a file in a list."""
 
 
-def entries_of(folder: Path) -> list[Path]:
-    """What lies in a folder, by name; nothing for one that cannot be looked into."""
+def list_folder(
+    box: BoxLayout, folder: Path, chosen: Callable[[Path], None], suffixes: tuple[str, ...] = ()
+) -> None:
+    """Fill a box with keys: the folder above, those in it but the hidden ones, and files with one of the endings."""
     try:
-        return sorted(folder.iterdir(), key=lambda path: path.name.lower())
+        entries = sorted(folder.iterdir(), key=lambda path: path.name.lower())
     except OSError:
-        return []
-
-
-def folders_in(folder: Path) -> list[Path]:
-    """The folders in a folder but the hidden ones."""
-    return [path for path in entries_of(folder) if path.is_dir() and not path.name.startswith(".")]
+        entries = []
+    folders = [path for path in entries if path.is_dir() and not path.name.startswith(".")]
+    files = [path for path in entries if path.suffix.lower() in suffixes]
+    box.clear_widgets()
+    for label, path in (
+        ("Up one folder", folder.parent),
+        *((f"{path.name}/", path) for path in folders),
+        *((path.name, path) for path in files),
+    ):
+        key = FileKey(text=label)
+        key.bind(on_release=lambda _key, path=path: chosen(path))
+        box.add_widget(key)
 
 
 def free_name(path: Path) -> Path:

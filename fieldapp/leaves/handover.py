@@ -12,7 +12,7 @@ from kivy.uix.boxlayout import BoxLayout
 
 from fieldapp.devices.passing import at_a_desk
 from fieldapp.leaves import load_kv
-from fieldapp.leaves.files import FileKey, entries_of, folders_in, free_name
+from fieldapp.leaves.files import free_name, list_folder
 from fieldapp.states import Change
 from fieldapp.wording import backup_text, counted, when_text
 
@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from fieldapp.states import TakeInPreview
 
 FOLDER_NAME = "hand-over"
+TAKEN_IN = (".csv", ".txt", ".tsv")
 MEGABYTE = 1_000_000
 
 
@@ -139,20 +140,10 @@ class HandOverLeaf(BoxLayout):
 
     def on_folder(self, *_: object) -> None:
         """List a folder: the folders in it, and the CSV files."""
-        box = self.ids.files
-        box.clear_widgets()
         if self.folder is None:
-            return
-        folder = Path(self.folder)
-        files = [path for path in entries_of(folder) if path.suffix.lower() in (".csv", ".txt", ".tsv")]
-        for label, path in (
-            ("Up one folder", folder.parent),
-            *((f"{path.name}/", path) for path in folders_in(folder)),
-            *((path.name, path) for path in files),
-        ):
-            key = FileKey(text=label)
-            key.bind(on_release=lambda _key, path=path: self.look_at(path))
-            box.add_widget(key)
+            self.ids.files.clear_widgets()
+        else:
+            list_folder(self.ids.files, Path(self.folder), self.look_at, TAKEN_IN)
 
     def look_at(self, path: Path) -> None:
         """Open a folder, or say what a file would add before anything is taken in."""

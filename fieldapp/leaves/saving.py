@@ -10,7 +10,7 @@ from kivy.properties import StringProperty
 from kivy.uix.boxlayout import BoxLayout
 
 from fieldapp.leaves import load_kv
-from fieldapp.leaves.files import FileKey, folders_in, free_name
+from fieldapp.leaves.files import free_name, list_folder
 from fieldapp.leaves.parts import Sheet, TextLine  # noqa: F401 - the .kv file uses the last
 
 if TYPE_CHECKING:
@@ -26,7 +26,6 @@ class SavingSheet(Sheet):
         super().__init__(title="Write the CSV into a folder", **kwargs)
         self._page = App.get_running_app().page
         self._written = written
-        self._folder = folder
         self.fields = SavingFields(name=name)
         self.ids.content.add_widget(self.fields)
         self.go_to(folder)
@@ -35,15 +34,7 @@ class SavingSheet(Sheet):
         """Show a folder, and those in it."""
         self._folder = folder
         self.fields.folder, self.fields.fault = str(folder), ""
-        box = self.fields.ids.folders
-        box.clear_widgets()
-        for label, path in (
-            ("Up one folder", folder.parent),
-            *((f"{path.name}/", path) for path in folders_in(folder)),
-        ):
-            key = FileKey(text=label)
-            key.bind(on_release=lambda _key, path=path: self.go_to(path))
-            box.add_widget(key)
+        list_folder(self.fields.ids.folders, folder, self.go_to)
 
     def write(self, *, everything: bool = False) -> None:
         """Write into the folder shown; a file that is there is never written over."""
