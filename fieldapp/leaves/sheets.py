@@ -134,8 +134,8 @@ class SettingsSheet(Sheet):
             setting = Setting(name=name, meaning=meaning)
             line = TextLine(text=getattr(self._page.settings, attribute), hint_text="not given")
             line.bind(
-                focus=lambda line, focus, setting=setting, attribute=attribute: (
-                    None if focus else self._name(setting, attribute, line.text)
+                focus=lambda line, focus, setting=setting, meaning=meaning, attribute=attribute: (
+                    None if focus else self._name(setting, meaning, attribute, line.text)
                 )
             )
             setting.ids.key_row.add_widget(line)
@@ -147,14 +147,14 @@ class SettingsSheet(Sheet):
         self._page.change_settings(replace(self._page.settings, **{attribute: value}))
         choice.chosen = getattr(self._page.settings, attribute)
 
-    def _name(self, setting: Setting, attribute: str, text: str) -> None:
+    def _name(self, setting: Setting, meaning: str, attribute: str, text: str) -> None:
         """Take a name as it is left; what is none is said where its meaning stood."""
         try:
             settings = replace(self._page.settings, **{attribute: text})
         except HingewiseError as error:
             setting.meaning = str(error)
             return
-        setting.meaning = next(meaning for _, meaning, name in NAMES if name == attribute)
+        setting.meaning = meaning
         if settings != self._page.settings:
             self._page.change_settings(settings)
 
