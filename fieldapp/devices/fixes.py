@@ -99,7 +99,8 @@ class FixBook:
 
     def average_over(self, window_s: float) -> None:
         """Average over so many seconds from the next fix on; raises SettingError."""
-        self._settings = replace(self._settings, window_s=window_s)
+        if window_s != self._settings.window_s:
+            self._settings = replace(self._settings, window_s=window_s)
 
     def begin_outcrop(self) -> None:
         """Forget the best mean, and average anew: the geologist walked to another outcrop."""
